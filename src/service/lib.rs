@@ -1,0 +1,1 @@
+//! HTTP service for circular restricted three-body computations.

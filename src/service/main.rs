@@ -1,0 +1,3 @@
+//! The `synodia` command.
+
+fn main() {}

@@ -1,0 +1,1 @@
+//! Checks of the mechanics crate against published values, and its invariants.
