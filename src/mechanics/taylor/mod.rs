@@ -1,0 +1,74 @@
+//! Taylor series of the equations of motion: recurrences, step size, dense output, variational equations.
+//!
+//! The series come by recurrence (automatic differentiation; Moore 1966, *Interval Analysis*; Steffensen 1956,
+//! K. Danske Vidensk. Selsk. Mat.-Fys. Medd. 30, 18, for this problem). Order and step follow Jorba & Zou 2005,
+//! Exper. Math. 14, 99, with the order fixed.
+
+mod dispatch;
+mod recurrence;
+mod step;
+mod variational;
+
+pub use dispatch::{accelerated, expand, expand_variational, flow, flow_variational};
+pub use recurrence::Primaries;
+pub use step::{MAX_STEP, STEP_FLOOR, StepSize};
+pub use variational::Columns;
+
+/// Order of the velocity series. At double precision 20 to 26 cost the same within 5 %.
+pub const ORDER: usize = 22;
+
+/// Coefficients of the position series, which the second-order equations carry one order further.
+pub const TERMS: usize = ORDER + 2;
+
+/// The Taylor series about one instant: position relative to the nearer primary, and what the recurrences
+/// make on the way. Coefficient k belongs to the k-th power of the time since that instant.
+#[derive(Clone, Debug)]
+#[repr(C, align(64))]
+pub struct Series<R> {
+    /// x relative to the nearer primary, y and z.
+    pub position: [[R; TERMS]; 3],
+    /// Half the squared distance to the nearer primary.
+    pub half_square_near: [R; TERMS],
+    /// Half the squared distance to the farther primary.
+    pub half_square_far: [R; TERMS],
+    /// Mass share over cubed distance of the nearer primary.
+    pub near: [R; TERMS],
+    /// Mass share over cubed distance of the farther primary.
+    pub far: [R; TERMS],
+    /// The sum of the two.
+    pub total: [R; TERMS],
+    /// x of the nearer primary.
+    pub nearer_x: R,
+    /// The nearer primary's x minus the farther one's: 1 where the smaller primary is nearer, else −1.
+    pub side: R,
+    /// Jacobi constant.
+    pub jacobi: R,
+    /// Base-2 logarithm of the radius of convergence, estimated.
+    pub log2_radius: R,
+}
+
+impl<R: crate::arithmetic::Real> Series<R> {
+    /// Room for a series.
+    #[must_use]
+    pub fn new() -> Self {
+        let zero = R::from_f64(0.0);
+        Self {
+            position: [[zero; TERMS]; 3],
+            half_square_near: [zero; TERMS],
+            half_square_far: [zero; TERMS],
+            near: [zero; TERMS],
+            far: [zero; TERMS],
+            total: [zero; TERMS],
+            nearer_x: zero,
+            side: zero,
+            jacobi: zero,
+            log2_radius: zero,
+        }
+    }
+}
+
+impl<R: crate::arithmetic::Real> Default for Series<R> {
+    fn default() -> Self {
+        Self::new()
+    }
+}
