@@ -24,3 +24,4 @@
 pub mod interrupt;
 pub mod quantity;
 pub mod state;
+pub mod system;
