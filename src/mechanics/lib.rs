@@ -25,3 +25,4 @@ pub mod interrupt;
 pub mod quantity;
 pub mod state;
 pub mod system;
+pub mod units;
