@@ -106,8 +106,10 @@ const FAR: f64 = 1e6;
 /// Latest epoch and longest duration in normalised time: more than any step limit can cross.
 const LONG: f64 = 1e8;
 /// Largest physical scale in km, km/s or s: far beyond any pair of bodies that orbit each other. It bounds
-/// eccentricities and unreduced angles too.
+/// unreduced angles too.
 const VAST: f64 = 1e20;
+/// Largest semi-major axis and eccentricity: a nearly parabolic orbit, a fast one past a tiny body.
+const FLAT: f64 = 1e30;
 
 quantities! {
     /// μ, the smaller primary's share of the total mass.
@@ -135,11 +137,11 @@ quantities! {
     /// A speed in kilometres per second.
     KilometresPerSecond: "speed, km/s", above(0.0, VAST);
     /// A semi-major axis in separations, negative for a hyperbola.
-    SemiMajorAxis: "semi-major axis, in separations of the primaries", within(-VAST, VAST);
+    SemiMajorAxis: "semi-major axis, in separations of the primaries", within(-FLAT, FLAT);
     /// A periapsis distance in separations.
     PeriapsisDistance: "periapsis distance, in separations of the primaries", above(0.0, FAR);
     /// The eccentricity of a conic.
-    Eccentricity: "eccentricity", within(0.0, VAST);
+    Eccentricity: "eccentricity", within(0.0, FLAT);
     /// An inclination in degrees.
     Inclination: "inclination, degrees", within(0.0, 180.0);
     /// An angle in degrees, not reduced to one turn.
