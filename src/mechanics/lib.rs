@@ -22,7 +22,11 @@
 //! effort spent and the residual reached.
 
 pub mod arithmetic;
+pub mod frame;
 pub mod interrupt;
+pub mod propagation;
 pub mod quantity;
 pub mod state;
+pub mod system;
 pub mod taylor;
+pub mod units;

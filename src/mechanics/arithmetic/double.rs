@@ -63,7 +63,8 @@ impl Real for f64 {
         const TO_ONE: u64 = 1.0_f64.to_bits() - std::f64::consts::FRAC_1_SQRT_2.to_bits();
         let shifted = self.to_bits().wrapping_add(TO_ONE);
         let exponent = (shifted >> FRACTION_BITS) as i64 - BIAS;
-        let mantissa = Self::from_bits(self.to_bits().wrapping_sub((exponent << FRACTION_BITS).cast_unsigned()));
+        let mantissa =
+            Self::from_bits(self.to_bits().wrapping_sub((exponent << FRACTION_BITS).cast_unsigned()));
         let t = (mantissa - 1.0) / (mantissa + 1.0);
         let square = t * t;
         let [a, b, c, d] = LOG2_ODD;

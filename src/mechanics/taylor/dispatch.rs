@@ -63,30 +63,44 @@ accelerated! {
         change(&series.position, time)
     }
 
-    /// The columns of the matrix (rows x, y, z, vx, vy, vz) `time` after the series' instant.
+    /// What the columns of the matrix (rows x, y, z, vx, vy, vz) change by within `time` of the series' instant.
     pub fn flow_variational(columns: &Columns<f64>, time: f64) -> [[f64; 6]; 6] {
-        let mut matrix = [[0.0; 6]; 6];
+        let mut change = [[0.0; 6]; 6];
         let top = &columns.position[TERMS - 1];
         for axis in 0..3 {
             for column in 0..6 {
-                matrix[axis][column] = top[axis][column];
-                matrix[axis + 3][column] = top[axis][column] * RATE[ORDER];
+                change[axis][column] = top[axis][column];
+                change[axis + 3][column] = top[axis][column] * RATE[ORDER];
             }
         }
-        for k in (0..TERMS - 1).rev() {
+        for k in (1..TERMS - 1).rev() {
             let coefficients = &columns.position[k];
             for axis in 0..3 {
                 for column in 0..6 {
                     let p = coefficients[axis][column];
-                    matrix[axis][column] = matrix[axis][column].mul_add(time, p);
-                    if k > 0 {
-                        let rate = &mut matrix[axis + 3][column];
+                    let place = &mut change[axis][column];
+                    *place = place.mul_add(time, p);
+                    if k > 1 {
+                        let rate = &mut change[axis + 3][column];
                         *rate = rate.mul_add(time, p * RATE[k - 1]);
                     }
                 }
             }
         }
-        matrix
+        change.map(|row| row.map(|element| element * time))
+    }
+
+    /// The Jacobi constant 2Ω − v² of (x, y, z, vx, vy, vz).
+    pub fn jacobi_constant(primaries: &Primaries, state: &[Compensated; 6]) -> f64 {
+        let [x, y, z, vx, vy, vz] = state.map(|component| component.value);
+        let off_axis = z.mul_add(z, y * y);
+        let term = |centre: Compensated, share: f64| {
+            let away = state[0].minus(centre);
+            share / away.mul_add(away, off_axis).sqrt()
+        };
+        let potential = term(primaries.larger_x(), primaries.smaller_x().value)
+            + term(primaries.smaller_x(), primaries.mass_parameter());
+        2.0f64.mul_add(potential, y.mul_add(y, x * x)) - vz.mul_add(vz, vy.mul_add(vy, vx * vx))
     }
 }
 

@@ -9,7 +9,7 @@ mod recurrence;
 mod step;
 mod variational;
 
-pub use dispatch::{accelerated, expand, expand_variational, flow, flow_variational};
+pub use dispatch::{accelerated, expand, expand_variational, flow, flow_variational, jacobi_constant};
 pub use recurrence::Primaries;
 pub use step::{MAX_STEP, STEP_FLOOR, StepSize};
 pub use variational::Columns;

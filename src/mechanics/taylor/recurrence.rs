@@ -264,7 +264,7 @@ fn settled_products<R: Real, const K: usize>(s: &Series<R>) -> [[R; 2]; 3] {
 }
 
 /// Orders `K` and `K` + 1 of a force from its lower orders and the half squares h: with w ∝ h^(−3/2),
-/// w_k = −(1/h_0) Σ (1 + j/2k) h_j w_{k−j}, j = 1 … k.
+/// `w[k] = −1/h[0] Σ (1 + j/2k) h[j] w[k−j]`, j = 1 … k.
 #[inline(always)]
 fn inverse_cubes<R: Real, const K: usize>(
     h: &[R; TERMS],

@@ -53,10 +53,9 @@ impl<R: Real> Default for Columns<R> {
 #[inline(always)]
 pub(super) fn expand<R: Real>(series: &Series<R>, matrix: &[[R; COLUMNS]; 6], columns: &mut Columns<R>) {
     gradient(series, columns);
-    for axis in 0..3 {
-        columns.position[0][axis] = matrix[axis];
-        columns.position[1][axis] = matrix[axis + 3];
-    }
+    let (places, rates) = matrix.split_at(3);
+    columns.position[0].copy_from_slice(places);
+    columns.position[1].copy_from_slice(rates);
     for k in 0..ORDER {
         order(columns, k);
     }
@@ -118,12 +117,9 @@ fn order<R: Real>(c: &mut Columns<R>, k: usize) {
         let [x, y, z] = &c.position[k - j];
         for column in 0..COLUMNS {
             let (x, y, z) = (x[column], y[column], z[column]);
-            sums[0][column] =
-                xz[j].mul_add(z, xy[j].mul_add(y, xx[j].mul_add(x, sums[0][column])));
-            sums[1][column] =
-                yz[j].mul_add(z, yy[j].mul_add(y, xy[j].mul_add(x, sums[1][column])));
-            sums[2][column] =
-                zz[j].mul_add(z, yz[j].mul_add(y, xz[j].mul_add(x, sums[2][column])));
+            sums[0][column] = xz[j].mul_add(z, xy[j].mul_add(y, xx[j].mul_add(x, sums[0][column])));
+            sums[1][column] = yz[j].mul_add(z, yy[j].mul_add(y, xy[j].mul_add(x, sums[1][column])));
+            sums[2][column] = zz[j].mul_add(z, yz[j].mul_add(y, xz[j].mul_add(x, sums[2][column])));
         }
     }
     #[expect(clippy::cast_precision_loss, reason = "orders are small")]

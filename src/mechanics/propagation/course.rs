@@ -1,0 +1,449 @@
+//! One trajectory, step by step.
+
+use std::ops::ControlFlow;
+
+use nalgebra::{Matrix6, Vector3};
+
+use super::event::When;
+use super::manoeuvre::Manoeuvre;
+use super::matrix::Transition;
+use super::request::{MatrixOutput, Request, Sampling};
+use super::watch::{Hit, Stretch, Watch};
+use super::{Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Trajectory};
+use crate::arithmetic::sum::Compensated;
+use crate::interrupt::{Interrupt, Stop};
+use crate::quantity::Quantity;
+use crate::state::State;
+use crate::system::Primary;
+use crate::taylor::{self, STEP_FLOOR, Series};
+
+/// Steps between two polls: a tenth of a millisecond with a matrix, less without.
+const STEPS_PER_POLL: u64 = 64;
+/// Samples between two polls, where one step holds many.
+const SAMPLES_PER_POLL: usize = 1024;
+
+/// The trajectory of an initial state that nobody had time for.
+pub(super) fn not_started(request: &Request, index: usize) -> Trajectory {
+    let parts = request.parts();
+    Trajectory {
+        index,
+        outcome: Outcome::NotStarted,
+        last: parts.frame.from_default(parts.mass_parameter, &parts.states[index]),
+        stopped_by: None,
+        samples: Samples::default(),
+        events: Vec::new(),
+        matrix: None,
+        evidence: Evidence::default(),
+    }
+}
+
+/// Why the integration stops here, or does not go on at all.
+type Flow = Result<ControlFlow<Outcome>, Failure>;
+
+/// A trajectory under way.
+pub(super) struct Course<'a> {
+    request: &'a Request,
+    index: usize,
+    budget: &'a SampleBudget,
+    interrupt: &'a dyn Interrupt,
+    /// +1 forwards, −1 backwards.
+    direction: f64,
+    start: f64,
+    duration: f64,
+    state: [Compensated; 6],
+    /// Signed time since the start.
+    elapsed: Compensated,
+    series: Box<Series<f64>>,
+    transition: Option<Transition>,
+    watches: Vec<Watch>,
+    counts: Vec<u64>,
+    surfaces: Vec<(Primary, Watch)>,
+    scratch: Scratch,
+    /// Jacobi constant at the start of the leg.
+    leg_jacobi: Option<f64>,
+    next_sample: u64,
+    samples: Samples,
+    events: Vec<Occurrence>,
+    stopped_by: Option<usize>,
+    evidence: Evidence,
+}
+
+/// What is used anew in each step.
+#[derive(Default)]
+struct Scratch {
+    roots: Vec<f64>,
+    hits: Vec<Hit>,
+    /// Hits of all watches: the event, or none for a surface.
+    found: Vec<(Hit, Found)>,
+}
+
+#[derive(Clone, Copy)]
+enum Found {
+    Event(usize),
+    Surface(Primary),
+}
+
+impl<'a> Course<'a> {
+    pub(super) fn new(
+        request: &'a Request,
+        index: usize,
+        budget: &'a SampleBudget,
+        interrupt: &'a dyn Interrupt,
+    ) -> Self {
+        let parts = request.parts();
+        let initial = &parts.states[index];
+        let duration = request.duration(index);
+        let primaries = request.primaries();
+        let watches: Vec<_> =
+            parts.events.iter().map(|event| Watch::new(&event.when, parts.frame, primaries)).collect();
+        let surface = |(primary, radius): (Primary, Option<_>)| {
+            radius.map(|r| (primary, Watch::new(&When::Distance(primary, r), parts.frame, primaries)))
+        };
+        let surfaces = [(Primary::Larger, parts.contact.larger), (Primary::Smaller, parts.contact.smaller)]
+            .into_iter()
+            .filter_map(surface)
+            .collect();
+        Self {
+            request,
+            index,
+            budget,
+            interrupt,
+            direction: if duration < 0.0 { -1.0 } else { 1.0 },
+            start: initial.time,
+            duration,
+            state: std::array::from_fn(|i| Compensated::new(initial.components()[i])),
+            elapsed: Compensated::default(),
+            series: Box::default(),
+            transition: (parts.matrix != MatrixOutput::None).then(Transition::new),
+            counts: vec![0; watches.len()],
+            watches,
+            surfaces,
+            scratch: Scratch::default(),
+            leg_jacobi: None,
+            next_sample: 0,
+            samples: Samples::default(),
+            events: Vec::new(),
+            stopped_by: None,
+            evidence: Evidence::default(),
+        }
+    }
+
+    pub(super) fn run(mut self) -> Result<Trajectory, Failure> {
+        let outcome = match self.legs()? {
+            ControlFlow::Break(outcome) => outcome,
+            ControlFlow::Continue(()) => Outcome::Complete,
+        };
+        self.end_leg();
+        let frame = self.request.parts().frame;
+        let last = self.state_here();
+        let matrix = self.transition.as_mut().map(|transition| {
+            let (determinant, symplectic) = transition.defects();
+            self.evidence.determinant_defect = Some(determinant);
+            self.evidence.symplectic_defect = Some(symplectic);
+            transition.here()
+        });
+        Ok(Trajectory {
+            index: self.index,
+            outcome,
+            last: frame.from_default(self.request.parts().mass_parameter, &last),
+            stopped_by: self.stopped_by,
+            samples: self.samples,
+            events: self.events,
+            matrix: matrix.map(|m| in_frame(self.request, &m, self.start, last.time)),
+            evidence: self.evidence,
+        })
+    }
+
+    /// The legs between manoeuvres.
+    fn legs(&mut self) -> Flow {
+        if let Some(outcome) = self.inside() {
+            return Ok(ControlFlow::Break(outcome));
+        }
+        let manoeuvres = self.request.manoeuvres_of(self.index);
+        let mut rest = manoeuvres.as_slice();
+        loop {
+            // All manoeuvres of one instant, then the samples of that very instant, on their far side.
+            while let Some(((at, manoeuvre), later)) = rest.split_first()
+                && at.minus(self.elapsed) * self.direction <= 0.0
+            {
+                self.apply(manoeuvre);
+                rest = later;
+            }
+            let end = Compensated::new(self.duration);
+            let finished = end.minus(self.elapsed) * self.direction <= 0.0;
+            self.sample_here(finished)?;
+            if finished {
+                return Ok(ControlFlow::Continue(()));
+            }
+            let target = rest.first().map_or(end, |(at, _)| *at);
+            if let ControlFlow::Break(outcome) = self.leg(target)? {
+                return Ok(ControlFlow::Break(outcome));
+            }
+            self.elapsed = target;
+        }
+    }
+
+    /// Steps up to `target`, or to where the trajectory ends before.
+    fn leg(&mut self, target: Compensated) -> Flow {
+        let limits = self.request.limits();
+        loop {
+            if self.evidence.steps % STEPS_PER_POLL == STEPS_PER_POLL - 1
+                && let ControlFlow::Break(outcome) = self.poll()?
+            {
+                return Ok(ControlFlow::Break(outcome));
+            }
+            if self.evidence.steps == limits.steps {
+                return Ok(ControlFlow::Break(Outcome::StepLimit));
+            }
+            taylor::expand(self.request.primaries(), &self.state, &mut self.series);
+            self.measure(self.series.jacobi);
+            let remaining = target.minus(self.elapsed);
+            let step = self.request.step_size().from_log2_radius(self.series.log2_radius);
+            let last = step >= remaining.abs();
+            // Written so that a step that is no number counts as too small.
+            if !(last || step >= STEP_FLOOR) {
+                return Ok(ControlFlow::Break(Outcome::StepFloor));
+            }
+            self.evidence.steps += 1;
+            if let Some(transition) = &mut self.transition {
+                transition.expand(&self.series);
+            }
+            let length = if last { remaining } else { step * self.direction };
+            let stop = self.watch(length);
+            let end = stop.map_or(length, |(at, _)| at);
+            self.sample_within(end, last && stop.is_none())?;
+            self.advance(end);
+            if let Some((_, outcome)) = stop {
+                return Ok(ControlFlow::Break(outcome));
+            }
+            if last {
+                return Ok(ControlFlow::Continue(()));
+            }
+            if self.request.parts().sampling == Sampling::EveryStep {
+                self.push_sample(0.0, None)?;
+            }
+        }
+    }
+
+    fn poll(&self) -> Flow {
+        match self.interrupt.poll() {
+            Some(Stop::Cancelled) => Err(Failure::Cancelled),
+            Some(Stop::WallTime) => Ok(ControlFlow::Break(Outcome::WallTimeLimit)),
+            None => Ok(ControlFlow::Continue(())),
+        }
+    }
+
+    /// Takes the Jacobi constant of a place on the leg into account.
+    fn measure(&mut self, jacobi: f64) {
+        let reference = *self.leg_jacobi.get_or_insert(jacobi);
+        self.evidence.jacobi_drift = self.evidence.jacobi_drift.max((jacobi - reference).abs());
+    }
+
+    fn end_leg(&mut self) {
+        if self.leg_jacobi.is_some() {
+            self.measure(taylor::jacobi_constant(self.request.primaries(), &self.state));
+        }
+        self.leg_jacobi = None;
+    }
+
+    fn advance(&mut self, length: f64) {
+        let change = taylor::flow(&self.series, length);
+        for (component, change) in self.state.iter_mut().zip(change) {
+            *component = component.plus(change);
+        }
+        if let Some(transition) = &mut self.transition {
+            transition.advance(length);
+        }
+        self.elapsed = self.elapsed.plus(length);
+    }
+
+    /// The outcome of a start inside a primary.
+    fn inside(&self) -> Option<Outcome> {
+        let contact = self.request.parts().contact;
+        let primaries = self.request.primaries();
+        let below = |radius: Option<crate::quantity::Distance>, centre: Compensated| {
+            let away = Vector3::new(self.state[0].minus(centre), self.state[1].value, self.state[2].value);
+            radius.is_some_and(|radius| away.norm() < radius.get())
+        };
+        if below(contact.larger, primaries.larger_x()) {
+            Some(Outcome::ContactLarger)
+        } else if below(contact.smaller, primaries.smaller_x()) {
+            Some(Outcome::ContactSmaller)
+        } else {
+            None
+        }
+    }
+
+    fn apply(&mut self, manoeuvre: &Manoeuvre) {
+        self.end_leg();
+        let parts = self.request.parts();
+        let here = State { time: manoeuvre.time, ..self.state_here() };
+        let (change, jump) = manoeuvre.impulse(parts.frame, parts.mass_parameter, &here);
+        for (component, change) in self.state[3..].iter_mut().zip(change.iter()) {
+            *component = component.plus(change * self.direction);
+        }
+        if let Some(transition) = &mut self.transition {
+            transition.end_leg(jump.as_ref());
+        }
+        for watch in &mut self.watches {
+            watch.jumped();
+        }
+    }
+
+    /// Records the events of a step; gives where and why the trajectory ends in it, if it does.
+    fn watch(&mut self, length: f64) -> Option<(f64, Outcome)> {
+        if self.watches.is_empty() && self.surfaces.is_empty() {
+            return None;
+        }
+        let stretch = Stretch::new(
+            &self.series,
+            &self.state,
+            self.start + self.elapsed.value,
+            length,
+            self.elapsed.value,
+        );
+        let Scratch { roots, hits, found } = &mut self.scratch;
+        found.clear();
+        let events = self.watches.iter_mut().enumerate().map(|(entry, watch)| (Found::Event(entry), watch));
+        let surfaces = self.surfaces.iter_mut().map(|(primary, watch)| (Found::Surface(*primary), watch));
+        for (what, watch) in events.chain(surfaces) {
+            hits.clear();
+            watch.scan(&stretch, roots, hits);
+            found.extend(hits.iter().map(|hit| (*hit, what)));
+        }
+        // Stable: ties stay in the order of the entries, surfaces last.
+        found.sort_by(|(a, _), (b, _)| a.at.abs().total_cmp(&b.at.abs()));
+
+        let parts = self.request.parts();
+        for (hit, what) in &*found {
+            match *what {
+                // Only inwards along the integration; a way out shows where a trajectory began on the surface.
+                Found::Surface(primary) if hit.rate * self.direction < 0.0 => {
+                    let outcome = match primary {
+                        Primary::Larger => Outcome::ContactLarger,
+                        Primary::Smaller => Outcome::ContactSmaller,
+                    };
+                    return Some((hit.at, outcome));
+                }
+                Found::Surface(_) => {}
+                Found::Event(entry) => {
+                    let event = &parts.events[entry];
+                    let [x, y, z, vx, vy, vz] = stretch.components(hit.at);
+                    let time = self.start + (self.elapsed.value + (self.elapsed.rest + hit.at));
+                    let state = parts
+                        .frame
+                        .from_default(parts.mass_parameter, &State::new(time, [x, y, z, vx, vy, vz]));
+                    let admitted = event.direction.admits(hit.rate)
+                        && event.only.is_none_or(|only| only.admits(&state.position));
+                    if !admitted {
+                        continue;
+                    }
+                    self.events.push(Occurrence { event: entry, state });
+                    self.counts[entry] += 1;
+                    if event.stop_after.is_some_and(|count| count.get() == self.counts[entry]) {
+                        self.stopped_by = Some(entry);
+                        return Some((hit.at, Outcome::StoppedByEvent));
+                    }
+                    if self.events.len() == parts.limits.events {
+                        return Some((hit.at, Outcome::EventLimit));
+                    }
+                }
+            }
+        }
+        None
+    }
+
+    /// Signed time since the start and instant of a planned sample; none after the last, or where none is planned.
+    fn planned(&self, number: u64) -> Option<(Compensated, f64)> {
+        let count = self.request.planned_samples(self.index)?;
+        if number >= count {
+            return None;
+        }
+        #[expect(clippy::cast_precision_loss, reason = "the sample limit is far below 2^53")]
+        let (step, steps) = (number as f64, (count - 1) as f64);
+        let since = match &self.request.parts().sampling {
+            Sampling::Count(_) if number == count - 1 => self.duration,
+            Sampling::Count(_) => self.duration * (step / steps),
+            Sampling::Interval(interval) => (interval * step).min(self.duration.abs()) * self.direction,
+            Sampling::Times(times) => {
+                let time = *times.get(usize::try_from(number).ok()?)?;
+                return Some((Compensated::sum(time, -self.start), time));
+            }
+            Sampling::None | Sampling::EveryStep => return None,
+        };
+        Some((Compensated::new(since), self.start + since))
+    }
+
+    /// The planned samples up to `end` of the step under way, without those of its very end if a leg ends there.
+    fn sample_within(&mut self, end: f64, leg_ends: bool) -> Result<(), Failure> {
+        let mut since_poll = 0;
+        while let Some((since, time)) = self.planned(self.next_sample) {
+            let at = since.minus(self.elapsed);
+            let ahead = (at - end) * self.direction;
+            if ahead > 0.0 || (leg_ends && ahead == 0.0) {
+                break;
+            }
+            self.push_sample(at, Some(time))?;
+            self.next_sample += 1;
+            since_poll += 1;
+            if since_poll % SAMPLES_PER_POLL == 0 && self.interrupt.poll() == Some(Stop::Cancelled) {
+                return Err(Failure::Cancelled);
+            }
+        }
+        Ok(())
+    }
+
+    /// The samples of the very instant reached, or all that rounding has left over once `finished`.
+    fn sample_here(&mut self, finished: bool) -> Result<(), Failure> {
+        if self.request.parts().sampling == Sampling::EveryStep {
+            return self.push_sample(0.0, None);
+        }
+        while let Some((since, time)) = self.planned(self.next_sample) {
+            if !finished && since.minus(self.elapsed) * self.direction > 0.0 {
+                break;
+            }
+            self.push_sample(0.0, Some(time))?;
+            self.next_sample += 1;
+        }
+        Ok(())
+    }
+
+    fn state_here(&self) -> State {
+        let time = self.start + (self.elapsed.value + self.elapsed.rest);
+        State::new(time, self.state.map(|component| component.value))
+    }
+
+    /// The state `at` a time after the start of the step under way, 0 for the place reached.
+    fn push_sample(&mut self, at: f64, time: Option<f64>) -> Result<(), Failure> {
+        self.budget.take(self.request.values_per_sample())?;
+        let here = self.state_here();
+        let time = time.unwrap_or(here.time);
+        let parts = self.request.parts();
+        let components = if at == 0.0 {
+            self.state.map(|component| component.value)
+        } else {
+            let change = taylor::flow(&self.series, at);
+            std::array::from_fn(|i| self.state[i].plus(change[i]).value)
+        };
+        let seen = parts.frame.from_default(parts.mass_parameter, &State::new(time, components));
+        self.samples.times.push(time);
+        self.samples.positions.push(seen.position);
+        self.samples.velocities.push(seen.velocity);
+        if parts.matrix == MatrixOutput::Samples
+            && let Some(transition) = &self.transition
+        {
+            let matrix = if at == 0.0 { transition.here() } else { transition.at(at) };
+            self.samples.matrices.push(in_frame(self.request, &matrix, self.start, time));
+        }
+        Ok(())
+    }
+}
+
+/// A matrix of the default frame between two instants in the request's frame.
+fn in_frame(request: &Request, matrix: &Matrix6<f64>, from: f64, to: f64) -> Matrix6<f64> {
+    let frame = request.parts().frame;
+    if frame.is_default() {
+        return *matrix;
+    }
+    frame.jacobian(to) * matrix * frame.inverse_jacobian(from)
+}

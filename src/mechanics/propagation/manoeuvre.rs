@@ -1,0 +1,88 @@
+//! Impulsive changes of velocity.
+
+use nalgebra::{Matrix3, Matrix6, Vector3};
+
+use crate::frame::Frame;
+use crate::quantity::MassParameter;
+use crate::state::State;
+
+/// An impulse at an instant.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Manoeuvre {
+    /// Instant on the absolute clock.
+    pub time: f64,
+    /// Change of velocity along `axes`.
+    pub delta_v: Vector3<f64>,
+    /// The axes of the change.
+    pub axes: BurnAxes,
+    /// The trajectories it applies to; `None` for all.
+    pub trajectories: Option<Vec<usize>>,
+}
+
+/// The axes an impulse is given in.
+#[derive(Clone, Copy, Debug, Default, Eq, PartialEq)]
+pub enum BurnAxes {
+    /// The request's frame.
+    #[default]
+    Frame,
+    /// Along v, r × v and v × (r × v) of the state before, in the request's frame.
+    VelocityNormalBinormal,
+}
+
+impl Manoeuvre {
+    /// The velocity of the default frame that is added to `state` (default frame), and d(state after)/d(state
+    /// before) there.
+    pub(super) fn impulse(
+        &self,
+        frame: Frame,
+        mass_parameter: MassParameter,
+        state: &State,
+    ) -> (Vector3<f64>, Option<Matrix6<f64>>) {
+        match self.axes {
+            BurnAxes::Frame => (frame.direction_to_default(state.time, &self.delta_v), None),
+            BurnAxes::VelocityNormalBinormal => {
+                let seen = frame.from_default(mass_parameter, state);
+                let (change, slopes) = along_velocity(&seen.position, &seen.velocity, &self.delta_v);
+                let mut jump = Matrix6::identity();
+                jump.fixed_view_mut::<3, 3>(3, 0).copy_from(&slopes[0]);
+                jump.fixed_view_mut::<3, 3>(3, 3).copy_from(&(Matrix3::identity() + slopes[1]));
+                let to_frame = frame.jacobian(state.time);
+                let jump = frame.inverse_jacobian(state.time) * jump * to_frame;
+                (frame.direction_to_default(state.time, &change), Some(jump))
+            }
+        }
+    }
+}
+
+/// The change of velocity with the components `along` v, r × v and v × (r × v), and its derivatives with respect
+/// to r and v. A direction that is not defined, v = 0 or r parallel to v, adds nothing.
+fn along_velocity(
+    r: &Vector3<f64>,
+    v: &Vector3<f64>,
+    along: &Vector3<f64>,
+) -> (Vector3<f64>, [Matrix3<f64>; 2]) {
+    let normal = r.cross(v);
+    let binormal = v.cross(&normal);
+    // The unnormalised directions' derivatives with respect to r and v.
+    let normal_by = [-v.cross_matrix(), r.cross_matrix()];
+    let binormal_by =
+        [v.cross_matrix() * normal_by[0], v.cross_matrix() * normal_by[1] - normal.cross_matrix()];
+    let velocity_by = [Matrix3::zeros(), Matrix3::identity()];
+
+    let mut change = Vector3::zeros();
+    let mut slopes = [Matrix3::zeros(); 2];
+    for (component, direction, by) in
+        [(along.x, v, velocity_by), (along.y, &normal, normal_by), (along.z, &binormal, binormal_by)]
+    {
+        let length = direction.norm();
+        if component == 0.0 || length == 0.0 {
+            continue;
+        }
+        let unit = direction / length;
+        change += component * unit;
+        let projector = (Matrix3::identity() - unit * unit.transpose()) * (component / length);
+        slopes[0] += projector * by[0];
+        slopes[1] += projector * by[1];
+    }
+    (change, slopes)
+}

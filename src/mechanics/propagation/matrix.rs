@@ -1,0 +1,106 @@
+//! The state transition matrix along a trajectory, in the default frame, leg by leg between manoeuvres.
+
+use nalgebra::{Matrix3, Matrix6};
+
+use crate::arithmetic::sum::Compensated;
+use crate::taylor::{self, Columns, Series};
+
+/// The matrix of the leg under way, and of all before it.
+pub(super) struct Transition {
+    columns: Box<Columns<f64>>,
+    leg: [[Compensated; 6]; 6],
+    before: Matrix6<f64>,
+    determinant_defect: f64,
+    symplectic_defect: f64,
+}
+
+impl Transition {
+    pub(super) fn new() -> Self {
+        Self {
+            columns: Box::default(),
+            leg: identity(),
+            before: Matrix6::identity(),
+            determinant_defect: 0.0,
+            symplectic_defect: 0.0,
+        }
+    }
+
+    /// Prepares a step along `series`.
+    pub(super) fn expand(&mut self, series: &Series<f64>) {
+        taylor::expand_variational(series, &self.leg.map(|row| row.map(|c| c.value)), &mut self.columns);
+    }
+
+    /// The leg's matrix `at` a time after the start of the step.
+    fn leg_at(&self, at: f64) -> [[Compensated; 6]; 6] {
+        let change = taylor::flow_variational(&self.columns, at);
+        std::array::from_fn(|row| {
+            std::array::from_fn(|column| self.leg[row][column].plus(change[row][column]))
+        })
+    }
+
+    /// d(state)/d(initial state) `at` a time after the start of the step.
+    pub(super) fn at(&self, at: f64) -> Matrix6<f64> {
+        rounded(&self.leg_at(at)) * self.before
+    }
+
+    /// d(state)/d(initial state) at the last place reached.
+    pub(super) fn here(&self) -> Matrix6<f64> {
+        rounded(&self.leg) * self.before
+    }
+
+    pub(super) fn advance(&mut self, at: f64) {
+        self.leg = self.leg_at(at);
+    }
+
+    /// Ends a leg, measuring it; the next one begins after a jump.
+    pub(super) fn end_leg(&mut self, jump: Option<&Matrix6<f64>>) {
+        self.measure();
+        self.before = self.here();
+        if let Some(jump) = jump {
+            self.before = jump * self.before;
+        }
+        self.leg = identity();
+    }
+
+    /// Takes the leg's defects into account.
+    fn measure(&mut self) {
+        let m = canonical(&rounded(&self.leg));
+        self.determinant_defect = self.determinant_defect.max((m.determinant() - 1.0).abs());
+        let j = symplectic_unit();
+        self.symplectic_defect = self.symplectic_defect.max((m.transpose() * j * m - j).amax());
+    }
+
+    /// |det − 1| and the largest element of `|MᵀJM − J|`, the largest of the legs.
+    pub(super) fn defects(&mut self) -> (f64, f64) {
+        self.measure();
+        (self.determinant_defect, self.symplectic_defect)
+    }
+}
+
+fn identity() -> [[Compensated; 6]; 6] {
+    std::array::from_fn(|row| {
+        std::array::from_fn(|column| Compensated::new(if row == column { 1.0 } else { 0.0 }))
+    })
+}
+
+fn rounded(matrix: &[[Compensated; 6]; 6]) -> Matrix6<f64> {
+    Matrix6::from_fn(|row, column| matrix[row][column].value)
+}
+
+/// The matrix of canonical momenta p = v + ẑ × r instead of velocities.
+fn canonical(matrix: &Matrix6<f64>) -> Matrix6<f64> {
+    let mut momenta = Matrix6::identity();
+    momenta[(3, 1)] = -1.0;
+    momenta[(4, 0)] = 1.0;
+    let mut velocities = Matrix6::identity();
+    velocities[(3, 1)] = 1.0;
+    velocities[(4, 0)] = -1.0;
+    momenta * matrix * velocities
+}
+
+fn symplectic_unit() -> Matrix6<f64> {
+    let mut j = Matrix6::zeros();
+    j.fixed_view_mut::<3, 3>(0, 3).copy_from(&Matrix3::identity());
+    j.fixed_view_mut::<3, 3>(3, 0).copy_from(&-Matrix3::identity());
+    j
+}

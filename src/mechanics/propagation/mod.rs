@@ -1,0 +1,165 @@
+//! Trajectories: samples, events, manoeuvres, contact, state transition matrices.
+//!
+//! The integration is [`crate::taylor`]'s; state and time are accumulated with compensation, so that the drift of
+//! the Jacobi constant stays a random walk of the unit round-off. Samples and events are evaluated from the
+//! Taylor polynomial of the step they fall into: they cost no step and change none.
+
+mod course;
+pub mod event;
+mod manoeuvre;
+mod matrix;
+mod request;
+mod roots;
+mod watch;
+
+use std::sync::atomic::{AtomicU64, Ordering};
+
+use nalgebra::{Matrix6, Vector3};
+use thiserror::Error;
+
+use crate::interrupt::{Interrupt, Stop};
+use crate::state::State;
+
+pub use manoeuvre::{BurnAxes, Manoeuvre};
+pub use request::{Contact, Durations, Invalid, Limits, MatrixOutput, Request, RequestParts, Sampling};
+
+/// Why a trajectory ended.
+#[derive(Clone, Copy, Debug, Eq, PartialEq)]
+pub enum Outcome {
+    /// It ran its whole duration.
+    Complete,
+    /// An event reached its count.
+    StoppedByEvent,
+    /// It reached the larger primary's surface, or began inside.
+    ContactLarger,
+    /// It reached the smaller primary's surface, or began inside.
+    ContactSmaller,
+    /// The steps granted were used up.
+    StepLimit,
+    /// The events granted were used up.
+    EventLimit,
+    /// The step shrank below [`crate::taylor::STEP_FLOOR`], on the way into a primary's centre.
+    StepFloor,
+    /// The time granted was used up.
+    WallTimeLimit,
+    /// The time granted was used up before it began.
+    NotStarted,
+}
+
+/// States along a trajectory in the request's frame, as columns of one length.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub struct Samples {
+    /// Instants on the absolute clock.
+    pub times: Vec<f64>,
+    /// Positions (x, y, z).
+    pub positions: Vec<Vector3<f64>>,
+    /// Velocities (vx, vy, vz).
+    pub velocities: Vec<Vector3<f64>>,
+    /// d(state)/d(initial state), where asked for.
+    pub matrices: Vec<Matrix6<f64>>,
+}
+
+/// An event that happened.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Occurrence {
+    /// Index of the event in the request.
+    pub event: usize,
+    /// The state at that instant, in the request's frame.
+    pub state: State,
+}
+
+/// How good a trajectory is, measured along it.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Evidence {
+    /// Steps taken.
+    pub steps: u64,
+    /// Largest departure of the Jacobi constant from its value at the start of the leg between two manoeuvres.
+    pub jacobi_drift: f64,
+    /// |det − 1| of the normalised rotating canonical matrix, the largest of the legs.
+    pub determinant_defect: Option<f64>,
+    /// Largest element of `|MᵀJM − J|` of that matrix, the largest of the legs.
+    pub symplectic_defect: Option<f64>,
+}
+
+/// A trajectory in the request's frame.
+#[derive(Clone, Debug, PartialEq)]
+pub struct Trajectory {
+    /// Index of its initial state in the request.
+    pub index: usize,
+    /// Why it ended.
+    pub outcome: Outcome,
+    /// The state at its end, from which it can go on; its initial state where it did not start.
+    pub last: State,
+    /// The event that stopped it.
+    pub stopped_by: Option<usize>,
+    /// The samples asked for.
+    pub samples: Samples,
+    /// The events that happened, in the order of the integration.
+    pub events: Vec<Occurrence>,
+    /// d(last)/d(initial).
+    pub matrix: Option<Matrix6<f64>>,
+    /// How good it is.
+    pub evidence: Evidence,
+}
+
+/// Why there is no solution.
+#[derive(Clone, Copy, Debug, Eq, Error, PartialEq)]
+pub enum Failure {
+    /// Nobody waits for it.
+    #[error("the computation was cancelled")]
+    Cancelled,
+    /// Samples at every step, whose number shows only on the way, came to more than was granted.
+    #[error("the samples hold more than {limit} values")]
+    TooManySamples {
+        /// The values granted.
+        limit: u64,
+    },
+}
+
+/// What all trajectories of a request may hold together.
+#[derive(Debug)]
+pub struct SampleBudget {
+    left: AtomicU64,
+    limit: u64,
+}
+
+impl SampleBudget {
+    /// So many numbers.
+    #[must_use]
+    pub fn new(limit: u64) -> Self {
+        Self { left: AtomicU64::new(limit), limit }
+    }
+
+    fn take(&self, values: u64) -> Result<(), Failure> {
+        self.left
+            .fetch_update(Ordering::Relaxed, Ordering::Relaxed, |left| left.checked_sub(values))
+            .map(drop)
+            .map_err(|_| Failure::TooManySamples { limit: self.limit })
+    }
+}
+
+/// All trajectories of a request, in its order.
+///
+/// # Errors
+/// [`Failure`] where the computation was cancelled or outgrew its sample budget.
+pub fn solve(request: &Request, interrupt: &dyn Interrupt) -> Result<Vec<Trajectory>, Failure> {
+    let budget = SampleBudget::new(request.limits().sample_values);
+    (0..request.count()).map(|index| propagate(request, index, &budget, interrupt)).collect()
+}
+
+/// One trajectory of a request; its index must be below [`Request::count`].
+///
+/// # Errors
+/// [`Failure`] where the computation was cancelled or outgrew the sample budget.
+pub fn propagate(
+    request: &Request,
+    index: usize,
+    budget: &SampleBudget,
+    interrupt: &dyn Interrupt,
+) -> Result<Trajectory, Failure> {
+    match interrupt.poll() {
+        Some(Stop::Cancelled) => Err(Failure::Cancelled),
+        Some(Stop::WallTime) => Ok(course::not_started(request, index)),
+        None => course::Course::new(request, index, budget, interrupt).run(),
+    }
+}

@@ -1,0 +1,440 @@
+//! What is asked for, checked as a whole.
+
+use thiserror::Error;
+
+use super::event::Event;
+use super::manoeuvre::{BurnAxes, Manoeuvre};
+use crate::arithmetic::sum::Compensated;
+use crate::frame::Frame;
+use crate::quantity::{Distance, Duration, MassParameter, Quantity, Tolerance};
+use crate::state::State;
+use crate::system::Primary;
+use crate::taylor::{Primaries, StepSize};
+
+/// Numbers of a sample: time, position and velocity.
+const STATE_VALUES: u64 = 7;
+/// Numbers of a state transition matrix.
+const MATRIX_VALUES: u64 = 36;
+/// A last interval is not dropped because its product was rounded up past the end.
+const INTERVAL_SLACK: f64 = 1.0 + 4.0 * f64::EPSILON;
+
+/// Where a trajectory is sampled.
+#[derive(Clone, Debug, Default, PartialEq)]
+pub enum Sampling {
+    /// Nowhere.
+    #[default]
+    None,
+    /// At the initial state and at the end of each step.
+    EveryStep,
+    /// At so many instants, at least 2, evenly spaced from start to end.
+    Count(u64),
+    /// At the start and from there every so often.
+    Interval(f64),
+    /// At these instants of the absolute clock, strictly along the integration.
+    Times(Vec<f64>),
+}
+
+/// Which state transition matrices are asked for.
+#[derive(Clone, Copy, Debug, Default, Eq, PartialEq)]
+pub enum MatrixOutput {
+    /// None.
+    #[default]
+    None,
+    /// That of the final state.
+    Final,
+    /// That of the final state and of each sample.
+    Samples,
+}
+
+/// The durations of the trajectories.
+#[derive(Clone, Debug, PartialEq)]
+pub enum Durations {
+    /// One for all.
+    All(Duration),
+    /// One for each.
+    Each(Vec<Duration>),
+}
+
+/// The surfaces that end a trajectory.
+#[derive(Clone, Copy, Debug, Default, PartialEq)]
+pub struct Contact {
+    /// The larger primary's radius.
+    pub larger: Option<Distance>,
+    /// The smaller primary's radius.
+    pub smaller: Option<Distance>,
+}
+
+/// What a request may use.
+#[derive(Clone, Copy, Debug, Eq, PartialEq)]
+pub struct Limits {
+    /// Steps of each trajectory.
+    pub steps: u64,
+    /// Events of each trajectory.
+    pub events: usize,
+    /// Sample numbers of all trajectories together.
+    pub sample_values: u64,
+}
+
+/// The parts of a request, each valid for itself.
+#[derive(Clone, Debug)]
+pub struct RequestParts {
+    /// μ.
+    pub mass_parameter: MassParameter,
+    /// The frame of events, manoeuvres and results.
+    pub frame: Frame,
+    /// Initial states, in the default frame whatever `frame` is.
+    pub states: Vec<State>,
+    /// How long each runs.
+    pub durations: Durations,
+    /// Relative local error per step.
+    pub tolerance: Tolerance,
+    /// Where they are sampled.
+    pub sampling: Sampling,
+    /// Which matrices are returned.
+    pub matrix: MatrixOutput,
+    /// What is watched for.
+    pub events: Vec<Event>,
+    /// Impulses.
+    pub manoeuvres: Vec<Manoeuvre>,
+    /// Surfaces.
+    pub contact: Contact,
+    /// Bounds.
+    pub limits: Limits,
+}
+
+/// What is wrong between the parts of a request.
+#[derive(Clone, Debug, Error, PartialEq)]
+pub enum Invalid {
+    /// A list of durations of another length than the states.
+    #[error("{durations} durations are given for {states} initial states")]
+    DurationCount {
+        /// Durations given.
+        durations: usize,
+        /// Initial states given.
+        states: usize,
+    },
+    /// An initial state lies on a primary.
+    #[error("lies on the {} primary's centre, where the equations of motion are singular", name(*.primary))]
+    OnPrimary {
+        /// The initial state.
+        state: usize,
+        /// The primary.
+        primary: Primary,
+    },
+    /// Fewer than two samples from start to end.
+    #[error("must be at least 2, for both ends are included, got {0}")]
+    TooFewSamples(u64),
+    /// An interval that is not a positive number.
+    #[error("must be a finite number above 0, got {0}")]
+    Interval(f64),
+    /// An interval longer than the duration.
+    #[error("{interval} is longer than the duration {duration} of trajectory {trajectory}")]
+    LongInterval {
+        /// The interval.
+        interval: f64,
+        /// The duration.
+        duration: f64,
+        /// The trajectory.
+        trajectory: usize,
+    },
+    /// A sample's time that does not follow the one before.
+    #[error("{time} does not follow {before} in the direction of the integration")]
+    TimeOrder {
+        /// Its index.
+        index: usize,
+        /// Its time.
+        time: f64,
+        /// The time before it.
+        before: f64,
+    },
+    /// A sample's time outside a trajectory.
+    #[error("{time} lies outside trajectory {trajectory}, which runs from {from} to {to}")]
+    TimeOutside {
+        /// Its index.
+        index: usize,
+        /// Its time.
+        time: f64,
+        /// The trajectory.
+        trajectory: usize,
+        /// Its start.
+        from: f64,
+        /// Its end.
+        to: f64,
+    },
+    /// A manoeuvre outside a trajectory.
+    #[error("{time} lies outside trajectory {trajectory}, which runs from {from} to {to}")]
+    ManoeuvreOutside {
+        /// Its index.
+        index: usize,
+        /// Its time.
+        time: f64,
+        /// The trajectory.
+        trajectory: usize,
+        /// Its start.
+        from: f64,
+        /// Its end.
+        to: f64,
+    },
+    /// A manoeuvre for a trajectory that is not there.
+    #[error("there is no initial state {trajectory}; {states} are given, counted from 0")]
+    ManoeuvreFor {
+        /// Its index.
+        index: usize,
+        /// The place in its list.
+        place: usize,
+        /// What is not there.
+        trajectory: usize,
+        /// Initial states given.
+        states: usize,
+    },
+    /// A manoeuvre along the velocity before it, met backwards.
+    #[error(
+        "velocity_normal_binormal needs the state before the manoeuvre, but trajectory {trajectory} runs backwards"
+    )]
+    ManoeuvreBackwards {
+        /// Its index.
+        index: usize,
+        /// The trajectory.
+        trajectory: usize,
+    },
+    /// More sample numbers than granted.
+    #[error("the samples would hold {asked} values; at most {limit} are allowed")]
+    SampleValues {
+        /// Numbers asked for.
+        asked: u128,
+        /// Numbers granted.
+        limit: u64,
+    },
+}
+
+fn name(primary: Primary) -> &'static str {
+    match primary {
+        Primary::Larger => "larger",
+        Primary::Smaller => "smaller",
+    }
+}
+
+/// A checked request.
+#[derive(Clone, Debug)]
+pub struct Request {
+    parts: RequestParts,
+    primaries: Primaries,
+    step_size: StepSize,
+}
+
+impl Request {
+    /// Checks the parts against each other.
+    ///
+    /// # Errors
+    /// Everything that is wrong between them.
+    pub fn new(parts: RequestParts) -> Result<Self, Vec<Invalid>> {
+        let mut problems = Vec::new();
+        let primaries = Primaries::new(parts.mass_parameter.get());
+        check_states(&parts, &primaries, &mut problems);
+        if let Durations::Each(durations) = &parts.durations
+            && durations.len() != parts.states.len()
+        {
+            problems.push(Invalid::DurationCount { durations: durations.len(), states: parts.states.len() });
+            return Err(problems);
+        }
+        let step_size = StepSize::new(parts.tolerance.get());
+        let mut request = Self { parts, primaries, step_size };
+        request.check_sampling(&mut problems);
+        request.check_manoeuvres(&mut problems);
+        for list in request.parts.manoeuvres.iter_mut().filter_map(|m| m.trajectories.as_mut()) {
+            list.sort_unstable();
+        }
+        if problems.is_empty() { Ok(request) } else { Err(problems) }
+    }
+
+    /// Number of trajectories.
+    #[must_use]
+    pub fn count(&self) -> usize {
+        self.parts.states.len()
+    }
+
+    /// The parts it was made of.
+    #[must_use]
+    pub fn parts(&self) -> &RequestParts {
+        &self.parts
+    }
+
+    /// What it may use.
+    #[must_use]
+    pub fn limits(&self) -> Limits {
+        self.parts.limits
+    }
+
+    pub(super) fn primaries(&self) -> &Primaries {
+        &self.primaries
+    }
+
+    pub(super) fn step_size(&self) -> StepSize {
+        self.step_size
+    }
+
+    /// The signed duration of a trajectory.
+    #[must_use]
+    pub fn duration(&self, trajectory: usize) -> f64 {
+        match &self.parts.durations {
+            Durations::All(duration) => duration.get(),
+            Durations::Each(durations) => durations[trajectory].get(),
+        }
+    }
+
+    /// Numbers of one sample.
+    pub(super) fn values_per_sample(&self) -> u64 {
+        STATE_VALUES + if self.parts.matrix == MatrixOutput::Samples { MATRIX_VALUES } else { 0 }
+    }
+
+    /// Samples of a trajectory that runs to its end; none where the steps decide.
+    pub(super) fn planned_samples(&self, trajectory: usize) -> Option<u64> {
+        match &self.parts.sampling {
+            Sampling::None => Some(0),
+            Sampling::EveryStep => None,
+            Sampling::Count(count) => Some(*count),
+            #[expect(
+                clippy::cast_possible_truncation,
+                clippy::cast_sign_loss,
+                reason = "positive, and a number too large saturates and is refused"
+            )]
+            Sampling::Interval(interval) => Some(
+                ((self.duration(trajectory).abs() / interval * INTERVAL_SLACK).floor() as u64)
+                    .saturating_add(1),
+            ),
+            Sampling::Times(times) => Some(times.len() as u64),
+        }
+    }
+
+    fn ends(&self, trajectory: usize) -> (f64, f64) {
+        let from = self.parts.states[trajectory].time;
+        (from, from + self.duration(trajectory))
+    }
+
+    /// Whether an instant lies in the closed span of a trajectory.
+    fn holds(&self, trajectory: usize, time: f64) -> bool {
+        let (from, to) = self.ends(trajectory);
+        let (low, high) = if from <= to { (from, to) } else { (to, from) };
+        time >= low && time <= high
+    }
+
+    fn check_sampling(&self, problems: &mut Vec<Invalid>) {
+        match &self.parts.sampling {
+            Sampling::None | Sampling::EveryStep => return,
+            Sampling::Count(count) if *count < 2 => {
+                problems.push(Invalid::TooFewSamples(*count));
+                return;
+            }
+            Sampling::Interval(interval) if !(interval.is_finite() && *interval > 0.0) => {
+                problems.push(Invalid::Interval(*interval));
+                return;
+            }
+            Sampling::Count(_) | Sampling::Interval(_) | Sampling::Times(_) => {}
+        }
+        // First of all the number, which bounds the work of checking each time against each trajectory.
+        let each = u128::from(self.values_per_sample());
+        let asked: u128 =
+            (0..self.count()).filter_map(|t| self.planned_samples(t)).map(|n| u128::from(n) * each).sum();
+        let limit = self.parts.limits.sample_values;
+        if asked > u128::from(limit) {
+            problems.push(Invalid::SampleValues { asked, limit });
+            return;
+        }
+        match &self.parts.sampling {
+            Sampling::Interval(interval) => {
+                let short = |t: &usize| self.duration(*t).abs() * INTERVAL_SLACK < *interval;
+                if let Some(trajectory) = (0..self.count()).find(short) {
+                    let duration = self.duration(trajectory);
+                    problems.push(Invalid::LongInterval { interval: *interval, duration, trajectory });
+                }
+            }
+            Sampling::Times(times) => self.check_times(times, problems),
+            Sampling::None | Sampling::EveryStep | Sampling::Count(_) => {}
+        }
+    }
+
+    /// Each wrong time is reported once, for the first trajectory it is wrong for.
+    fn check_times(&self, times: &[f64], problems: &mut Vec<Invalid>) {
+        for (index, &time) in times.iter().enumerate() {
+            for trajectory in 0..self.count() {
+                if !self.holds(trajectory, time) {
+                    let (from, to) = self.ends(trajectory);
+                    problems.push(Invalid::TimeOutside { index, time, trajectory, from, to });
+                    break;
+                }
+                let Some(&before) = index.checked_sub(1).and_then(|i| times.get(i)) else { continue };
+                let follows = if self.duration(trajectory) < 0.0 { time < before } else { time > before };
+                if !follows {
+                    problems.push(Invalid::TimeOrder { index, time, before });
+                    break;
+                }
+            }
+        }
+    }
+
+    fn check_manoeuvres(&self, problems: &mut Vec<Invalid>) {
+        let states = self.count();
+        for (index, manoeuvre) in self.parts.manoeuvres.iter().enumerate() {
+            for (place, &trajectory) in manoeuvre.trajectories.iter().flatten().enumerate() {
+                if trajectory >= states {
+                    problems.push(Invalid::ManoeuvreFor { index, place, trajectory, states });
+                }
+            }
+            let time = manoeuvre.time;
+            let everyone: Vec<usize>;
+            let concerned = if let Some(list) = &manoeuvre.trajectories {
+                list
+            } else {
+                everyone = (0..states).collect();
+                &everyone
+            };
+            let mut concerned = concerned.iter().copied().filter(|t| *t < states);
+            if let Some(trajectory) = concerned.clone().find(|&t| !self.holds(t, time)) {
+                let (from, to) = self.ends(trajectory);
+                problems.push(Invalid::ManoeuvreOutside { index, time, trajectory, from, to });
+            }
+            if manoeuvre.axes == BurnAxes::VelocityNormalBinormal
+                && let Some(trajectory) = concerned.find(|&t| self.duration(t) < 0.0)
+            {
+                problems.push(Invalid::ManoeuvreBackwards { index, trajectory });
+            }
+        }
+    }
+
+    /// The manoeuvres of a trajectory with their signed time since its start, along the integration.
+    pub(super) fn manoeuvres_of(&self, trajectory: usize) -> Vec<(Compensated, &Manoeuvre)> {
+        let start = self.parts.states[trajectory].time;
+        let backwards = self.duration(trajectory) < 0.0;
+        let mut own: Vec<_> = self
+            .parts
+            .manoeuvres
+            .iter()
+            .filter(|manoeuvre| concerns(manoeuvre, trajectory))
+            .map(|manoeuvre| (Compensated::sum(manoeuvre.time, -start), manoeuvre))
+            .collect();
+        own.sort_by(|(_, a), (_, b)| a.time.total_cmp(&b.time));
+        if backwards {
+            own.reverse();
+        }
+        own
+    }
+}
+
+/// Whether a manoeuvre, its list sorted, applies to a trajectory.
+fn concerns(manoeuvre: &Manoeuvre, trajectory: usize) -> bool {
+    manoeuvre.trajectories.as_ref().is_none_or(|list| list.binary_search(&trajectory).is_ok())
+}
+
+fn check_states(parts: &RequestParts, primaries: &Primaries, problems: &mut Vec<Invalid>) {
+    for (state, initial) in parts.states.iter().enumerate() {
+        let x = Compensated::new(initial.position.x);
+        for (primary, centre) in
+            [(Primary::Larger, primaries.larger_x()), (Primary::Smaller, primaries.smaller_x())]
+        {
+            let away = [x.minus(centre), initial.position.y, initial.position.z];
+            if away.iter().all(|c| c * c == 0.0) {
+                problems.push(Invalid::OnPrimary { state, primary });
+            }
+        }
+    }
+}
