@@ -67,25 +67,31 @@ const WEIGHTS: [[f64; TERMS]; TERMS] = {
     weights
 };
 
-/// 1/((k + 1)(k + 2)): from the series of the acceleration to that of the position.
+/// 1/((k + 1)(k + 2)), from the series of the acceleration to that of the position, and what rounding it lost: left
+/// out, that would bend every step the same way, and the Jacobi constant would drift linearly.
 #[expect(clippy::cast_precision_loss, reason = "orders are small")]
-const TWICE_INTEGRATED: [f64; TERMS] = {
-    let mut factors = [0.0; TERMS];
+const TWICE_INTEGRATED: [(f64, f64); TERMS] = {
+    let mut factors = [(0.0, 0.0); TERMS];
     let mut k = 0;
     while k < TERMS {
-        factors[k] = 1.0 / ((k + 1) * (k + 2)) as f64;
+        let divisor = ((k + 1) * (k + 2)) as f64;
+        let factor = 1.0 / divisor;
+        // The remainder 1 − factor · divisor, exactly, the factor split so that both products are exact.
+        let high = f64::from_bits(factor.to_bits() & !((1 << 27) - 1));
+        let rest = ((1.0 - high * divisor) - (factor - high) * divisor) / divisor;
+        factors[k] = (factor, rest);
         k += 1;
     }
     factors
 };
 
-/// 2/(k + 2): the Coriolis acceleration 2 (k + 1) p, twice integrated.
+/// 2 (k + 1): from coefficient k + 1 of the position to coefficient k of the Coriolis acceleration.
 #[expect(clippy::cast_precision_loss, reason = "orders are small")]
 const CORIOLIS: [f64; TERMS] = {
     let mut factors = [0.0; TERMS];
     let mut k = 0;
     while k < TERMS {
-        factors[k] = 2.0 / (k + 2) as f64;
+        factors[k] = (2 * (k + 1)) as f64;
         k += 1;
     }
     factors
@@ -214,14 +220,26 @@ fn pair<R: Real, const K: usize>(leading: &Leading<R>, s: &mut Series<R>) {
     acceleration[0][1] = acceleration[0][1] + (-s.side).mul_add(s.far[K + 1], d[K + 1]);
     acceleration[1][0] = acceleration[1][0] + y[K];
     acceleration[1][1] = acceleration[1][1] + y[K + 1];
-    let (even, odd) = (constant(TWICE_INTEGRATED[K]), constant(TWICE_INTEGRATED[K + 1]));
-    let (turn_even, turn_odd) = (constant(CORIOLIS[K]), constant(CORIOLIS[K + 1]));
-    d[K + 2] = acceleration[0][0].mul_add(even, turn_even * y[K + 1]);
-    y[K + 2] = acceleration[1][0].mul_add(even, -(turn_even * d[K + 1]));
-    z[K + 2] = acceleration[2][0] * even;
-    d[K + 3] = acceleration[0][1].mul_add(odd, turn_odd * y[K + 2]);
-    y[K + 3] = acceleration[1][1].mul_add(odd, -(turn_odd * d[K + 2]));
-    z[K + 3] = acceleration[2][1] * odd;
+    d[K + 2] = twice_integrated::<R>(K, constant(CORIOLIS[K]).mul_add(y[K + 1], acceleration[0][0]));
+    y[K + 2] = twice_integrated::<R>(K, constant(-CORIOLIS[K]).mul_add(d[K + 1], acceleration[1][0]));
+    z[K + 2] = twice_integrated::<R>(K, acceleration[2][0]);
+    d[K + 3] = twice_integrated::<R>(K + 1, constant(CORIOLIS[K + 1]).mul_add(y[K + 2], acceleration[0][1]));
+    y[K + 3] = twice_integrated::<R>(K + 1, constant(-CORIOLIS[K + 1]).mul_add(d[K + 2], acceleration[1][1]));
+    z[K + 3] = twice_integrated::<R>(K + 1, acceleration[2][1]);
+}
+
+/// Beyond this order what the factors lost is far below the round-off of the sum of the series.
+const REST_MATTERS: usize = 10;
+
+/// Coefficient k + 2 of the position from coefficient k of the acceleration.
+#[inline(always)]
+fn twice_integrated<R: Real>(k: usize, acceleration: R) -> R {
+    let (factor, rest) = TWICE_INTEGRATED[k];
+    if k < REST_MATTERS {
+        acceleration.mul_add(R::from_f64(factor), acceleration * R::from_f64(rest))
+    } else {
+        acceleration * R::from_f64(factor)
+    }
 }
 
 /// Half the squared distance to the nearer primary, orders `K` and `K` + 1: half squares need no doubling.

@@ -1,0 +1,86 @@
+//! Contact with a primary's surface, and what happens without one.
+
+use mechanics::propagation::{Contact, Outcome};
+use mechanics::quantity::{Distance, Quantity};
+use nalgebra::Vector3;
+
+use super::{MU, parts, run};
+
+fn radius(value: f64) -> Option<Distance> {
+    Some(Distance::new(value).expect("in range"))
+}
+
+/// Falls towards the smaller primary from rest beside it.
+const FALLING: [f64; 6] = [1.0 - MU + 0.05, 0.0, 0.01, 0.0, 0.0, 0.0];
+
+#[test]
+fn a_fall_ends_on_the_surface() {
+    let mut request = parts(MU, FALLING, 5.0);
+    request.contact = Contact { larger: radius(0.0166), smaller: radius(0.0045) };
+    let trajectory = run(request);
+    assert_eq!(trajectory.outcome, Outcome::ContactSmaller);
+    let height = (trajectory.last.position - Vector3::new(1.0 - MU, 0.0, 0.0)).norm() - 0.0045;
+    let speed = trajectory.last.velocity.norm();
+    assert!(height.abs() < 4e-16 + 1e-16 * speed, "{height}");
+}
+
+#[test]
+fn a_grazing_pass_between_two_steps_is_seen() {
+    // The surface reaches out to just above the closest approach: contact lasts a small part of one step.
+    let mut request = parts(MU, FALLING, 0.4);
+    request.sampling = mechanics::propagation::Sampling::Count(200_001);
+    let path = run(request);
+    let centre = Vector3::new(1.0 - MU, 0.0, 0.0);
+    let closest = path.samples.positions.iter().map(|p| (p - centre).norm()).fold(f64::MAX, f64::min);
+    for (surface, expected) in
+        [(closest * (1.0 + 1e-6), Outcome::ContactSmaller), (closest * (1.0 - 1e-3), Outcome::Complete)]
+    {
+        let mut request = parts(MU, FALLING, 0.4);
+        request.contact = Contact { larger: None, smaller: radius(surface) };
+        assert_eq!(run(request).outcome, expected);
+    }
+}
+
+#[test]
+fn a_start_inside_ends_at_once() {
+    let mut request = parts(MU, FALLING, 5.0);
+    request.contact = Contact { larger: None, smaller: radius(0.06) };
+    let trajectory = run(request);
+    assert_eq!(trajectory.outcome, Outcome::ContactSmaller);
+    assert_eq!(trajectory.evidence.steps, 0);
+    assert_eq!(trajectory.last.time.to_bits(), 0.0_f64.to_bits());
+}
+
+#[test]
+fn a_start_on_the_surface_may_leave() {
+    // Straight up at a speed that does not come back within the time given.
+    let up = [1.0 - MU + 0.01, 0.0, 0.0, 1.5, 0.0, 0.0];
+    let mut request = parts(MU, up, 0.01);
+    request.contact = Contact { larger: None, smaller: radius(0.01 - 1e-17) };
+    assert_eq!(run(request).outcome, Outcome::Complete);
+}
+
+#[test]
+fn a_fall_into_the_centre_ends_at_the_step_floor() {
+    // Straight down from rest in an inertial sense is not straight in rotating axes, so fall along the spin axis.
+    let down = [1.0 - MU, 0.0, 1e-6, 0.0, 0.0, 0.0];
+    let trajectory = run(parts(MU, down, 1.0));
+    assert!(matches!(trajectory.outcome, Outcome::StepFloor | Outcome::Complete));
+    assert!(trajectory.last.position.iter().all(|c| c.is_finite()));
+    assert!(trajectory.evidence.steps < 100_000);
+}
+
+#[test]
+fn a_close_approach_loses_no_more_than_its_conditioning() {
+    // Down to a millionth from the smaller primary's centre, and back along the same path in time.
+    let x = 1e-6;
+    let fast = (2.0 * MU / x * 0.999).sqrt();
+    let start = [1.0 - MU + x, 0.0, 0.0, 0.0, fast, 0.0];
+    let out = run(parts(MU, start, 0.3));
+    let mut back = parts(MU, start, -0.3);
+    back.states[0] = out.last;
+    let home = run(back).last;
+    // The position at closest approach is a double near 1, so a part in 1e10 of its distance is rounding.
+    assert!((home.position.x - start[0]).abs() < 1e-9);
+    assert!(out.evidence.jacobi_drift < 1e-10 * fast * fast, "{}", out.evidence.jacobi_drift);
+}

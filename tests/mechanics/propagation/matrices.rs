@@ -1,0 +1,141 @@
+//! State transition matrices.
+
+use mechanics::frame::{Axes, Frame, Origin, XAxis};
+use mechanics::propagation::{BurnAxes, Manoeuvre, MatrixOutput, RequestParts, Sampling};
+use nalgebra::{Matrix6, Vector3, Vector6};
+use proptest::prelude::*;
+
+use super::{HALO, HALO_PERIOD, MU, parts, run};
+
+/// Central differences of the propagation itself, with the round-off and the truncation each about 1e-8.
+fn by_differences(request: &RequestParts) -> Matrix6<f64> {
+    const NUDGE: f64 = 1e-5;
+    let frame = request.frame;
+    let mu = request.mass_parameter;
+    let seen = frame.from_default(mu, &request.states[0]);
+    let mut matrix = Matrix6::zeros();
+    for column in 0..6 {
+        let end = |nudge: f64| -> Vector6<f64> {
+            let mut components = seen.components();
+            components[column] += nudge;
+            let state = mechanics::state::State::new(seen.time, components.into());
+            let mut nudged = request.clone();
+            nudged.states[0] = frame.to_default(mu, &state);
+            run(nudged).last.components()
+        };
+        // Richardson's extrapolation of two central differences.
+        let (half, whole) = (NUDGE / 2.0, NUDGE);
+        let fine = (end(half) - end(-half)) / (2.0 * half);
+        let coarse = (end(whole) - end(-whole)) / (2.0 * whole);
+        matrix.set_column(column, &((fine * 4.0 - coarse) / 3.0));
+    }
+    matrix
+}
+
+#[test]
+fn matrix_of_many_digits() {
+    // d(final)/d(initial) of a halo period by a 333-bit Taylor integration of the variational equations with a
+    // general-purpose library (heyoka): the largest element and two others.
+    let mut request = parts(MU, HALO, HALO_PERIOD);
+    request.matrix = MatrixOutput::Final;
+    let matrix = run(request).matrix.expect("asked for");
+    let truth = truth_halo_matrix();
+    let largest = truth.amax();
+    assert!((matrix - truth).amax() / largest < 1e-12, "{}", (matrix - truth).amax() / largest);
+}
+
+fn truth_halo_matrix() -> Matrix6<f64> {
+    let rows = include_str!("../reference/halo_matrix.txt");
+    let numbers: Vec<f64> = rows
+        .lines()
+        .filter(|line| !line.starts_with('#'))
+        .flat_map(str::split_whitespace)
+        .map(|digits| digits.parse().expect("a number"))
+        .collect();
+    Matrix6::from_row_slice(&numbers)
+}
+
+#[test]
+fn the_trajectory_has_the_same_bits_with_a_matrix() {
+    let plain = run(parts(MU, HALO, HALO_PERIOD));
+    let mut request = parts(MU, HALO, HALO_PERIOD);
+    request.matrix = MatrixOutput::Final;
+    assert_eq!(run(request).last, plain.last);
+}
+
+#[test]
+fn sampled_matrices_are_those_of_shorter_trajectories() {
+    let mut request = parts(MU, HALO, 2.0);
+    request.matrix = MatrixOutput::Samples;
+    request.sampling = Sampling::Times(vec![0.0, 0.7, 2.0]);
+    let trajectory = run(request);
+    assert_eq!(trajectory.samples.matrices[0], Matrix6::identity());
+    assert_eq!(Some(trajectory.samples.matrices[2]), trajectory.matrix);
+    let mut request = parts(MU, HALO, 0.7);
+    request.matrix = MatrixOutput::Final;
+    let shorter = run(request).matrix.expect("asked for");
+    assert!((trajectory.samples.matrices[1] - shorter).amax() < 1e-14 * shorter.amax());
+}
+
+#[test]
+fn a_burn_along_the_velocity_turns_with_it() {
+    for frame in [
+        Frame::default(),
+        Frame { axes: Axes::Inertial, origin: Origin::Smaller, x_axis: XAxis::TowardLarger },
+    ] {
+        let mut request = parts(MU, HALO, 1.5);
+        request.frame = frame;
+        request.matrix = MatrixOutput::Final;
+        request.manoeuvres = vec![Manoeuvre {
+            time: 0.6,
+            delta_v: Vector3::new(0.05, 0.03, -0.02),
+            axes: BurnAxes::VelocityNormalBinormal,
+            trajectories: None,
+        }];
+        let trajectory = run(request.clone());
+        let matrix = trajectory.matrix.expect("asked for");
+        let expected = by_differences(&request);
+        assert!((matrix - expected).amax() < 1e-7 * expected.amax());
+        assert!(trajectory.evidence.symplectic_defect.expect("measured") < 1e-11, "of the legs");
+    }
+}
+
+prop_compose! {
+    fn any_frame()(axes in 0..2, origin in 0..3, x_axis in 0..2) -> Frame {
+        Frame {
+            axes: [Axes::Rotating, Axes::Inertial][axes as usize],
+            origin: [Origin::Barycenter, Origin::Larger, Origin::Smaller][origin as usize],
+            x_axis: [XAxis::TowardSmaller, XAxis::TowardLarger][x_axis as usize],
+        }
+    }
+}
+
+proptest! {
+    #![proptest_config(ProptestConfig::with_cases(24))]
+
+    #[test]
+    fn matrix_agrees_with_differences_and_is_symplectic(
+        frame in any_frame(),
+        mu in 1e-6_f64..0.5,
+        state in [0.3_f64..0.6, -0.3..0.3, -0.2..0.2, -0.3..0.3, 0.5..1.2, -0.3..0.3],
+        duration in -2.0_f64..2.0,
+    ) {
+        let mut request = parts(mu, state, duration);
+        request.states[0].time = 0.4;
+        request.frame = frame;
+        request.matrix = MatrixOutput::Final;
+        // A close approach amplifies the rounding on the way, which the last matrix does not show.
+        request.sampling = Sampling::EveryStep;
+        let trajectory = run(request.clone());
+        request.sampling = Sampling::None;
+        let fastest = trajectory.samples.velocities.iter().map(Vector3::norm).fold(0.0, f64::max);
+        prop_assume!(fastest < 3.0);
+        let matrix = trajectory.matrix.expect("asked for");
+        let expected = by_differences(&request);
+        let scale = expected.amax();
+        prop_assert!((matrix - expected).amax() < 1e-6 * scale * scale.max(1.0));
+        let defect = trajectory.evidence.symplectic_defect.expect("measured");
+        prop_assert!(defect < 1e-12 * scale * scale, "{defect} {scale}");
+        prop_assert!(trajectory.evidence.determinant_defect.expect("measured") < 1e-9 * scale * scale);
+    }
+}
