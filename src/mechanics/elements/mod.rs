@@ -37,6 +37,9 @@ pub const CIRCULAR: f64 = 1e-15;
 /// Largest |r/a| of a parabola, r the distance: the rounding error of the energy.
 const PARABOLIC: f64 = 2e-15;
 
+/// |1 − e²| up to which the eccentricity follows from the energy.
+const NEARLY_PARABOLIC: f64 = 0.25;
+
 /// Eccentricity up to which the anomalies are taken from their small differences, so that their sum with the
 /// argument of periapsis keeps its digits near the circle.
 const NEARLY_CIRCULAR: f64 = 0.5;
@@ -109,7 +112,13 @@ impl Elements {
             let radial = position.dot(&velocity);
             let e_cos = semi_latus_rectum / distance - 1.0;
             let e_sin = momentum.norm() * (radial / distance) / gm;
-            let eccentricity = if is_parabola { 1.0 } else { libm::hypot(e_cos, e_sin) };
+            // 1 − e², which keeps eccentricity and semi-major axis in step near the parabola.
+            let defect = semi_latus_rectum * reciprocal;
+            let eccentricity = if defect.abs() < NEARLY_PARABOLIC {
+                (1.0 - defect).sqrt()
+            } else {
+                libm::hypot(e_cos, e_sin)
+            };
             let periapsis_distance = semi_latus_rectum / (1.0 + eccentricity);
             let orbit = Orbit {
                 eccentricity,
