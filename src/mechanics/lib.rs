@@ -22,6 +22,7 @@
 //! effort spent and the residual reached.
 
 pub mod arithmetic;
+pub mod elements;
 pub mod frame;
 pub mod interrupt;
 pub mod propagation;

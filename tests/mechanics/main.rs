@@ -1,3 +1,12 @@
 //! Checks of the mechanics crate against published values, and its invariants.
 
+mod elements;
+mod frame;
 mod propagation;
+mod system;
+mod units;
+
+/// Whether `a` and `b` agree to `relative` times the larger magnitude.
+fn close(a: f64, b: f64, relative: f64) -> bool {
+    (a - b).abs() <= relative * a.abs().max(b.abs())
+}
