@@ -6,8 +6,8 @@ use nalgebra::Vector3;
 
 use super::{MU, parts, run};
 
-fn radius(value: f64) -> Option<Distance> {
-    Some(Distance::new(value).expect("in range"))
+fn radius(value: f64) -> Distance {
+    Distance::new(value).expect("in range")
 }
 
 /// Falls towards the smaller primary from rest beside it.
@@ -16,7 +16,7 @@ const FALLING: [f64; 6] = [1.0 - MU + 0.05, 0.0, 0.01, 0.0, 0.0, 0.0];
 #[test]
 fn a_fall_ends_on_the_surface() {
     let mut request = parts(MU, FALLING, 5.0);
-    request.contact = Contact { larger: radius(0.0166), smaller: radius(0.0045) };
+    request.contact = Contact { larger: Some(radius(0.0166)), smaller: Some(radius(0.0045)) };
     let trajectory = run(request);
     assert_eq!(trajectory.outcome, Outcome::ContactSmaller);
     let height = (trajectory.last.position - Vector3::new(1.0 - MU, 0.0, 0.0)).norm() - 0.0045;
@@ -36,7 +36,7 @@ fn a_grazing_pass_between_two_steps_is_seen() {
         [(closest * (1.0 + 1e-6), Outcome::ContactSmaller), (closest * (1.0 - 1e-3), Outcome::Complete)]
     {
         let mut request = parts(MU, FALLING, 0.4);
-        request.contact = Contact { larger: None, smaller: radius(surface) };
+        request.contact = Contact { larger: None, smaller: Some(radius(surface)) };
         assert_eq!(run(request).outcome, expected);
     }
 }
@@ -44,7 +44,7 @@ fn a_grazing_pass_between_two_steps_is_seen() {
 #[test]
 fn a_start_inside_ends_at_once() {
     let mut request = parts(MU, FALLING, 5.0);
-    request.contact = Contact { larger: None, smaller: radius(0.06) };
+    request.contact = Contact { larger: None, smaller: Some(radius(0.06)) };
     let trajectory = run(request);
     assert_eq!(trajectory.outcome, Outcome::ContactSmaller);
     assert_eq!(trajectory.evidence.steps, 0);
@@ -56,7 +56,7 @@ fn a_start_on_the_surface_may_leave() {
     // Straight up at a speed that does not come back within the time given.
     let up = [1.0 - MU + 0.01, 0.0, 0.0, 1.5, 0.0, 0.0];
     let mut request = parts(MU, up, 0.01);
-    request.contact = Contact { larger: None, smaller: radius(0.01 - 1e-17) };
+    request.contact = Contact { larger: None, smaller: Some(radius(0.01 - 1e-17)) };
     assert_eq!(run(request).outcome, Outcome::Complete);
 }
 

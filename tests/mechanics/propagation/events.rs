@@ -2,7 +2,6 @@
 
 use std::num::NonZeroU64;
 
-use mechanics::frame::{Axes, Frame, Origin, XAxis};
 use mechanics::propagation::event::{Direction, Event, Only, Plane, Side, When};
 use mechanics::propagation::{Outcome, Sampling, Trajectory};
 use mechanics::quantity::{Distance, Quantity};
@@ -10,7 +9,7 @@ use mechanics::system::Primary;
 use nalgebra::Vector3;
 use proptest::prelude::*;
 
-use super::{HALO, HALO_PERIOD, MU, parts, run};
+use super::{HALO, HALO_PERIOD, MU, any_frame, parts, run};
 
 fn event(when: When) -> Event {
     Event { when, direction: Direction::Either, only: None, stop_after: None }
@@ -150,16 +149,6 @@ fn counted(trajectory: &Trajectory, condition: impl Fn(&Vector3<f64>, &Vector3<f
         .map(|(position, velocity)| condition(position, velocity))
         .collect();
     values.windows(2).filter(|pair| pair[0] * pair[1] < 0.0).count()
-}
-
-prop_compose! {
-    fn any_frame()(axes in 0..2, origin in 0..3, x_axis in 0..2) -> Frame {
-        Frame {
-            axes: [Axes::Rotating, Axes::Inertial][axes as usize],
-            origin: [Origin::Barycenter, Origin::Larger, Origin::Smaller][origin as usize],
-            x_axis: [XAxis::TowardSmaller, XAxis::TowardLarger][x_axis as usize],
-        }
-    }
 }
 
 proptest! {

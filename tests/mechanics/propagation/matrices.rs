@@ -5,7 +5,7 @@ use mechanics::propagation::{BurnAxes, Manoeuvre, MatrixOutput, RequestParts, Sa
 use nalgebra::{Matrix6, Vector3, Vector6};
 use proptest::prelude::*;
 
-use super::{HALO, HALO_PERIOD, MU, parts, run};
+use super::{HALO, HALO_PERIOD, MU, any_frame, parts, run};
 
 /// Central differences of the propagation itself, with the round-off and the truncation each about 1e-8.
 fn by_differences(request: &RequestParts) -> Matrix6<f64> {
@@ -97,16 +97,6 @@ fn a_burn_along_the_velocity_turns_with_it() {
         let expected = by_differences(&request);
         assert!((matrix - expected).amax() < 1e-7 * expected.amax());
         assert!(trajectory.evidence.symplectic_defect.expect("measured") < 1e-11, "of the legs");
-    }
-}
-
-prop_compose! {
-    fn any_frame()(axes in 0..2, origin in 0..3, x_axis in 0..2) -> Frame {
-        Frame {
-            axes: [Axes::Rotating, Axes::Inertial][axes as usize],
-            origin: [Origin::Barycenter, Origin::Larger, Origin::Smaller][origin as usize],
-            x_axis: [XAxis::TowardSmaller, XAxis::TowardLarger][x_axis as usize],
-        }
     }
 }
 

@@ -9,13 +9,14 @@ mod properties;
 mod published;
 mod samples;
 
-use mechanics::frame::Frame;
+use mechanics::frame::{Axes, Frame, Origin, XAxis};
 use mechanics::interrupt::Never;
 use mechanics::propagation::{
     Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling, Trajectory, solve,
 };
 use mechanics::quantity::{Duration, MassParameter, Quantity, Tolerance};
 use mechanics::state::State;
+use proptest::prelude::*;
 
 /// A mass parameter near the Earth–Moon one, and a halo orbit about its L2 in x, z and vy.
 pub(crate) const MU: f64 = 0.01215058560962404;
@@ -46,4 +47,15 @@ pub(crate) fn run(parts: RequestParts) -> Trajectory {
 /// Euclidean distance of positions.
 pub(crate) fn apart(a: &State, b: &State) -> f64 {
     (a.position - b.position).norm()
+}
+
+/// Every frame.
+pub(crate) fn any_frame() -> impl Strategy<Value = Frame> {
+    use proptest::sample::select;
+    (
+        select(&[Axes::Rotating, Axes::Inertial][..]),
+        select(&[Origin::Barycenter, Origin::Larger, Origin::Smaller][..]),
+        select(&[XAxis::TowardSmaller, XAxis::TowardLarger][..]),
+    )
+        .prop_map(|(axes, origin, x_axis)| Frame { axes, origin, x_axis })
 }
