@@ -21,6 +21,10 @@
 //! Each module has an error type of its own that knows nothing of HTTP. An error of a computation carries the
 //! effort spent and the residual reached.
 
+pub mod elements;
+pub mod frame;
 pub mod interrupt;
 pub mod quantity;
 pub mod state;
+pub mod system;
+pub mod units;

@@ -27,7 +27,7 @@ pub struct Range {
 impl Range {
     /// Whether `value` is a finite number inside the range.
     #[must_use]
-    pub fn contains(&self, value: f64) -> bool {
+    pub const fn contains(&self, value: f64) -> bool {
         value.is_finite()
             && value <= self.max
             && if self.above { value > self.min } else { value >= self.min }
@@ -65,6 +65,19 @@ macro_rules! quantities {
         #[derive(Clone, Copy, Debug, PartialEq, PartialOrd)]
         pub struct $name(f64);
 
+        impl $name {
+            /// A constant of the program, checked when it is compiled.
+            ///
+            /// # Panics
+            /// Refuses to compile in a `const` if `value` is outside the range; anything that is not a
+            /// constant belongs in [`Quantity::new`].
+            #[must_use]
+            pub const fn constant(value: f64) -> Self {
+                assert!(<Self as Quantity>::RANGE.contains(value), $what);
+                Self(value)
+            }
+        }
+
         impl Quantity for $name {
             const WHAT: &'static str = $what;
             const RANGE: Range = $range;
@@ -92,8 +105,11 @@ const fn above(min: f64, max: f64) -> Range {
 const FAR: f64 = 1e6;
 /// Latest epoch and longest duration in normalised time: more than any step limit can cross.
 const LONG: f64 = 1e8;
-/// Largest physical scale in km, km/s or s: far beyond any pair of bodies that orbit each other.
+/// Largest physical scale in km, km/s or s: far beyond any pair of bodies that orbit each other. It bounds
+/// unreduced angles too.
 const VAST: f64 = 1e20;
+/// Largest semi-major axis and eccentricity: a nearly parabolic orbit, a fast one past a tiny body.
+const FLAT: f64 = 1e30;
 
 quantities! {
     /// μ, the smaller primary's share of the total mass.
@@ -118,4 +134,16 @@ quantities! {
     Kilometres: "length, km", above(0.0, VAST);
     /// A span of time in seconds.
     Seconds: "time, s", above(0.0, VAST);
+    /// A speed in kilometres per second.
+    KilometresPerSecond: "speed, km/s", above(0.0, VAST);
+    /// A semi-major axis in separations, negative for a hyperbola.
+    SemiMajorAxis: "semi-major axis, in separations of the primaries", within(-FLAT, FLAT);
+    /// A periapsis distance in separations.
+    PeriapsisDistance: "periapsis distance, in separations of the primaries", above(0.0, FAR);
+    /// The eccentricity of a conic.
+    Eccentricity: "eccentricity", within(0.0, FLAT);
+    /// An inclination in degrees.
+    Inclination: "inclination, degrees", within(0.0, 180.0);
+    /// An angle in degrees, not reduced to one turn.
+    Angle: "angle, degrees", within(-VAST, VAST);
 }
