@@ -8,7 +8,7 @@ use crate::answer::{REPR_DIGEST, SERVER_TIMING};
 use crate::middleware::X_REQUEST_ID;
 
 /// Lets the pages of `origins` call; without any, nothing is added.
-pub fn allow(router: Router, origins: Vec<HeaderValue>) -> Router {
+pub(crate) fn allow(router: Router, origins: Vec<HeaderValue>) -> Router {
     if origins.is_empty() {
         return router;
     }

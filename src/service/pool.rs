@@ -211,7 +211,7 @@ impl Context {
         for _ in 1..pool.threads.min(count) {
             let (helped, jobs) = (Arc::clone(&batch), pool.jobs.clone());
             // A queue that takes no more is one of a server that stops: this thread then does it all.
-            let _ = pool.jobs.send(Box::new(move || help(helped, jobs)));
+            let _ = pool.jobs.send(Box::new(move || help(helped, &jobs)));
         }
         while batch.step() {}
         batch.collect()
@@ -255,7 +255,7 @@ impl<R, F: Fn(usize) -> R> Batch<R, F> {
 }
 
 /// Does parts of a foreign computation, and goes to the end of the queue between them if others wait.
-fn help<R, F>(batch: Arc<Batch<R, F>>, jobs: Sender<Job>)
+fn help<R, F>(batch: Arc<Batch<R, F>>, jobs: &Sender<Job>)
 where
     R: Send + 'static,
     F: Fn(usize) -> R + Send + Sync + 'static,
@@ -263,7 +263,7 @@ where
     while batch.step() {
         if !jobs.is_empty() {
             let again = jobs.clone();
-            let _ = jobs.send(Box::new(move || help(batch, again)));
+            let _ = jobs.send(Box::new(move || help(batch, &again)));
             return;
         }
     }

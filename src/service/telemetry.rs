@@ -9,7 +9,6 @@ use tracing_subscriber::fmt::format::FmtSpan;
 use crate::config::{Log, LogFormat};
 
 /// Starts logging; lines may be lost unless the guard lives until the end.
-#[must_use]
 pub fn start(log: &Log) -> WorkerGuard {
     // The writing thread flushes whenever it has nothing more to write: many lines then go out in one call.
     let (writer, guard) = NonBlocking::new(BufWriter::new(std::io::stderr()));

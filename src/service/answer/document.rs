@@ -25,7 +25,7 @@ impl Document {
     #[must_use]
     pub fn new(media_type: &'static str, bytes: impl Into<Bytes>) -> Self {
         let bytes = bytes.into();
-        let hash: String = Sha256::digest(&bytes).iter().take(16).map(|byte| format!("{byte:02x}")).collect();
+        let hash = base64::Engine::encode(&base64::prelude::BASE64_URL_SAFE_NO_PAD, Sha256::digest(&bytes));
         let tag =
             HeaderValue::from_str(&format!("\"{hash}\"")).unwrap_or_else(|_| HeaderValue::from_static("*"));
         let digest = repr_digest(&bytes);

@@ -69,7 +69,7 @@ impl<T> Field<T> {
 
 /// Reads the members of one object and, at the end, reports those it was not asked for.
 pub struct Members<'n> {
-    members: &'n [(std::borrow::Cow<'n, str>, Node<'n>)],
+    object: &'n [(std::borrow::Cow<'n, str>, Node<'n>)],
     at: Path<'n>,
     known: &'static [&'static str],
 }
@@ -83,7 +83,7 @@ impl<'n> Members<'n> {
         errors: &mut Errors,
     ) -> Option<Self> {
         if let Node::Object(members) = node {
-            Some(Self { members, at, known })
+            Some(Self { object: members, at, known })
         } else {
             errors.push(at, format!("must be an object, got {}", node.kind()));
             None
@@ -97,7 +97,7 @@ impl<'n> Members<'n> {
     }
 
     fn find(&self, name: &str) -> Option<&'n Node<'n>> {
-        self.members.iter().find(|(known, _)| known == name).map(|(_, node)| node)
+        self.object.iter().find(|(known, _)| known == name).map(|(_, node)| node)
     }
 
     /// A member that must be there.
@@ -121,7 +121,7 @@ impl<'n> Members<'n> {
 
     /// Reports every member that is not known.
     pub fn finish(self, errors: &mut Errors) {
-        for (name, _) in self.members {
+        for (name, _) in self.object {
             if !self.known.contains(&&**name) {
                 errors
                     .push(self.at.member(name), format!("unknown member; {}", suggestion(name, self.known)));

@@ -113,7 +113,7 @@ pub fn parse(body: &[u8], budget: usize) -> Result<Node<'_>, Malformed> {
         Ok(text) => text,
         Err(error) => {
             let good = &body[..error.valid_up_to()];
-            let line = good.iter().filter(|&&byte| byte == b'\n').count() + 1;
+            let line = good.split(|&byte| byte == b'\n').count();
             let column = good.iter().rev().take_while(|&&byte| byte != b'\n').count() + 1;
             return Err(syntax(line, column, "the body must be UTF-8, and is not from here on"));
         }

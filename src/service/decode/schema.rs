@@ -30,7 +30,7 @@ pub fn with_description(schema: RefOr<Schema>, description: &str) -> RefOr<Schem
         RefOr::T(mut schema) => {
             match &mut schema {
                 Schema::Object(object) => {
-                    object.description = Some(joined(description, object.description.take()))
+                    object.description = Some(joined(description, object.description.take()));
                 }
                 Schema::Array(array) => array.description = Some(description),
                 Schema::OneOf(one) => one.description = Some(description),

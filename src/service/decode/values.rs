@@ -4,7 +4,7 @@ use mechanics::quantity::{OutOfRange, Quantity, Range};
 use utoipa::openapi::schema::{ArrayBuilder, ObjectBuilder, Type};
 use utoipa::openapi::{RefOr, Schema};
 
-use super::{Decode, Errors, Node, Path, Schemas, with_description};
+use super::{Decode, Errors, Node, Path, Schemas};
 
 /// A double as JSON writes it: the shortest digits that read back to the same bits.
 #[must_use]
@@ -206,6 +206,6 @@ impl<T: Decode, const N: usize> Decode for [T; N] {
 
     fn describe(named: &mut Schemas) -> RefOr<Schema> {
         let array = ArrayBuilder::new().items(T::describe(named)).min_items(Some(N)).max_items(Some(N));
-        with_description(RefOr::T(array.build().into()), "")
+        RefOr::T(array.build().into())
     }
 }

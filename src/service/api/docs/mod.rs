@@ -20,7 +20,7 @@ static PAGE: LazyLock<Document> = LazyLock::new(|| {
 /// The interface, to read and to try
 #[utoipa::path(get, path = "/docs", tag = "server", responses((status = 200,
     description = "A page that needs nothing but this server", body = String, content_type = "text/html")))]
-pub async fn docs(headers: HeaderMap) -> Result<Response, Problem> {
+pub(crate) async fn docs(headers: HeaderMap) -> Result<Response, Problem> {
     negotiate(&headers, &[HTML])?;
     let mut response = PAGE.respond(&headers);
     response.headers_mut().insert(header::CONTENT_SECURITY_POLICY, HeaderValue::from_static(POLICY));

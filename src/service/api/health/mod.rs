@@ -10,7 +10,7 @@ use crate::state::App;
 
 /// The server's own view of its health.
 #[derive(Serialize, ToSchema)]
-pub struct Health {
+pub(crate) struct Health {
     /// `live` or `ready`.
     status: &'static str,
 }
@@ -18,14 +18,14 @@ pub struct Health {
 /// Whether the process is alive
 #[utoipa::path(get, path = "/livez", tag = "server", responses((status = 200, body = Health,
     description = "The process answers")))]
-pub async fn livez() -> Result<Answer, Problem> {
+pub(crate) async fn livez() -> Result<Answer, Problem> {
     Answer::json(&Health { status: "live" })
 }
 
 /// Whether the server takes new work
 #[utoipa::path(get, path = "/readyz", tag = "server", responses((status = 200, body = Health,
     description = "The server takes new work; 503 as soon as it is asked to stop")))]
-pub async fn readyz(State(app): State<App>) -> Result<Answer, Problem> {
+pub(crate) async fn readyz(State(app): State<App>) -> Result<Answer, Problem> {
     if app.is_stopping() {
         return Err(Problem::overloaded("The server is stopping"));
     }

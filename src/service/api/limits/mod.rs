@@ -11,7 +11,7 @@ use crate::state::App;
 
 /// How much the server does for one request.
 #[derive(Serialize, ToSchema)]
-pub struct ServerLimits {
+pub(crate) struct ServerLimits {
     /// Size of a request's body, in bytes.
     body_bytes: usize,
     /// States in a request.
@@ -41,7 +41,7 @@ pub struct ServerLimits {
 /// A request that asks for more is refused before any work is done; a value is never lowered silently.
 #[utoipa::path(get, path = "/v1/limits", tag = "server", responses((status = 200, body = ServerLimits,
     description = "The limits in force")))]
-pub async fn limits(State(app): State<App>, _: Plain) -> Result<Answer, Problem> {
+pub(crate) async fn limits(State(app): State<App>, _: Plain) -> Result<Answer, Problem> {
     let config = &app.config;
     Answer::json(&ServerLimits {
         body_bytes: config.limits.body_bytes,

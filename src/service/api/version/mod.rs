@@ -10,11 +10,12 @@ use crate::extract::Plain;
 
 /// What is running.
 #[derive(Serialize, ToSchema)]
-pub struct Version {
+pub(crate) struct Version {
     /// Name of the service.
     name: &'static str,
     /// Its version.
-    version: &'static str,
+    #[serde(rename = "version")]
+    release: &'static str,
     /// The commit it was built from, `unknown` outside a repository.
     commit: &'static str,
     /// How multiply-add is done: `fma` in one instruction; `software` where the processor has none, with the same
@@ -35,7 +36,7 @@ pub fn arithmetic() -> &'static str {
 static VERSION: LazyLock<Document> = LazyLock::new(|| {
     let version = Version {
         name: env!("CARGO_PKG_NAME"),
-        version: env!("CARGO_PKG_VERSION"),
+        release: env!("CARGO_PKG_VERSION"),
         commit: env!("SYNODIA_COMMIT"),
         arithmetic: arithmetic(),
     };
@@ -45,6 +46,6 @@ static VERSION: LazyLock<Document> = LazyLock::new(|| {
 /// Version, commit and arithmetic path
 #[utoipa::path(get, path = "/v1/version", tag = "server", responses((status = 200, body = Version,
     description = "What is running")))]
-pub async fn version(request: Plain) -> Response {
+pub(crate) async fn version(request: Plain) -> Response {
     VERSION.respond(&request.0)
 }
