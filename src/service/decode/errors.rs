@@ -90,10 +90,19 @@ impl Errors {
         self.add(at, format!("at most {limit} {what} are granted, got {asked}"), Some((limit, asked)));
     }
 
+    /// Adds a fault at the place that the JSON pointer `rest` leads to from `at`.
+    pub fn push_under(&mut self, at: Path<'_>, rest: &str, detail: impl Into<String>) {
+        self.add_under(at, rest, detail.into(), None);
+    }
+
     fn add(&mut self, at: Path<'_>, detail: String, beyond: Option<(u64, u64)>) {
+        self.add_under(at, "", detail, beyond);
+    }
+
+    fn add_under(&mut self, at: Path<'_>, rest: &str, detail: String, beyond: Option<(u64, u64)>) {
         self.count += 1;
         if self.faults.len() < LISTED {
-            let pointer = at.pointer();
+            let pointer = at.pointer() + rest;
             let place = if self.in_query {
                 Place::Parameter(pointer.rsplit('/').next().unwrap_or_default().to_owned())
             } else {
@@ -103,10 +112,10 @@ impl Errors {
         }
     }
 
-    /// Whether nothing is wrong so far.
+    /// How many faults there are so far.
     #[must_use]
-    pub fn is_empty(&self) -> bool {
-        self.count == 0
+    pub fn count(&self) -> usize {
+        self.count
     }
 
     /// `value` if nothing was wrong.

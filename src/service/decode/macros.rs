@@ -19,13 +19,13 @@
 macro_rules! request {
     (
         $(#[doc = $doc:literal])* $(#[example($example:literal)])?
-        pub struct $name:ident {
+        $vis:vis struct $name:ident {
             $($(#[doc = $member_doc:literal])* $need:ident $member:ident: $type:ty),* $(,)?
         }
     ) => {
         $(#[doc = $doc])*
         #[derive(Clone, Debug, PartialEq)]
-        pub struct $name {
+        $vis struct $name {
             $($(#[doc = $member_doc])* pub $member: $crate::decode::Field<$type>,)*
         }
 
@@ -97,11 +97,11 @@ macro_rules! request {
 macro_rules! choices {
     (
         $(#[doc = $doc:literal])*
-        pub enum $name:ident $(= $computed:path)? { $($variant:ident = $text:literal),* $(,)? }
+        $vis:vis enum $name:ident $(= $computed:path)? { $($variant:ident = $text:literal),* $(,)? }
     ) => {
         $(#[doc = $doc])*
         #[derive(Clone, Copy, Debug, Eq, PartialEq)]
-        pub enum $name {
+        $vis enum $name {
             $(#[doc = concat!("`", $text, "`")] $variant,)*
         }
 

@@ -4,7 +4,7 @@ use super::errors::shortened;
 use super::{Decode, Errors, Node, Path};
 
 /// A member of a request after decoding.
-#[derive(Clone, Debug, PartialEq)]
+#[derive(Clone, Copy, Debug, PartialEq)]
 pub enum Field<T> {
     /// Not there, or `null` in an optional member.
     Absent,
@@ -123,8 +123,10 @@ impl<'n> Members<'n> {
     pub fn finish(self, errors: &mut Errors) {
         for (name, _) in self.object {
             if !self.known.contains(&&**name) {
-                errors
-                    .push(self.at.member(name), format!("unknown member; {}", suggestion(name, self.known)));
+                errors.push(
+                    self.at.member(name),
+                    format!("unknown member; {}", did_you_mean(name, self.known)),
+                );
             }
         }
     }
@@ -134,7 +136,8 @@ impl<'n> Members<'n> {
 const SIMILAR: f64 = 0.75;
 
 /// "did you mean …?" with the nearest of `known`, or the list of them if none is near.
-pub(super) fn suggestion(name: &str, known: &[&str]) -> String {
+#[must_use]
+pub fn did_you_mean(name: &str, known: &[&str]) -> String {
     let name = shortened(name);
     let similarity = |candidate: &&&str| strsim::jaro_winkler(&name, candidate);
     let nearest = known.iter().max_by(|a, b| similarity(a).total_cmp(&similarity(b)));
@@ -173,7 +176,7 @@ pub fn choice<'n>(
                 errors.push(at, format!("`{name}` needs a value: {{\"{name}\": …}}"));
             } else {
                 let all: Vec<&str> = bare.iter().chain(keyed).copied().collect();
-                let hint = suggestion(name, &all);
+                let hint = did_you_mean(name, &all);
                 errors.push(at, format!("unknown choice `{}`; {hint}", shortened(name)));
             }
         }
@@ -185,7 +188,7 @@ pub fn choice<'n>(
                 if let Some(name) = known(bare, name) {
                     errors.push(at, format!("`{name}` takes no value: give \"{name}\" alone"));
                 } else {
-                    errors.push(at.member(name), format!("unknown choice; {}", suggestion(name, keyed)));
+                    errors.push(at.member(name), format!("unknown choice; {}", did_you_mean(name, keyed)));
                 }
             }
             _ => errors.push(

@@ -13,10 +13,10 @@ mod values;
 
 pub use errors::{Errors, Path};
 pub(crate) use macros::{choices, request};
-pub use members::{Field, Members, choice};
+pub use members::{Field, Members, choice, did_you_mean};
 pub use node::{Malformed, Node, parse, parse_query};
 pub use schema::{ClosedObject, Named, Schemas, by_name, nullable, one_of_names, plain, with_description};
-pub use values::{Integer, Scalar, Text, quantity, written};
+pub use values::{Integer, Scalar, Text, quantity, refusal, written};
 
 use utoipa::openapi::{RefOr, Schema};
 

@@ -13,7 +13,9 @@ pub fn written(value: f64) -> String {
     text.strip_suffix(".0").map_or_else(|| text.clone(), ToOwned::to_owned)
 }
 
-fn refusal(error: &OutOfRange) -> String {
+/// What to say of a number outside its range.
+#[must_use]
+pub fn refusal(error: &OutOfRange) -> String {
     let Range { min, max, above } = error.range;
     let (min, max, value) = (written(min), written(max), written(error.value));
     if above {
