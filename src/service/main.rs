@@ -1,3 +1,75 @@
-//! The `synodia` command.
+//! The `synodia` program.
 
-fn main() {}
+mod healthcheck;
+
+use std::io::Write;
+use std::process::ExitCode;
+
+use synodia::config::{self, Config, Refusal, Task};
+use synodia::{api, server, telemetry};
+
+/// Mistakes in flags or variables (`EX_USAGE` of sysexits).
+const EX_USAGE: u8 = 64;
+
+fn main() -> ExitCode {
+    let (task, config) = match config::read(std::env::args_os(), std::env::vars_os()) {
+        Ok(read) => read,
+        Err(refusal) => return refuse(&refusal),
+    };
+    match task {
+        Task::Serve => serve(config),
+        Task::OpenApi => match std::io::stdout().write_all(api::document().as_bytes()) {
+            Ok(()) => ExitCode::SUCCESS,
+            Err(error) => fail(&error),
+        },
+        Task::Healthcheck => healthcheck::run(config.listen),
+        Task::Demo => fail(&"the demonstration is not part of this build"),
+    }
+}
+
+fn serve(config: Config) -> ExitCode {
+    let runtime = match tokio::runtime::Builder::new_multi_thread().enable_all().build() {
+        Ok(runtime) => runtime,
+        Err(error) => return fail(&error),
+    };
+    let logs = telemetry::start(&config.log);
+    let served = runtime.block_on(async {
+        let listener = tokio::net::TcpListener::bind(config.listen).await?;
+        let address = listener.local_addr()?;
+        let (app, router) = api::start(config)?;
+        tracing::info!(
+            %address,
+            version = env!("CARGO_PKG_VERSION"),
+            arithmetic = api::arithmetic(),
+            threads = app.config.compute.threads,
+            "serving"
+        );
+        server::serve(listener, app, router).await
+    });
+    runtime.shutdown_background();
+    drop(logs);
+    match served {
+        Ok(()) => ExitCode::SUCCESS,
+        Err(error) => fail(&error),
+    }
+}
+
+fn fail(error: &dyn std::fmt::Display) -> ExitCode {
+    let _ = writeln!(std::io::stderr(), "synodia: {error}");
+    ExitCode::FAILURE
+}
+
+fn refuse(refusal: &Refusal) -> ExitCode {
+    match refusal {
+        Refusal::Usage(error) => {
+            let _ = error.print();
+            if error.use_stderr() { ExitCode::from(EX_USAGE) } else { ExitCode::SUCCESS }
+        }
+        Refusal::Mistakes(mistakes) => {
+            for mistake in mistakes {
+                let _ = writeln!(std::io::stderr(), "synodia: {mistake}");
+            }
+            ExitCode::from(EX_USAGE)
+        }
+    }
+}
