@@ -2,6 +2,8 @@
 
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
+use super::sum::Compensated;
+
 /// `hi + lo` with |lo| at most half a unit in the last place of `hi`.
 ///
 /// Sums, products, quotients and square roots are good to a relative 2⁻¹⁰² as long as the smaller half neither
@@ -21,9 +23,8 @@ impl DoubleDouble {
     /// The exact sum of two doubles.
     #[must_use]
     pub fn sum(a: f64, b: f64) -> Self {
-        let hi = a + b;
-        let b_part = hi - a;
-        Self { hi, lo: (a - (hi - b_part)) + (b - b_part) }
+        let Compensated { value, rest } = Compensated::sum(a, b);
+        Self { hi: value, lo: rest }
     }
 
     /// The exact product of two doubles.

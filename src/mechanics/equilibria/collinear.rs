@@ -19,6 +19,9 @@ pub(super) enum Side {
 /// Newton's method needs five steps or so; bisection, should it ever come to that, 54.
 const MOST_STEPS: usize = 64;
 
+/// 3^(−1/3): the radius of Hill's sphere over the cube root of μ.
+const HILL: f64 = 0.693_361_274_350_634_7;
+
 /// γ, the distance of L1 or L2 from the smaller primary, in separations.
 pub(super) fn gamma(side: Side, mu: f64) -> DoubleDouble {
     let s = match side {
@@ -27,7 +30,7 @@ pub(super) fn gamma(side: Side, mu: f64) -> DoubleDouble {
     };
     // First two terms of the series in the radius of Hill's sphere; γ differs from that radius by less than
     // 30 per cent for every μ.
-    let hill = libm::cbrt(mu / 3.0);
+    let hill = libm::cbrt(mu) * HILL;
     let start = hill * (1.0 + s * hill / 3.0);
     let quintic = |g: f64| {
         let q = (g + s * (3.0 - mu)) * g + (3.0 - 2.0 * mu);

@@ -15,7 +15,7 @@ use crate::potential::larger_share;
 
 /// Routh's critical mass parameter (1 − √69/9)/2: L4 and L5 are linearly stable below it. Routh 1875,
 /// Proceedings of the London Mathematical Society 6:86.
-pub const ROUTH: f64 = 0.038_520_896_504_551_37;
+pub const ROUTH: f64 = 0.038_520_896_504_551_4;
 
 /// c₂ of a collinear point, in both forms that are needed.
 pub(super) struct Attraction {
