@@ -262,6 +262,16 @@ proptest! {
         let horizontal = Vector3::new(turn.cos(), turn.sin(), 0.0);
         let on_cylinder = larger + l2.distance_to_larger() * horizontal + Vector3::z() * z;
         prop_assert!(gradient(all.mass_parameter(), &on_cylinder).dot(&horizontal) >= -rounding);
+
+        // Outside both unit cylinders, out to twice their radius.
+        let outside = larger + (1.5 + 0.5 * u) * horizontal + Vector3::z() * z;
+        let across = |centre: Vector3<f64>| (outside - centre).component_mul(&Vector3::new(1.0, 1.0, 0.0));
+        if across(smaller).norm() >= 1.0 {
+            let uphill = gradient(all.mass_parameter(), &outside);
+            for centre in [larger, smaller] {
+                prop_assert!(uphill.dot(&across(centre)) >= -rounding);
+            }
+        }
     }
 
     /// Mirror images in both planes of symmetry, and for equal masses in the third.

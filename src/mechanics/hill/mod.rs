@@ -39,8 +39,8 @@ impl Region {
     ///   the point of contact, L1, where it is 0.
     /// - On the surface of {r₁ < 1 − δ} ∪ {r₂ < γ₂} Ω is at most that of L2. A position with a larger one
     ///   is outside if and only if it lies out of that union.
-    /// - Ascent never leaves the cylinder exterior ϱ₁ ≥ 1 + γ₂ nor {ϱ₁ ≥ 1, ϱ₂ ≥ 1}, ϱ being distances from the
-    ///   primaries' vertical axes: both ϱ grow there.
+    /// - Ascent never leaves ϱ₁ ≥ 1 + γ₂ nor {ϱ₁ ≥ 1, ϱ₂ ≥ 1}, ϱ being distances from the primaries' vertical
+    ///   axes: ϱ₁ grows in the first, both grow in the second.
     ///
     /// Elsewhere the ascent is followed until one of the first and last facts applies, in capped work. A position
     /// on a border between basins, to rounding, ends on a saddle: it counts to the smaller primary, or if it lies
