@@ -23,8 +23,11 @@
 
 pub mod arithmetic;
 pub mod elements;
+pub mod equilibria;
 pub mod frame;
+pub mod hill;
 pub mod interrupt;
+pub mod potential;
 pub mod propagation;
 pub mod quantity;
 pub mod state;

@@ -1,8 +1,13 @@
 //! Checks of the mechanics crate against published values, and its invariants.
 
+mod arithmetic;
 mod elements;
+mod equilibria;
 mod frame;
+mod hill;
+mod potential;
 mod propagation;
+mod reference;
 mod system;
 mod units;
 

@@ -3,9 +3,12 @@
 //! machine.
 
 mod double;
+mod double_double;
 pub mod sum;
 
 use std::ops::{Add, Div, Mul, Neg, Sub};
+
+pub use double_double::DoubleDouble;
 
 /// The operations the Taylor recurrences need.
 pub trait Real:
