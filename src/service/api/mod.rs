@@ -1,10 +1,12 @@
 //! The table of contents: every path the service answers.
 
 mod docs;
+mod equilibria;
 mod health;
 mod limits;
 mod openapi;
 mod problems;
+mod systems;
 mod version;
 
 pub use version::arithmetic;
@@ -23,6 +25,10 @@ use crate::{cors, middleware};
 /// Every operation, a line each.
 fn operations() -> OpenApiRouter<App> {
     OpenApiRouter::with_openapi(crate::openapi::Api::openapi())
+        .routes(routes!(systems::systems))
+        .routes(routes!(systems::system))
+        .routes(routes!(equilibria::of_system))
+        .routes(routes!(equilibria::equilibria))
         .routes(routes!(limits::limits))
         .routes(routes!(version::version))
         .routes(routes!(health::livez))

@@ -107,11 +107,11 @@ macro_rules! choices {
 
         impl $name {
             /// Every choice by name.
-            pub const NAMES: &'static [&'static str] = &[$($text),*];
+            $vis const NAMES: &'static [&'static str] = &[$($text),*];
 
             /// The name it goes by.
             #[must_use]
-            pub fn name(self) -> &'static str {
+            $vis fn name(self) -> &'static str {
                 match self { $(Self::$variant => $text,)* }
             }
         }
