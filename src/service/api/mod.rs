@@ -3,6 +3,7 @@
 mod docs;
 mod equilibria;
 mod health;
+mod jacobi;
 mod limits;
 mod openapi;
 mod problems;
@@ -29,6 +30,7 @@ fn operations() -> OpenApiRouter<App> {
         .routes(routes!(systems::system))
         .routes(routes!(equilibria::of_system))
         .routes(routes!(equilibria::equilibria))
+        .routes(routes!(jacobi::jacobi))
         .routes(routes!(limits::limits))
         .routes(routes!(version::version))
         .routes(routes!(health::livez))

@@ -119,6 +119,16 @@ pub struct StatesSpec {
 }
 
 impl StatesSpec {
+    /// The states, unless there are more than `limit`.
+    pub fn at_most(self, limit: u64, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
+        let asked = u64::try_from(self.states.len()).unwrap_or(u64::MAX);
+        if asked > limit {
+            errors.beyond(at, "states", limit, asked);
+            return None;
+        }
+        Some(self)
+    }
+
     /// Calls `each` with the index, the state and its places of time, position and velocity.
     pub fn check<T>(
         self,
