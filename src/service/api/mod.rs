@@ -2,12 +2,14 @@
 
 mod docs;
 mod equilibria;
+mod frames_convert;
 mod health;
 mod jacobi;
 mod limits;
 mod openapi;
 mod problems;
 mod systems;
+mod units_convert;
 mod version;
 
 pub use version::arithmetic;
@@ -31,6 +33,8 @@ fn operations() -> OpenApiRouter<App> {
         .routes(routes!(equilibria::of_system))
         .routes(routes!(equilibria::equilibria))
         .routes(routes!(jacobi::jacobi))
+        .routes(routes!(units_convert::units_convert))
+        .routes(routes!(frames_convert::frames_convert))
         .routes(routes!(limits::limits))
         .routes(routes!(version::version))
         .routes(routes!(health::livez))
