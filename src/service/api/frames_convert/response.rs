@@ -31,6 +31,7 @@ pub(crate) struct ConvertedFrom {
 
 /// How good the conversion is, measured by converting the answer back; normalised, whatever the units.
 #[derive(Debug, Serialize, ToSchema)]
+#[expect(clippy::struct_field_names, reason = "the names are those of the published members")]
 pub(crate) struct FramesConvertEvidence {
     /// Largest distance between a given position and the answer's, converted back, in separations.
     position_error: f64,
