@@ -4,9 +4,15 @@
 mod configuration;
 mod decoding;
 mod documents;
+mod equilibria;
+mod frames_convert;
+mod jacobi;
 mod lifecycle;
 mod network;
 mod openapi;
 mod pool;
 mod problems;
+mod router;
 mod support;
+mod systems;
+mod units_convert;
