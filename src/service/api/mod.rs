@@ -5,6 +5,7 @@ mod health;
 mod limits;
 mod openapi;
 mod problems;
+mod trajectories;
 mod version;
 
 pub use version::arithmetic;
@@ -23,6 +24,7 @@ use crate::{cors, middleware};
 /// Every operation, a line each.
 fn operations() -> OpenApiRouter<App> {
     OpenApiRouter::with_openapi(crate::openapi::Api::openapi())
+        .routes(routes!(trajectories::trajectories))
         .routes(routes!(limits::limits))
         .routes(routes!(version::version))
         .routes(routes!(health::livez))

@@ -26,7 +26,7 @@ macro_rules! request {
         $(#[doc = $doc])*
         #[derive(Clone, Debug, PartialEq)]
         $vis struct $name {
-            $($(#[doc = $member_doc])* pub $member: $crate::decode::Field<$type>,)*
+            $($(#[doc = $member_doc])* $vis $member: $crate::decode::Field<$type>,)*
         }
 
         impl $crate::decode::Named for $name {
@@ -107,11 +107,11 @@ macro_rules! choices {
 
         impl $name {
             /// Every choice by name.
-            pub const NAMES: &'static [&'static str] = &[$($text),*];
+            $vis const NAMES: &'static [&'static str] = &[$($text),*];
 
             /// The name it goes by.
             #[must_use]
-            pub fn name(self) -> &'static str {
+            $vis fn name(self) -> &'static str {
                 match self { $(Self::$variant => $text,)* }
             }
         }
