@@ -69,9 +69,9 @@ fn explain(response: Response, line: &Line) -> Response {
     let problem = parts
         .extensions
         .remove::<Arc<Problem>>()
-        .unwrap_or_else(|| Arc::new(foreign(&parts.headers, parts.status)));
+        .unwrap_or_else(|| Arc::new(foreign(&line.method, parts.status)));
     if let Some(cause) = problem.cause() {
-        tracing::error!(request_id = ?line.id, cause, "defect");
+        tracing::error!(request_id = line.id.to_str().unwrap_or_default(), cause, "defect");
     }
     parts.status = problem.slug().status();
     let body = problem.body(line.uri.path(), line.id.to_str().unwrap_or_default());
@@ -81,13 +81,12 @@ fn explain(response: Response, line: &Line) -> Response {
     Response::from_parts(parts, body)
 }
 
-fn foreign(headers: &HeaderMap, status: StatusCode) -> Problem {
+fn foreign(method: &Method, status: StatusCode) -> Problem {
     match status {
         StatusCode::NOT_FOUND => Problem::new(Slug::NotFound, "There is nothing at this path"),
         StatusCode::METHOD_NOT_ALLOWED => {
-            let allowed =
-                headers.get(header::ALLOW).and_then(|allow| allow.to_str().ok()).unwrap_or_default();
-            Problem::new(Slug::MethodNotAllowed, format!("This path takes {allowed}"))
+            let detail = format!("This path does not take {method}; `allow` lists what it takes");
+            Problem::new(Slug::MethodNotAllowed, detail)
         }
         _ => Problem::internal(&format_args!("the framework answered {status} by itself")),
     }

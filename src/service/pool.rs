@@ -73,6 +73,12 @@ impl Pool {
         }
     }
 
+    /// How many computations would be taken now.
+    #[must_use]
+    pub fn free_places(&self) -> usize {
+        self.places.available_permits()
+    }
+
     /// Cancels every computation that runs or waits, and those to come.
     pub fn close(&self) {
         self.closing.store(true, Ordering::Relaxed);

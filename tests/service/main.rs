@@ -1,1 +1,12 @@
-//! Tests of the service.
+//! Tests of the service, against its router and against the real binary.
+#![expect(clippy::unwrap_used, reason = "a test that cannot go on has failed")]
+
+mod configuration;
+mod decoding;
+mod documents;
+mod lifecycle;
+mod network;
+mod openapi;
+mod pool;
+mod problems;
+mod support;

@@ -42,10 +42,12 @@ impl<S: Serializer> Serializer for Finite<S> {
         serialize_i16(i16);
         serialize_i32(i32);
         serialize_i64(i64);
+        serialize_i128(i128);
         serialize_u8(u8);
         serialize_u16(u16);
         serialize_u32(u32);
         serialize_u64(u64);
+        serialize_u128(u128);
         serialize_char(char);
         serialize_str(&str);
         serialize_bytes(&[u8]);

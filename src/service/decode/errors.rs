@@ -112,6 +112,12 @@ impl Errors {
         }
     }
 
+    /// What a member is called where this request has it.
+    #[must_use]
+    pub fn noun(&self) -> &'static str {
+        if self.in_query { "parameter" } else { "member" }
+    }
+
     /// How many faults there are so far.
     #[must_use]
     pub fn count(&self) -> usize {
@@ -135,7 +141,7 @@ impl From<Errors> for Problem {
     fn from(errors: Errors) -> Self {
         let excessive = errors.faults.iter().all(|fault| fault.beyond.is_some());
         let slug = if excessive { Slug::WorkLimit } else { Slug::InvalidRequest };
-        let what = if errors.in_query { "parameter" } else { "member" };
+        let what = errors.noun();
         let mut detail = match (errors.count, excessive) {
             (1, true) => format!("1 {what} asks for too much"),
             (n, true) => format!("{n} {what}s ask for too much"),

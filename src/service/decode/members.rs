@@ -123,10 +123,8 @@ impl<'n> Members<'n> {
     pub fn finish(self, errors: &mut Errors) {
         for (name, _) in self.object {
             if !self.known.contains(&&**name) {
-                errors.push(
-                    self.at.member(name),
-                    format!("unknown member; {}", did_you_mean(name, self.known)),
-                );
+                let detail = format!("unknown {}; {}", errors.noun(), did_you_mean(name, self.known));
+                errors.push(self.at.member(name), detail);
             }
         }
     }

@@ -37,5 +37,14 @@ fn page(slug: Slug) -> String {
         .replace("{name}", slug.name())
         .replace("{status}", slug.status().as_str())
         .replace("{title}", slug.title())
-        .replace("{explanation}", slug.explanation())
+        .replace("{explanation}", &html(slug.explanation()))
+}
+
+/// Code between backticks; the explanations have nothing else to mark up.
+fn html(text: &str) -> String {
+    let text = text.replace('&', "&amp;").replace('<', "&lt;");
+    let parts = text.split('`').enumerate();
+    parts
+        .map(|(index, part)| if index % 2 == 1 { format!("<code>{part}</code>") } else { part.to_owned() })
+        .collect()
 }

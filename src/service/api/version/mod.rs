@@ -37,7 +37,7 @@ static VERSION: LazyLock<Document> = LazyLock::new(|| {
     let version = Version {
         name: env!("CARGO_PKG_NAME"),
         release: env!("CARGO_PKG_VERSION"),
-        commit: env!("SYNODIA_COMMIT"),
+        commit: env!("SOURCE_COMMIT"),
         arithmetic: arithmetic(),
     };
     Document::new(JSON, serde_json::to_vec(&version).unwrap_or_default())
