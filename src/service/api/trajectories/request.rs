@@ -64,6 +64,7 @@ request! {
 request! {
     /// Trajectories of one or many states.
     #[example("example.json")]
+    #[not_offered("arithmetic", "audit")]
     pub(super) struct TrajectoriesRequest {
         /// The primaries.
         required system: SystemSpec,
