@@ -10,3 +10,4 @@ mod openapi;
 mod pool;
 mod problems;
 mod support;
+mod trajectories;
