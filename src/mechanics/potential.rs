@@ -137,9 +137,14 @@ impl JacobiConstant {
         position: &Vector3<f64>,
         velocity: &Vector3<f64>,
     ) -> Result<Self, AtPrimary> {
-        let at_rest = Self::at_rest(mass_parameter, position)?;
+        Ok(Self::at_rest(mass_parameter, position)?.moving(velocity))
+    }
+
+    /// Of the velocity (vx, vy, vz) where this is the constant of rest.
+    #[must_use]
+    pub fn moving(self, velocity: &Vector3<f64>) -> Self {
         let [vx, vy, vz] = [velocity.x, velocity.y, velocity.z].map(DoubleDouble::square);
-        Ok(Self { remainder: at_rest.remainder - (vx + vy + vz), ..at_rest })
+        Self { remainder: self.remainder - (vx + vy + vz), ..self }
     }
 
     /// Of a state in barycentric rotating axes.
@@ -197,6 +202,23 @@ impl JacobiConstant {
     #[must_use]
     pub fn energy(&self, form: JacobiForm) -> f64 {
         -0.5 * self.value(form)
+    }
+
+    /// How far the constant of `state` is from C = x² + y² + 2(1 − μ)/r₁ + 2μ/r₂ − v² evaluated in double precision,
+    /// relative to the largest of these terms. The rounding of the definition's own evaluation is most of it.
+    #[must_use]
+    pub fn departure_from_definition(&self, state: &State) -> f64 {
+        let (r, v, mu) = (&state.position, &state.velocity, self.mu);
+        let across = r.y * r.y + r.z * r.z;
+        let distance = |along: f64| (along * along + across).sqrt();
+        let terms = [
+            r.x * r.x + r.y * r.y,
+            2.0 * (1.0 - mu) / distance(r.x + mu),
+            2.0 * mu / distance((r.x + mu) - 1.0),
+            -v.norm_squared(),
+        ];
+        let largest = terms.iter().fold(0.0, |largest: f64, term| largest.max(term.abs()));
+        (terms.iter().sum::<f64>() - self.value(JacobiForm::Plain)).abs() / largest
     }
 
     /// This constant minus `other`, rounded once. Both belong to the same mass parameter.

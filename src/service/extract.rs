@@ -201,3 +201,18 @@ impl<S: Sync> FromRequestParts<S> for Plain {
         Ok(Self(std::mem::take(&mut parts.headers)))
     }
 }
+
+/// The one variable segment of a path.
+#[derive(Debug)]
+pub struct Segment(pub String);
+
+impl<S: Send + Sync> FromRequestParts<S> for Segment {
+    type Rejection = Problem;
+
+    async fn from_request_parts(parts: &mut Parts, state: &S) -> Result<Self, Problem> {
+        match axum::extract::Path::<String>::from_request_parts(parts, state).await {
+            Ok(axum::extract::Path(segment)) => Ok(Self(segment)),
+            Err(_) => Err(Problem::new(Slug::NotFound, "The path is not UTF-8")),
+        }
+    }
+}

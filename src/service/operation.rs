@@ -3,6 +3,7 @@
 
 use std::time::{Duration, Instant};
 
+use mechanics::interrupt::Stop;
 use serde::Serialize;
 
 use crate::answer::{Answer, Effort, JSON};
@@ -10,7 +11,7 @@ use crate::config::Limits;
 use crate::decode::{Decode, Errors, Node, Path, parse};
 use crate::extract::Submission;
 use crate::pool::Context;
-use crate::problem::Problem;
+use crate::problem::{Problem, Slug};
 use crate::state::App;
 
 /// A computation that can be asked for.
@@ -85,6 +86,37 @@ pub async fn answer<O: Operation>(app: App, submission: Submission) -> Result<An
     } else {
         app.pool.run(move |context| finish::<O>(task, &limits, context)).await?
     }
+}
+
+/// Items that are computed between two looks at the clock: a few milliseconds of work at most.
+const PART: usize = 64;
+
+/// Computes `each` of `0..total` on this and the idle compute threads, in order.
+///
+/// # Errors
+/// `wall-time-limit` if the time granted is too short for all of them.
+pub fn batch<R: Send + 'static>(
+    context: &Context,
+    total: usize,
+    each: impl Fn(usize) -> R + Send + Sync + 'static,
+) -> Result<Vec<R>, Problem> {
+    let parts = context.parts(total, PART, move |part, interrupt| match interrupt.poll() {
+        None => Ok(part.map(&each).collect::<Vec<R>>()),
+        Some(stop) => Err(stop),
+    });
+    let mut all = Vec::with_capacity(total);
+    for part in parts {
+        match part {
+            Ok(part) => all.extend(part),
+            Err(Stop::Cancelled) => return Err(Problem::overloaded("The server is stopping")),
+            Err(Stop::WallTime) => {
+                let detail =
+                    format!("The time granted was too short for all {total} items; none is returned");
+                return Err(Problem::new(Slug::WallTimeLimit, detail));
+            }
+        }
+    }
+    Ok(all)
 }
 
 fn prepare<O: Operation>(body: &[u8], limits: &Limits) -> Result<O::Task, Problem> {

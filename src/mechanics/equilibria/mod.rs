@@ -11,6 +11,7 @@ use nalgebra::Vector3;
 pub use linear::{LinearMotion, ROUTH};
 
 use crate::arithmetic::DoubleDouble;
+use crate::frame::Origin;
 use crate::potential::{JacobiConstant, Place, larger_share};
 use crate::quantity::{MassParameter, Quantity};
 use crate::state::State;
@@ -100,6 +101,23 @@ impl Equilibrium {
     #[must_use]
     pub fn position(&self) -> Vector3<f64> {
         self.position
+    }
+
+    /// Rotating position (x, y, z) from `origin`, in separations. From a primary its digits are those of the distances,
+    /// however near the point is.
+    #[must_use]
+    pub fn position_from(&self, origin: Origin) -> Vector3<f64> {
+        let (larger, smaller) = (self.distance_to_larger(), self.distance_to_smaller());
+        let x = match (origin, self.point) {
+            (Origin::Barycenter, _) => self.position.x,
+            (Origin::Larger, Point::L1 | Point::L2) => larger,
+            (Origin::Larger, Point::L3) => -larger,
+            (Origin::Larger, Point::L4 | Point::L5) => 0.5,
+            (Origin::Smaller, Point::L1 | Point::L3) => -smaller,
+            (Origin::Smaller, Point::L2) => smaller,
+            (Origin::Smaller, Point::L4 | Point::L5) => -0.5,
+        };
+        Vector3::new(x, self.position.y, self.position.z)
     }
 
     /// The state of rest in it at time 0.

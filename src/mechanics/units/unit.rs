@@ -239,6 +239,12 @@ impl Unit {
         symbols
     }
 
+    /// Whether it is the normalised one, whose size depends on the system.
+    #[must_use]
+    pub fn is_normalized(&self) -> bool {
+        self.size.is_none()
+    }
+
     fn resolve(&self, system: &System) -> Result<Ratio, MissingScale> {
         match self.size {
             Some(size) => Ok(size),

@@ -4,9 +4,11 @@ use axum::body::Body;
 use axum::response::{IntoResponse, Response};
 use bytes::Bytes;
 use http::{HeaderMap, HeaderValue, StatusCode, header};
+use serde::Serialize;
 use sha2::{Digest, Sha256};
 
-use super::{REPR_DIGEST, repr_digest};
+use super::{JSON, REPR_DIGEST, repr_digest, written};
+use crate::problem::Problem;
 
 /// A body that stays the same while the server runs, with its strong entity tag.
 #[derive(Clone, Debug)]
@@ -30,6 +32,14 @@ impl Document {
             HeaderValue::from_str(&format!("\"{hash}\"")).unwrap_or_else(|_| HeaderValue::from_static("*"));
         let digest = repr_digest(&bytes);
         Self { bytes, media_type, tag, digest }
+    }
+
+    /// The JSON of `value`.
+    ///
+    /// # Errors
+    /// `internal` if a number in it is not finite.
+    pub fn json(value: &impl Serialize) -> Result<Self, Problem> {
+        written(value).map(|bytes| Self::new(JSON, bytes))
     }
 
     /// The document, or 304 to a client that has it already.

@@ -58,12 +58,7 @@ impl Answer {
     /// # Errors
     /// `internal` if a number in it is not finite: JSON has no way to write it, and `null` would hide it.
     pub fn json(value: &impl Serialize) -> Result<Self, Problem> {
-        let mut bytes = Vec::with_capacity(TYPICAL);
-        let mut serializer = serde_json::Serializer::new(&mut bytes);
-        match value.serialize(finite::Finite(&mut serializer)) {
-            Ok(()) => Ok(Self::new(JSON, bytes)),
-            Err(error) => Err(Problem::internal(&error)),
-        }
+        written(value).map(|bytes| Self::new(JSON, bytes))
     }
 
     /// The same with the time that computing took and its effort.
@@ -72,6 +67,16 @@ impl Answer {
         self.compute = Some(compute);
         self.effort = effort;
         self
+    }
+}
+
+/// The JSON of `value`, or `internal` if a number in it is not finite.
+fn written(value: &impl Serialize) -> Result<Vec<u8>, Problem> {
+    let mut bytes = Vec::with_capacity(TYPICAL);
+    let mut serializer = serde_json::Serializer::new(&mut bytes);
+    match value.serialize(finite::Finite(&mut serializer)) {
+        Ok(()) => Ok(bytes),
+        Err(error) => Err(Problem::internal(&error)),
     }
 }
 

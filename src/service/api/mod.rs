@@ -1,11 +1,16 @@
 //! The table of contents: every path the service answers.
 
 mod docs;
+mod equilibria;
+mod frames_convert;
 mod health;
+mod jacobi;
 mod limits;
 mod openapi;
 mod problems;
+mod systems;
 mod trajectories;
+mod units_convert;
 mod version;
 
 pub use version::arithmetic;
@@ -24,6 +29,13 @@ use crate::{cors, middleware};
 /// Every operation, a line each.
 fn operations() -> OpenApiRouter<App> {
     OpenApiRouter::with_openapi(crate::openapi::Api::openapi())
+        .routes(routes!(systems::systems))
+        .routes(routes!(systems::system))
+        .routes(routes!(equilibria::of_system))
+        .routes(routes!(equilibria::equilibria))
+        .routes(routes!(jacobi::jacobi))
+        .routes(routes!(units_convert::units_convert))
+        .routes(routes!(frames_convert::frames_convert))
         .routes(routes!(trajectories::trajectories))
         .routes(routes!(limits::limits))
         .routes(routes!(version::version))

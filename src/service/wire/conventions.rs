@@ -1,18 +1,21 @@
 //! What the numbers of a request and its answer mean: system, units and frame. They go together, because a number can
 //! be checked only when all three are known.
 
+use std::borrow::Cow;
+
 use mechanics::frame::Frame;
 use mechanics::quantity::{Coordinate, Epoch, OutOfRange, Quantity, Speed};
 use mechanics::state::State;
 use mechanics::system::System;
 use mechanics::units::{Scale, Units};
 use nalgebra::Vector3;
-use serde::Serialize;
+use serde::{Serialize, Serializer};
 use utoipa::ToSchema;
+use utoipa::openapi::{RefOr, Schema};
 
 use super::state::{Motion, Places, StateEcho, StateSpec};
 use super::{FrameEcho, FrameSpec, SystemEcho, SystemSpec, UnitsEcho, UnitsSpec};
-use crate::decode::{Errors, Field, Path, refusal};
+use crate::decode::{Errors, Field, Path, Schemas, refusal};
 
 /// System, units and frame of a request and its answer.
 #[derive(Clone, Debug, PartialEq)]
@@ -70,7 +73,7 @@ impl Conventions {
         }
     }
 
-    /// The echo.
+    /// The echo, which is also how they are serialised.
     #[must_use]
     pub fn echo(&self) -> ConventionsEcho<'_> {
         ConventionsEcho {
@@ -126,6 +129,28 @@ impl Conventions {
     #[must_use]
     pub fn state_out(&self, state: &State) -> StateEcho {
         self.scale.state_out(&self.frame.from_default(self.system.mass_parameter(), state)).into()
+    }
+}
+
+impl Serialize for Conventions {
+    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
+        self.echo().serialize(serializer)
+    }
+}
+
+impl utoipa::PartialSchema for Conventions {
+    fn schema() -> RefOr<Schema> {
+        ConventionsEcho::schema()
+    }
+}
+
+impl ToSchema for Conventions {
+    fn name() -> Cow<'static, str> {
+        ConventionsEcho::name()
+    }
+
+    fn schemas(schemas: &mut Schemas) {
+        ConventionsEcho::schemas(schemas);
     }
 }
 

@@ -5,7 +5,7 @@ use serde::Serialize;
 use utoipa::ToSchema;
 use utoipa::openapi::{RefOr, Schema};
 
-use crate::decode::{Decode, Errors, Node, Path, Schemas, choices, request};
+use crate::decode::{Decode, Errors, Field, Node, Path, Schemas, choices, request};
 
 choices! {
     /// Axes that turn with the primaries, or fixed ones that coincide with them at time 0.
@@ -51,6 +51,22 @@ impl Decode for FrameSpec {
 
     fn describe(named: &mut Schemas) -> RefOr<Schema> {
         FrameObject::describe(named)
+    }
+}
+
+/// Refuses inertial axes, in which `what` do not rest; the fault is placed at `axes`.
+pub fn rotating(
+    frame: Field<FrameSpec>,
+    axes: Path<'_>,
+    what: &str,
+    errors: &mut Errors,
+) -> Field<FrameSpec> {
+    match frame {
+        Field::Given(FrameSpec(frame)) if !frame.is_rotating() => {
+            errors.push(axes, format!("must be `rotating`: {what} need rotating axes"));
+            Field::Faulty
+        }
+        other => other,
     }
 }
 

@@ -21,7 +21,7 @@ request! {
         optional velocity: [f64; 3],
         /// Canonical momenta px = vx - n y, py = vy + n x, pz = vz; n is the mean motion.
         optional momentum: [f64; 3],
-        /// Osculating elements; with `elements_about`.
+        /// Osculating elements, with `elements_about`; derived and ignored beside position and velocity.
         optional elements: ElementsSpec,
         /// The primary that the elements are about.
         optional elements_about: About,
@@ -79,18 +79,19 @@ impl Decode for StateSpec {
 
 fn motion(object: StateObject, at: Path<'_>, errors: &mut Errors) -> Option<Motion> {
     let StateObject { position, velocity, momentum, elements, elements_about, .. } = object;
-    let ways = [!velocity.is_absent(), !momentum.is_absent(), !elements.is_absent()];
-    if ways.iter().filter(|given| **given).count() != 1 {
+    let told = [!velocity.is_absent(), !momentum.is_absent()];
+    let rates = told.into_iter().filter(|given| *given).count();
+    if rates > 1 || (rates == 0 && elements.is_absent()) {
         errors.push(at, "must have exactly one of `velocity`, `momentum` and `elements`");
         return None;
     }
-    if elements.is_absent() {
+    if elements.is_absent() && !elements_about.is_absent() {
+        errors.push(at.member("elements_about"), "goes with `elements` only");
+        return None;
+    }
+    if rates == 1 {
         if position.is_absent() {
             errors.push(at.member("position"), "is required");
-        }
-        if !elements_about.is_absent() {
-            errors.push(at.member("elements_about"), "goes with `elements` only");
-            return None;
         }
         return match (velocity, momentum) {
             (Field::Given(velocity), _) => Some(Motion::Velocity(position.given()?, velocity)),
@@ -118,6 +119,16 @@ pub struct StatesSpec {
 }
 
 impl StatesSpec {
+    /// The states, unless there are more than `limit`.
+    pub fn at_most(self, limit: u64, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
+        let asked = u64::try_from(self.states.len()).unwrap_or(u64::MAX);
+        if asked > limit {
+            errors.beyond(at, "states", limit, asked);
+            return None;
+        }
+        Some(self)
+    }
+
     /// Calls `each` with the index, the state and its places of time, position and velocity.
     pub fn check<T>(
         self,

@@ -53,6 +53,22 @@ request! {
         optional radius_larger: f64,
         /// Radius of the smaller primary, in separations.
         optional radius_smaller: f64,
+        /// What the catalogue says of it; ignored.
+        optional published_period_d: f64,
+        /// What the catalogue says of it; ignored.
+        optional sources: Vec<SourceSpec>,
+    }
+}
+
+request! {
+    /// A constant and where it was published.
+    pub(crate) struct SourceSpec {
+        /// Which constant.
+        optional constant: Text,
+        /// Its value.
+        optional value: f64,
+        /// Where it was published.
+        optional source: Text,
     }
 }
 
@@ -224,4 +240,12 @@ impl<'a> From<&'a System> for SystemEcho<'a> {
             radius_smaller: system.radius(Primary::Smaller),
         }
     }
+}
+
+/// Serialises a system as its echo.
+///
+/// # Errors
+/// The serializer's.
+pub fn as_system_echo<S: serde::Serializer>(system: &System, serializer: S) -> Result<S::Ok, S::Error> {
+    SystemEcho::from(system).serialize(serializer)
 }

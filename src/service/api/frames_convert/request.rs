@@ -1,0 +1,123 @@
+use std::time::Duration;
+
+use mechanics::elements::Elements;
+use mechanics::frame::NotCanonical;
+use mechanics::state::State;
+
+use super::convert::{Given, Target};
+use crate::config::Limits;
+use crate::decode::{Errors, Field, Path, choices, request};
+use crate::wire::{About, Conventions, FrameSpec, LimitsSpec, StatesSpec, SystemSpec, UnitsSpec};
+
+choices! {
+    /// What goes with a position.
+    pub(crate) enum Variables { Velocity = "velocity", Momentum = "momentum" }
+}
+
+request! {
+    /// The states to convert.
+    #[example("example.json")]
+    pub(crate) struct FramesConvertRequest {
+        /// The primaries.
+        required system: SystemSpec,
+        /// The states.
+        required states: StatesSpec,
+        /// What the states are in; normalised units and the default frame if absent.
+        optional from: FramesConvertFrom,
+        /// What to give them in; normalised units, the default frame and velocities if absent.
+        optional to: FramesConvertTo,
+        /// How much the computation may take.
+        optional limits: LimitsSpec,
+    }
+}
+
+request! {
+    /// What the given states are in.
+    pub(crate) struct FramesConvertFrom {
+        /// Units; normalised if absent.
+        optional units: UnitsSpec,
+        /// Frame; rotating, barycentric, x toward the smaller primary if absent.
+        optional frame: FrameSpec,
+    }
+}
+
+request! {
+    /// What to give the states in.
+    pub(crate) struct FramesConvertTo {
+        /// Units; normalised if absent.
+        optional units: UnitsSpec,
+        /// Frame; rotating, barycentric, x toward the smaller primary if absent.
+        optional frame: FrameSpec,
+        /// What goes with the positions: velocities if absent, or canonical momenta, which need rotating axes about the
+        /// barycentre.
+        optional variables: Variables,
+        /// Adds osculating elements about that primary.
+        optional elements_about: About,
+    }
+}
+
+/// A checked request.
+#[derive(Debug)]
+pub(crate) struct Task {
+    pub(super) from: Conventions,
+    pub(super) to: Target,
+    pub(super) states: Vec<Given>,
+    pub(super) wall_time: Duration,
+}
+
+impl FramesConvertRequest {
+    pub(super) fn task(self, limits: &Limits, errors: &mut Errors) -> Option<Task> {
+        let granted = LimitsSpec::check(self.limits, limits, errors);
+        let (from_at, to_at) = (Path::ROOT.member("from"), Path::ROOT.member("to"));
+        let (from_units, from_frame) = match self.from {
+            Field::Given(from) => (from.units, from.frame),
+            Field::Absent => (Field::Absent, Field::Absent),
+            Field::Faulty => (Field::Faulty, Field::Faulty),
+        };
+        let from = Conventions::check_under(from_at, self.system.clone(), from_units, from_frame, errors);
+        let to = target(self.system, self.to, to_at, errors);
+
+        let at = Path::ROOT.member("states");
+        let states = self.states.given().and_then(|states| states.at_most(limits.states, at, errors));
+        let from = from?;
+        let about = to.as_ref().and_then(|to| to.elements_about);
+        let mu = from.system.mass_parameter();
+        let states = states?.check(at, |state, places| {
+            let state: State = from.state_in(state, places, errors)?;
+            let x_axis = to.as_ref().map_or(from.frame.x_axis, |to| to.conventions.frame.x_axis);
+            let elements =
+                about.map(|about| Elements::from_state(mu, &state, about.into(), x_axis)).transpose();
+            match elements {
+                Ok(elements) => Some(Given { state, elements }),
+                Err(error) => {
+                    places.report("position", "", error.to_string(), errors);
+                    None
+                }
+            }
+        });
+        Some(Task { to: to?, from, states: states?, wall_time: granted?.wall_time })
+    }
+}
+
+fn target(
+    system: Field<SystemSpec>,
+    to: Field<FramesConvertTo>,
+    at: Path<'_>,
+    errors: &mut Errors,
+) -> Option<Target> {
+    let Some(to) = to.optional()? else {
+        let conventions = Conventions::check(system, Field::Absent, Field::Absent, errors)?;
+        return Some(Target { conventions, variables: Variables::Velocity, elements_about: None });
+    };
+    let variables = to.variables.or(Variables::Velocity);
+    let canonical = to.frame.or(FrameSpec::default()).is_none_or(|FrameSpec(frame)| frame.is_canonical());
+    if variables == Some(Variables::Momentum) && !canonical {
+        errors.push(at.member("variables"), NotCanonical.to_string());
+    }
+    let conventions = Conventions::check_under(at, system, to.units, to.frame, errors);
+    Some(Target {
+        conventions: conventions?,
+        variables: variables?,
+        elements_about: to.elements_about.optional()?,
+    })
+}
