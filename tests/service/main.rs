@@ -3,6 +3,7 @@
 
 mod configuration;
 mod decoding;
+mod dependencies;
 mod documents;
 mod lifecycle;
 mod network;
