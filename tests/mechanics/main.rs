@@ -1,4 +1,8 @@
 //! Checks of the mechanics crate against published values, and its invariants.
+#![expect(
+    clippy::disallowed_methods,
+    reason = "expected values are compared within a tolerance, not in their bits"
+)]
 
 mod arithmetic;
 mod elements;

@@ -3,6 +3,7 @@
 
 mod configuration;
 mod decoding;
+mod dependencies;
 mod documents;
 mod equilibria;
 mod frames_convert;
@@ -16,3 +17,4 @@ mod router;
 mod support;
 mod systems;
 mod units_convert;
+mod trajectories;

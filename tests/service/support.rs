@@ -88,6 +88,20 @@ impl Server {
         self.get_with(path, "")
     }
 
+    /// POST of a JSON value.
+    pub(crate) fn post(&self, path: &str, body: &Value) -> Reply {
+        self.post_text(path, &body.to_string())
+    }
+
+    /// POST of a text that claims to be JSON.
+    pub(crate) fn post_text(&self, path: &str, body: &str) -> Reply {
+        let length = body.len();
+        self.send(&format!(
+            "POST {path} HTTP/1.1\r\nhost: test\r\nconnection: close\r\ncontent-type: application/json\r\n\
+             content-length: {length}\r\n\r\n{body}"
+        ))
+    }
+
     /// GET with more header lines, each ended by CRLF.
     pub(crate) fn get_with(&self, path: &str, headers: &str) -> Reply {
         self.send(&format!("GET {path} HTTP/1.1\r\nhost: test\r\nconnection: close\r\n{headers}\r\n"))

@@ -86,6 +86,7 @@ impl Real for f64 {
 }
 
 #[cfg(test)]
+#[expect(clippy::disallowed_methods, reason = "compared within a tolerance, not in their bits")]
 mod tests {
     use super::Real;
 

@@ -4,11 +4,13 @@
 
 mod double;
 mod double_double;
+mod quad;
 pub mod sum;
 
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
 pub use double_double::DoubleDouble;
+pub use quad::Quad;
 
 /// The operations the Taylor recurrences need.
 pub trait Real:

@@ -367,7 +367,7 @@ impl<'a> Course<'a> {
             Sampling::Interval(interval) => (interval * step).min(self.duration.abs()) * self.direction,
             Sampling::Times(times) => {
                 let time = *times.get(usize::try_from(number).ok()?)?;
-                return Some((Compensated::sum(time, -self.start), time));
+                return Some((self.request.since_start(self.index, time), time));
             }
             Sampling::None | Sampling::EveryStep => return None,
         };

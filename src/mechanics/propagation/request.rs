@@ -15,6 +15,9 @@ use crate::taylor::{Primaries, StepSize};
 const STATE_VALUES: u64 = 7;
 /// Numbers of a state transition matrix.
 const MATRIX_VALUES: u64 = 36;
+/// An instant this many round-offs of the clock beyond an end of a trajectory is that end: a sum was rounded, or a
+/// unit converted.
+const CLOCK_SLACK: f64 = 8.0 * f64::EPSILON;
 /// A last interval is not dropped because its product was rounded up past the end.
 const INTERVAL_SLACK: f64 = 1.0 + 4.0 * f64::EPSILON;
 
@@ -314,8 +317,8 @@ impl Request {
     /// Whether an instant lies in the closed span of a trajectory.
     fn holds(&self, trajectory: usize, time: f64) -> bool {
         let (from, to) = self.ends(trajectory);
-        let (low, high) = if from <= to { (from, to) } else { (to, from) };
-        time >= low && time <= high
+        let slack = CLOCK_SLACK * from.abs().max(to.abs());
+        time >= from.min(to) - slack && time <= from.max(to) + slack
     }
 
     fn check_sampling(&self, problems: &mut Vec<Invalid>) {
@@ -401,16 +404,27 @@ impl Request {
         }
     }
 
+    /// Signed time from the start of a trajectory to an instant that it holds, within its duration.
+    pub(super) fn since_start(&self, trajectory: usize, time: f64) -> Compensated {
+        let since = Compensated::sum(time, -self.parts.states[trajectory].time);
+        let duration = self.duration(trajectory);
+        let (low, high) = (duration.min(0.0), duration.max(0.0));
+        if since.value >= low && since.value <= high {
+            since
+        } else {
+            Compensated::new(since.value.clamp(low, high))
+        }
+    }
+
     /// The manoeuvres of a trajectory with their signed time since its start, along the integration.
     pub(super) fn manoeuvres_of(&self, trajectory: usize) -> Vec<(Compensated, &Manoeuvre)> {
-        let start = self.parts.states[trajectory].time;
         let backwards = self.duration(trajectory) < 0.0;
         let mut own: Vec<_> = self
             .parts
             .manoeuvres
             .iter()
             .filter(|manoeuvre| concerns(manoeuvre, trajectory))
-            .map(|manoeuvre| (Compensated::sum(manoeuvre.time, -start), manoeuvre))
+            .map(|manoeuvre| (self.since_start(trajectory, manoeuvre.time), manoeuvre))
             .collect();
         own.sort_by(|(_, a), (_, b)| a.time.total_cmp(&b.time));
         if backwards {

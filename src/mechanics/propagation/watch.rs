@@ -7,7 +7,7 @@ use nalgebra::Vector3;
 
 use super::event::{Plane, When};
 use super::roots::{self, Composed, Polynomial};
-use crate::arithmetic::sum::Compensated;
+use crate::arithmetic::{Quad, sum::Compensated};
 use crate::frame::{Axes, Frame, Origin, XAxis};
 use crate::quantity::Quantity;
 use crate::system::Primary;
@@ -60,8 +60,9 @@ impl<'a> Stretch<'a> {
         (self.series.side > 0.0) == (primary == Primary::Smaller)
     }
 
-    fn half_square(&self, primary: Primary) -> &Polynomial {
-        if self.is_near(primary) { &self.series.half_square_near } else { &self.series.half_square_far }
+    fn half_square(&self, primary: Primary) -> impl Fn(usize) -> f64 {
+        let lane = usize::from(!self.is_near(primary));
+        move |k| self.series.half_square[k][lane]
     }
 
     /// The state `at` a time after the start of the step.
@@ -73,11 +74,11 @@ impl<'a> Stretch<'a> {
     /// Position relative to a primary, and velocity, `at` a time after the start of the step.
     fn relative(&self, primary: Primary, at: f64) -> (Vector3<f64>, Vector3<f64>) {
         let moved = taylor::flow(self.series, at);
-        let [d, y, z] = &self.series.position;
-        let x = if self.is_near(primary) { d[0] } else { d[0] + self.series.side };
+        let [Quad([d, y, z, _]), Quad([vx, vy, vz, _]), ..] = self.series.position;
+        let x = if self.is_near(primary) { d } else { d + self.series.side };
         (
-            Vector3::new(x + moved[0], y[0] + moved[1], z[0] + moved[2]),
-            Vector3::new(d[1] + moved[3], y[1] + moved[4], z[1] + moved[5]),
+            Vector3::new(x + moved[0], y + moved[1], z + moved[2]),
+            Vector3::new(vx + moved[3], vy + moved[4], vz + moved[5]),
         )
     }
 }
@@ -182,25 +183,24 @@ impl Function {
         match self {
             Self::Plane { normal, offset, origin, turning } => {
                 let start = position_from(stretch.state, *origin);
-                let [d, y, z] = &stretch.series.position;
+                let coordinates = |k: usize| {
+                    let Quad([x, y, z, _]) = stretch.series.position[k];
+                    if k == 0 { start } else { Vector3::new(x, y, z) }
+                };
                 if *turning {
                     let (x_series, y_series) = turned(normal, stretch.time);
-                    let coordinate = |p: &Polynomial, first: f64, j: usize| if j == 0 { first } else { p[j] };
                     polynomial = stretch.scaled(|k| {
-                        let mut sum = normal.z * coordinate(z, start.z, k);
+                        let mut sum = normal.z * coordinates(k).z;
                         for i in 0..=k {
-                            sum += x_series[i] * coordinate(d, start.x, k - i)
-                                + y_series[i] * coordinate(y, start.y, k - i);
+                            let place = coordinates(k - i);
+                            sum += x_series[i] * place.x + y_series[i] * place.y;
                         }
                         if k == 0 { sum - offset } else { sum }
                     });
                 } else {
                     polynomial = stretch.scaled(|k| {
-                        if k == 0 {
-                            normal.dot(&start) - offset
-                        } else {
-                            normal.x * d[k] + normal.y * y[k] + normal.z * z[k]
-                        }
+                        let height = normal.dot(&coordinates(k));
+                        if k == 0 { height - offset } else { height }
                     });
                 }
                 magnitude = normal.abs().dot(&start.abs()) + offset.abs();
@@ -209,19 +209,19 @@ impl Function {
                 let half_square = stretch.half_square(*primary);
                 let half_radius_square = 0.5 * radius * radius;
                 polynomial = stretch.scaled(|k| match k {
-                    0 => half_square[0] - half_radius_square,
-                    k if k < TERMS - 2 => half_square[k],
+                    0 => half_square(0) - half_radius_square,
+                    k if k < TERMS - 2 => half_square(k),
                     _ => 0.0,
                 });
-                magnitude = half_square[0];
+                magnitude = half_square(0);
             }
             Self::RadialRate { primary } => {
                 let half_square = stretch.half_square(*primary);
                 #[expect(clippy::cast_precision_loss, reason = "orders are small")]
-                let of = |k: usize| if k < TERMS - 3 { (k + 1) as f64 * half_square[k + 1] } else { 0.0 };
+                let of = |k: usize| if k < TERMS - 3 { (k + 1) as f64 * half_square(k + 1) } else { 0.0 };
                 polynomial = stretch.scaled(of);
                 let speed: f64 = stretch.state[3..].iter().map(|v| v.value.abs()).sum();
-                magnitude = (2.0 * half_square[0]).sqrt() * speed;
+                magnitude = (2.0 * half_square(0)).sqrt() * speed;
             }
         }
         let terms: f64 = polynomial.iter().map(|c| c.abs()).sum();

@@ -1,8 +1,8 @@
 //! The kernels compiled for the CPU's fused multiply-add and chosen at run time. Every path runs the same
 //! operations in the same order, so it has the same bits; without the instruction `mul_add` is slow but exact.
 
-use super::{Columns, ORDER, Primaries, Series, TERMS, recurrence, variational};
-use crate::arithmetic::{Real, sum::Compensated};
+use super::{Columns, Primaries, Series, TERMS, recurrence, variational};
+use crate::arithmetic::{Quad, Real, sum::Compensated};
 
 /// Whether the kernels run on fused multiply-add instructions here.
 #[must_use]
@@ -65,29 +65,7 @@ accelerated! {
 
     /// What the columns of the matrix (rows x, y, z, vx, vy, vz) change by within `time` of the series' instant.
     pub fn flow_variational(columns: &Columns<f64>, time: f64) -> [[f64; 6]; 6] {
-        let mut change = [[0.0; 6]; 6];
-        let top = &columns.position[TERMS - 1];
-        for axis in 0..3 {
-            for column in 0..6 {
-                change[axis][column] = top[axis][column];
-                change[axis + 3][column] = top[axis][column] * RATE[ORDER];
-            }
-        }
-        for k in (1..TERMS - 1).rev() {
-            let coefficients = &columns.position[k];
-            for axis in 0..3 {
-                for column in 0..6 {
-                    let p = coefficients[axis][column];
-                    let place = &mut change[axis][column];
-                    *place = place.mul_add(time, p);
-                    if k > 1 {
-                        let rate = &mut change[axis + 3][column];
-                        *rate = rate.mul_add(time, p * RATE[k - 1]);
-                    }
-                }
-            }
-        }
-        change.map(|row| row.map(|element| element * time))
+        variational::change(columns, time, &RATE)
     }
 
     /// The Jacobi constant 2Ω − v² of (x, y, z, vx, vy, vz).
@@ -118,20 +96,16 @@ const RATE: [f64; TERMS] = {
 
 /// Horner's rule for all orders above 0, so that the change is rounded relative to itself.
 #[inline(always)]
-fn change<R: Real>(position: &[[R; TERMS]; 3], time: R) -> [R; 6] {
-    let mut moved = [R::from_f64(0.0); 6];
-    for axis in 0..3 {
-        let p = &position[axis];
-        let mut place = p[TERMS - 1];
-        let mut rate = p[TERMS - 1] * R::from_f64(RATE[ORDER]);
-        for k in (1..TERMS - 1).rev() {
-            place = place.mul_add(time, p[k]);
-            if k > 1 {
-                rate = rate.mul_add(time, p[k] * R::from_f64(RATE[k - 1]));
-            }
-        }
-        moved[axis] = place * time;
-        moved[axis + 3] = rate * time;
+fn change<R: Real>(position: &[Quad<R>; TERMS], time: R) -> [R; 6] {
+    let time = Quad::splat(time);
+    let rated = |k: usize| position[k] * Quad::splat(R::from_f64(RATE[k - 1]));
+    let mut place = position[TERMS - 1];
+    let mut rate = rated(TERMS - 1);
+    for k in (2..TERMS - 1).rev() {
+        place = place.mul_add(time, position[k]);
+        rate = rate.mul_add(time, rated(k));
     }
-    moved
+    let Quad([x, y, z, _]) = place.mul_add(time, position[1]) * time;
+    let Quad([vx, vy, vz, _]) = rate * time;
+    [x, y, z, vx, vy, vz]
 }

@@ -9,6 +9,8 @@ mod recurrence;
 mod step;
 mod variational;
 
+use crate::arithmetic::{Quad, Real};
+
 pub use dispatch::{accelerated, expand, expand_variational, flow, flow_variational, jacobi_constant};
 pub use recurrence::Primaries;
 pub use step::{MAX_STEP, STEP_FLOOR, StepSize};
@@ -21,24 +23,19 @@ pub const ORDER: usize = 22;
 pub const TERMS: usize = ORDER + 2;
 
 /// The Taylor series about one instant: position relative to the nearer primary, and what the recurrences
-/// make on the way. Coefficient k belongs to the k-th power of the time since that instant.
+/// make on the way. Coefficient k belongs to the k-th power of the time since that instant. What belongs to the two
+/// primaries lies side by side, the nearer one first.
 #[derive(Clone, Debug)]
 #[repr(C, align(64))]
 pub struct Series<R> {
-    /// x relative to the nearer primary, y and z.
-    pub position: [[R; TERMS]; 3],
-    /// Half the squared distance to the nearer primary.
-    pub half_square_near: [R; TERMS],
-    /// Half the squared distance to the farther primary.
-    pub half_square_far: [R; TERMS],
-    /// Mass share over cubed distance of the nearer primary.
-    pub near: [R; TERMS],
-    /// Mass share over cubed distance of the farther primary.
-    pub far: [R; TERMS],
-    /// The sum of the two.
+    /// x relative to the nearer primary, y and z; the fourth lane is 0.
+    pub position: [Quad<R>; TERMS],
+    /// Half the squared distances.
+    pub half_square: [[R; 2]; TERMS],
+    /// Mass shares over cubed distances.
+    pub force: [[R; 2]; TERMS],
+    /// The sums of the two.
     pub total: [R; TERMS],
-    /// x of the nearer primary.
-    pub nearer_x: R,
     /// The nearer primary's x minus the farther one's: 1 where the smaller primary is nearer, else −1.
     pub side: R,
     /// Jacobi constant.
@@ -47,19 +44,16 @@ pub struct Series<R> {
     pub log2_radius: R,
 }
 
-impl<R: crate::arithmetic::Real> Series<R> {
+impl<R: Real> Series<R> {
     /// Room for a series.
     #[must_use]
     pub fn new() -> Self {
         let zero = R::from_f64(0.0);
         Self {
-            position: [[zero; TERMS]; 3],
-            half_square_near: [zero; TERMS],
-            half_square_far: [zero; TERMS],
-            near: [zero; TERMS],
-            far: [zero; TERMS],
+            position: [Quad::splat(zero); TERMS],
+            half_square: [[zero; 2]; TERMS],
+            force: [[zero; 2]; TERMS],
             total: [zero; TERMS],
-            nearer_x: zero,
             side: zero,
             jacobi: zero,
             log2_radius: zero,
@@ -67,7 +61,7 @@ impl<R: crate::arithmetic::Real> Series<R> {
     }
 }
 
-impl<R: crate::arithmetic::Real> Default for Series<R> {
+impl<R: Real> Default for Series<R> {
     fn default() -> Self {
         Self::new()
     }

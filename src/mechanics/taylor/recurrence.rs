@@ -15,7 +15,7 @@
 //! loaded coefficient serves two sums. In every sum the terms that wait for the newest coefficients come last.
 
 use super::{ORDER, Series, TERMS, step};
-use crate::arithmetic::{Real, sum::Compensated};
+use crate::arithmetic::{Quad, Real, sum::Compensated};
 
 /// The primaries' mass shares and places. `1 − μ` is kept with its rounding error, so that the distance to the
 /// smaller primary is exact however close.
@@ -51,15 +51,21 @@ impl Primaries {
     }
 }
 
-/// Weights (2k + j)/2k of the recurrence for the power −3/2, correctly rounded.
+/// Weight (2k + j)/2k of the recurrence for the power −3/2, correctly rounded.
 #[expect(clippy::cast_precision_loss, reason = "orders are small")]
-const WEIGHTS: [[f64; TERMS]; TERMS] = {
-    let mut weights = [[0.0; TERMS]; TERMS];
+const fn weight(k: usize, j: usize) -> f64 {
+    (2 * k + j) as f64 / (2 * k) as f64
+}
+
+/// Weights of the terms j of order k and j + 1 of order k + 1, each for two primaries.
+static WEIGHTS: [[Quad<f64>; TERMS]; TERMS] = {
+    let mut weights = [[Quad([0.0; 4]); TERMS]; TERMS];
     let mut k = 1;
     while k < TERMS {
         let mut j = 0;
         while j < TERMS {
-            weights[k][j] = (2 * k + j) as f64 / (2 * k) as f64;
+            let (even, odd) = (weight(k, j), weight(k + 1, j + 1));
+            weights[k][j] = Quad([even, even, odd, odd]);
             j += 1;
         }
         k += 1;
@@ -118,12 +124,12 @@ pub(super) fn expand<R: Real>(
 /// What every order needs again, formed once.
 struct Leading<R> {
     x: R,
-    /// 3/2 of the force coefficient 0, the factor of the newest half square.
-    steepened_near: R,
-    steepened_far: R,
-    /// −1 over the half square 0.
-    inverse_near: R,
-    inverse_far: R,
+    /// 3/2 of the force coefficients 0, the factors of the newest half squares.
+    steepened: [R; 2],
+    /// −1 over the half squares 0.
+    inverse: [R; 2],
+    /// −side in x: the direction in which the farther primary's force acts beside d.
+    toward: Quad<R>,
 }
 
 /// Order 0 of everything.
@@ -137,7 +143,7 @@ fn start<R: Real>(
 ) -> Leading<R> {
     let [x, y, z, vx, vy, vz] = *state;
     let constant = R::from_f64;
-    let (one, two, half) = (constant(1.0), constant(2.0), constant(0.5));
+    let (zero, one, two, half) = (constant(0.0), constant(1.0), constant(2.0), constant(0.5));
     let off_axis = z.mul_add(z, y * y);
     let square_larger = to_larger.mul_add(to_larger, off_axis);
     let square_smaller = to_smaller.mul_add(to_smaller, off_axis);
@@ -145,87 +151,70 @@ fn start<R: Real>(
 
     let share_smaller = constant(primaries.mass_parameter);
     let share_larger = constant(primaries.one_minus.value);
-    let square_near = pick(square_smaller, square_larger);
-    let square_far = pick(square_larger, square_smaller);
+    let square = [pick(square_smaller, square_larger), pick(square_larger, square_smaller)];
+    let share = [pick(share_smaller, share_larger), pick(share_larger, share_smaller)];
     s.side = pick(one, -one);
-    s.nearer_x = pick(share_larger, -share_smaller);
-
-    s.position[0][0] = pick(to_smaller, to_larger);
-    s.position[1][0] = y;
-    s.position[2][0] = z;
-    s.position[0][1] = vx;
-    s.position[1][1] = vy;
-    s.position[2][1] = vz;
-    s.half_square_near[0] = square_near * half;
-    s.half_square_far[0] = square_far * half;
-    let near = pick(share_smaller, share_larger) / (square_near * square_near.sqrt());
-    let far = pick(share_larger, share_smaller) / (square_far * square_far.sqrt());
-    s.near[0] = near;
-    s.far[0] = far;
+    s.position[0] = Quad([pick(to_smaller, to_larger), y, z, zero]);
+    s.position[1] = Quad([vx, vy, vz, zero]);
+    s.half_square[0] = square.map(|square| square * half);
+    s.force[0] = std::array::from_fn(|i| share[i] / (square[i] * square[i].sqrt()));
+    let [near, far] = s.force[0];
     s.total[0] = near + far;
 
     let speed_square = vz.mul_add(vz, vy.mul_add(vy, vx * vx));
-    let potential = near.mul_add(square_near, far * square_far);
+    let potential = near.mul_add(square[0], far * square[1]);
     s.jacobi = two.mul_add(potential, y.mul_add(y, x * x)) - speed_square;
 
-    let steep = constant(WEIGHTS[1][1]);
     Leading {
         x,
-        steepened_near: steep * near,
-        steepened_far: steep * far,
-        inverse_near: -one / s.half_square_near[0],
-        inverse_far: -one / s.half_square_far[0],
+        steepened: s.force[0].map(|force| force * constant(weight(1, 1))),
+        inverse: s.half_square[0].map(|half_square| -one / half_square),
+        toward: Quad([-s.side, zero, zero, zero]),
     }
 }
 
 /// From the position's coefficients up to `K` + 1, those of order `K` + 2 and `K` + 3.
 #[inline(always)]
 fn pair<R: Real, const K: usize>(leading: &Leading<R>, s: &mut Series<R>) {
-    let constant = R::from_f64;
+    let zero = R::from_f64(0.0);
+    let half_squares = half_squares::<R, K>(&s.position);
+    let [settled_even, settled_odd] = settled_products::<R, K>(&s.total, &s.position);
 
-    let half_squares = half_squares::<R, K>(s);
-    let settled = settled_products::<R, K>(s);
-
-    if K > 0 {
-        s.half_square_near[K] = half_squares[0];
-        s.half_square_far[K] = s.side.mul_add(s.position[0][K], half_squares[0]);
+    for (order, near) in [(K, half_squares[0]), (K + 1, half_squares[1])] {
+        if order > 0 {
+            s.half_square[order] = [near, s.side.mul_add(s.position[order].0[0], near)];
+        }
     }
-    s.half_square_near[K + 1] = half_squares[1];
-    s.half_square_far[K + 1] = s.side.mul_add(s.position[0][K + 1], half_squares[1]);
-
-    let near =
-        inverse_cubes::<R, K>(&s.half_square_near, &s.near, leading.steepened_near, leading.inverse_near);
-    let far = inverse_cubes::<R, K>(&s.half_square_far, &s.far, leading.steepened_far, leading.inverse_far);
+    let [even, odd] = inverse_cubes::<R, K>(&s.half_square, &s.force, leading);
     if K > 0 {
-        s.near[K] = near[0];
-        s.far[K] = far[0];
-        s.total[K] = near[0] + far[0];
+        s.force[K] = even;
+        s.total[K] = even[0] + even[1];
     }
-    s.near[K + 1] = near[1];
-    s.far[K + 1] = far[1];
-    s.total[K + 1] = near[1] + far[1];
+    s.force[K + 1] = odd;
+    s.total[K + 1] = odd[0] + odd[1];
 
     // The newest terms of the products, and the position two orders on.
-    let (g0, g1) = (s.total[K], s.total[K + 1]);
-    let mut acceleration = [[constant(0.0); 2]; 3];
-    for (axis, p) in s.position.iter().enumerate() {
-        let pull = settled[axis];
-        let even = -p[0].mul_add(g0, pull[0]);
-        let odd = -p[0].mul_add(g1, if K > 0 { p[1].mul_add(g0, pull[1]) } else { pull[1] });
-        acceleration[axis] = [even, odd];
+    let p = &mut s.position;
+    let (g_even, g_odd) = (Quad::splat(s.total[K]), Quad::splat(s.total[K + 1]));
+    let (far_even, far_odd) = (Quad::splat(s.force[K][1]), Quad::splat(s.force[K + 1][1]));
+    let in_plane = |x: R, y: R| Quad([x, y, zero, zero]);
+    let turned = |order: usize, rate: Quad<R>| {
+        let factor = R::from_f64(CORIOLIS[order]);
+        in_plane(factor * rate.0[1], -factor * rate.0[0])
+    };
+    let toward_center = -p[0];
+
+    let centrifugal = in_plane(if K > 0 { p[K].0[0] } else { leading.x }, p[K].0[1]);
+    let rest = (centrifugal - settled_even) + turned(K, p[K + 1]);
+    let acceleration = leading.toward.mul_add(far_even, toward_center.mul_add(g_even, rest));
+    p[K + 2] = twice_integrated(K, acceleration);
+
+    let mut rest = in_plane(p[K + 1].0[0], p[K + 1].0[1]) - settled_odd;
+    if K > 0 {
+        rest = (-p[1]).mul_add(g_even, rest);
     }
-    let [d, y, z] = &mut s.position;
-    let centrifugal = if K > 0 { d[K] } else { leading.x };
-    acceleration[0][0] = acceleration[0][0] + (-s.side).mul_add(s.far[K], centrifugal);
-    acceleration[0][1] = acceleration[0][1] + (-s.side).mul_add(s.far[K + 1], d[K + 1]);
-    acceleration[1][0] = acceleration[1][0] + y[K];
-    acceleration[1][1] = acceleration[1][1] + y[K + 1];
-    d[K + 2] = twice_integrated::<R>(K, constant(CORIOLIS[K]).mul_add(y[K + 1], acceleration[0][0]));
-    y[K + 2] = twice_integrated::<R>(K, constant(-CORIOLIS[K]).mul_add(d[K + 1], acceleration[1][0]));
-    z[K + 2] = twice_integrated::<R>(K, acceleration[2][0]);
-    d[K + 3] = twice_integrated::<R>(K + 1, constant(CORIOLIS[K + 1]).mul_add(y[K + 2], acceleration[0][1]));
-    y[K + 3] = twice_integrated::<R>(K + 1, constant(-CORIOLIS[K + 1]).mul_add(d[K + 2], acceleration[1][1]));
-    z[K + 3] = twice_integrated::<R>(K + 1, acceleration[2][1]);
+    let rest = leading.toward.mul_add(far_odd, toward_center.mul_add(g_odd, rest));
+    p[K + 3] = twice_integrated(K + 1, rest + turned(K + 1, p[K + 2]));
 }
 
 /// Beyond this order what the factors lost is far below the round-off of the sum of the series.
@@ -233,76 +222,65 @@ const REST_MATTERS: usize = 10;
 
 /// Coefficient k + 2 of the position from coefficient k of the acceleration.
 #[inline(always)]
-fn twice_integrated<R: Real>(k: usize, acceleration: R) -> R {
+fn twice_integrated<R: Real>(k: usize, acceleration: Quad<R>) -> Quad<R> {
     let (factor, rest) = TWICE_INTEGRATED[k];
-    if k < REST_MATTERS {
-        acceleration.mul_add(R::from_f64(factor), acceleration * R::from_f64(rest))
-    } else {
-        acceleration * R::from_f64(factor)
-    }
+    let (factor, rest) = (Quad::splat(R::from_f64(factor)), Quad::splat(R::from_f64(rest)));
+    if k < REST_MATTERS { acceleration.mul_add(factor, acceleration * rest) } else { acceleration * factor }
 }
 
 /// Half the squared distance to the nearer primary, orders `K` and `K` + 1: half squares need no doubling.
 #[inline(always)]
-fn half_squares<R: Real, const K: usize>(s: &Series<R>) -> [R; 2] {
+fn half_squares<R: Real, const K: usize>(p: &[Quad<R>; TERMS]) -> [R; 2] {
     let middle = K / 2;
-    let mut sums = [[R::from_f64(0.0); 2]; 3];
-    for (sum, p) in sums.iter_mut().zip(&s.position) {
-        let [mut even, mut odd] = [p[middle] * p[middle] * R::from_f64(0.5), p[middle] * p[middle + 1]];
-        for j in (0..middle).rev() {
-            even = p[j].mul_add(p[K - j], even);
-            odd = p[j].mul_add(p[K + 1 - j], odd);
-        }
-        *sum = [even, odd];
+    let mut even = p[middle] * p[middle] * Quad::splat(R::from_f64(0.5));
+    let mut odd = p[middle] * p[middle + 1];
+    for j in (0..middle).rev() {
+        even = p[j].mul_add(p[K - j], even);
+        odd = p[j].mul_add(p[K + 1 - j], odd);
     }
-    let [d, y, z] = sums;
-    [(d[0] + y[0]) + z[0], (d[1] + y[1]) + z[1]]
+    [even, odd].map(|Quad([d, y, z, _])| (d + y) + z)
 }
 
 /// The products of force and position of order `K` and `K` + 1, as far as they don't need the force's newest
 /// two coefficients.
 #[inline(always)]
-fn settled_products<R: Real, const K: usize>(s: &Series<R>) -> [[R; 2]; 3] {
-    let zero = R::from_f64(0.0);
-    let g = &s.total;
-    let mut sums = [[zero; 2]; 3];
-    for (sum, p) in sums.iter_mut().zip(&s.position) {
-        if K == 0 {
-            *sum = [zero, g[0] * p[1]];
-            continue;
-        }
-        let [mut even, mut odd] = [g[1] * p[K - 1], g[1] * p[K]];
-        for j in 2..K {
-            even = g[j].mul_add(p[K - j], even);
-            odd = g[j].mul_add(p[K + 1 - j], odd);
-        }
-        *sum = [g[0].mul_add(p[K], even), g[0].mul_add(p[K + 1], odd)];
+fn settled_products<R: Real, const K: usize>(g: &[R; TERMS], p: &[Quad<R>; TERMS]) -> [Quad<R>; 2] {
+    if K == 0 {
+        return [Quad::splat(R::from_f64(0.0)), Quad::splat(g[0]) * p[1]];
     }
-    sums
+    let mut even = Quad::splat(g[1]) * p[K - 1];
+    let mut odd = Quad::splat(g[1]) * p[K];
+    for j in 2..K {
+        even = Quad::splat(g[j]).mul_add(p[K - j], even);
+        odd = Quad::splat(g[j]).mul_add(p[K + 1 - j], odd);
+    }
+    [Quad::splat(g[0]).mul_add(p[K], even), Quad::splat(g[0]).mul_add(p[K + 1], odd)]
 }
 
-/// Orders `K` and `K` + 1 of a force from its lower orders and the half squares h: with w ∝ h^(−3/2),
+/// Orders `K` and `K` + 1 of the forces from their lower orders and the half squares h: with w ∝ h^(−3/2),
 /// `w[k] = −1/h[0] Σ (1 + j/2k) h[j] w[k−j]`, j = 1 … k.
 #[inline(always)]
 fn inverse_cubes<R: Real, const K: usize>(
-    h: &[R; TERMS],
-    w: &[R; TERMS],
-    steepened: R,
-    inverse: R,
-) -> [R; 2] {
-    let zero = R::from_f64(0.0);
-    let weight = |k: usize, j: usize| R::from_f64(WEIGHTS[k][j]);
+    h: &[[R; 2]; TERMS],
+    w: &[[R; 2]; TERMS],
+    leading: &Leading<R>,
+) -> [[R; 2]; 2] {
+    let steepened = Quad::twice(leading.steepened);
+    let newest = Quad::join(h[K], h[K + 1]);
     if K == 0 {
-        return [zero, steepened * h[1] * inverse];
+        let odd = (steepened * newest).0;
+        return [w[0], [odd[2] * leading.inverse[0], odd[3] * leading.inverse[1]]];
     }
-    let mut even = weight(K, 1) * h[1] * w[K - 1];
-    let mut odd = weight(K + 1, 2) * h[2] * w[K - 1];
+    let term = |j: usize| Quad(WEIGHTS[K][j].0.map(R::from_f64)) * Quad::join(h[j], h[j + 1]);
+    let mut sum = term(1) * Quad::twice(w[K - 1]);
     for j in 2..K {
-        even = (weight(K, j) * h[j]).mul_add(w[K - j], even);
-        odd = (weight(K + 1, j + 1) * h[j + 1]).mul_add(w[K - j], odd);
+        sum = term(j).mul_add(Quad::twice(w[K - j]), sum);
     }
-    even = steepened.mul_add(h[K], even) * inverse;
-    odd = steepened.mul_add(h[K + 1], odd);
-    odd = (weight(K + 1, 1) * h[1]).mul_add(even, odd) * inverse;
+    let Quad([near, far, next_near, next_far]) = steepened.mul_add(newest, sum);
+    let even = [near * leading.inverse[0], far * leading.inverse[1]];
+    let first = R::from_f64(weight(K + 1, 1));
+    let odd = std::array::from_fn(|i| {
+        (first * h[1][i]).mul_add(even[i], [next_near, next_far][i]) * leading.inverse[i]
+    });
     [even, odd]
 }

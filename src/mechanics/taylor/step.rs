@@ -1,7 +1,7 @@
 //! How far a series may be carried (Jorba & Zou 2005, §3.2, with a fixed order).
 
 use super::{ORDER, Series};
-use crate::arithmetic::Real;
+use crate::arithmetic::{Quad, Real};
 
 /// Longest step in inverse mean motions. The rotation of the axes alone has an entire series, which at this
 /// order is good to the round-off up to here, so that its sine and cosine may share the step.
@@ -20,9 +20,12 @@ const SMALLEST_COEFFICIENT: f64 = 1e-300;
 /// log₂ of the radius of convergence, from the size of two coefficients of the velocity relative to its own.
 #[inline(always)]
 pub(super) fn log2_radius<R: Real>(s: &Series<R>) -> R {
-    let size = |k: usize| s.position.iter().map(|p| p[k].abs()).fold(R::from_f64(0.0), R::max);
+    let size = |k: usize| {
+        let Quad([x, y, z, _]) = s.position[k];
+        x.abs().max(y.abs()).max(z.abs())
+    };
     // A body at rest in the rotating axes still moves with them, at this distance times the mean motion.
-    let distance = (s.half_square_near[0] + s.half_square_near[0]).sqrt();
+    let distance = (s.half_square[0][0] + s.half_square[0][0]).sqrt();
     let log2_scale = size(1).max(distance).log2_coarse();
     let estimate = |k: usize| {
         #[expect(clippy::cast_precision_loss, reason = "orders are small")]

@@ -10,23 +10,33 @@
 //! ```
 
 use super::{ORDER, Series, TERMS};
-use crate::arithmetic::Real;
+use crate::arithmetic::{Quad, Real};
 
-/// Columns of the matrix.
-const COLUMNS: usize = 6;
+/// Six columns of the matrix and two lanes of nothing.
+type Row<R> = [Quad<R>; 2];
+
+/// The columns of a matrix row.
+#[must_use]
+#[inline(always)]
+fn row<R: Real>([a, b, c, d, e, f]: [R; 6]) -> Row<R> {
+    let zero = R::from_f64(0.0);
+    [Quad([a, b, c, d]), Quad([e, f, zero, zero])]
+}
 
 /// Taylor series of the six columns and of the gradient they share.
 #[derive(Clone, Debug)]
 #[repr(C, align(64))]
 pub struct Columns<R> {
     /// Coefficient k of x, y and z of the six columns.
-    pub position: [[[R; COLUMNS]; 3]; TERMS],
-    /// 3 × share/r⁵ of the nearer and the farther primary.
-    steep: [[R; TERMS]; 2],
-    /// (q + p) d + side · p and (q + p) y, (q + p) z.
-    lever: [[R; TERMS]; 3],
+    pub position: [[Row<R>; 3]; TERMS],
+    /// q and p.
+    steep: [[R; 2]; TERMS],
+    /// (q + p) d + side · p in x, (q + p) y, (q + p) z.
+    lever: [Quad<R>; TERMS],
+    /// y, z, z and d of the trajectory.
+    shuffled: [Quad<R>; TERMS],
     /// xx, xy, xz, yy, yz, zz of the gradient.
-    gradient: [[R; TERMS]; 6],
+    gradient: [[R; 6]; TERMS],
 }
 
 impl<R: Real> Columns<R> {
@@ -34,11 +44,13 @@ impl<R: Real> Columns<R> {
     #[must_use]
     pub fn new() -> Self {
         let zero = R::from_f64(0.0);
+        let none = Quad::splat(zero);
         Self {
-            position: [[[zero; COLUMNS]; 3]; TERMS],
-            steep: [[zero; TERMS]; 2],
-            lever: [[zero; TERMS]; 3],
-            gradient: [[zero; TERMS]; 6],
+            position: [[[none; 2]; 3]; TERMS],
+            steep: [[zero; 2]; TERMS],
+            lever: [none; TERMS],
+            shuffled: [none; TERMS],
+            gradient: [[zero; 6]; TERMS],
         }
     }
 }
@@ -51,85 +63,107 @@ impl<R: Real> Default for Columns<R> {
 
 /// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
 #[inline(always)]
-pub(super) fn expand<R: Real>(series: &Series<R>, matrix: &[[R; COLUMNS]; 6], columns: &mut Columns<R>) {
+pub(super) fn expand<R: Real>(series: &Series<R>, matrix: &[[R; 6]; 6], columns: &mut Columns<R>) {
     gradient(series, columns);
-    let (places, rates) = matrix.split_at(3);
-    columns.position[0].copy_from_slice(places);
-    columns.position[1].copy_from_slice(rates);
+    let [x, y, z, vx, vy, vz] = matrix.map(row);
+    columns.position[0] = [x, y, z];
+    columns.position[1] = [vx, vy, vz];
     for k in 0..ORDER {
         order(columns, k);
     }
 }
 
-/// Coefficient k of the product of two series.
-#[inline(always)]
-fn product<R: Real>(a: &[R; TERMS], b: &[R; TERMS], k: usize) -> R {
-    let mut sum = a[0] * b[k];
-    for j in 1..=k {
-        sum = a[j].mul_add(b[k - j], sum);
-    }
-    sum
-}
-
+/// The gradient: the convolutions four at a time.
 #[inline(always)]
 fn gradient<R: Real>(s: &Series<R>, c: &mut Columns<R>) {
-    let three_halves = R::from_f64(1.5);
+    let zero = R::from_f64(0.0);
     let one = R::from_f64(1.0);
-    let [d, y, z] = &s.position;
-    let inverse = [one / s.half_square_near[0], one / s.half_square_far[0]];
+    let three_halves = R::from_f64(1.5);
+    let inverse = s.half_square[0].map(|half_square| one / half_square);
+    for k in 0..ORDER {
+        let Quad([d, y, z, _]) = s.position[k];
+        c.shuffled[k] = Quad([y, z, z, d]);
+    }
     for k in 0..ORDER {
         // 2h · q = 3 n, so h_0 q_k = 3/2 n_k − Σ h_j q_{k−j}.
-        for (which, (force, half_square)) in
-            [(&s.near, &s.half_square_near), (&s.far, &s.half_square_far)].into_iter().enumerate()
-        {
-            let mut rest = three_halves * force[k];
-            for j in 1..=k {
-                rest = (-half_square[j]).mul_add(c.steep[which][k - j], rest);
+        let mut rest = s.force[k].map(|force| three_halves * force);
+        for j in 1..=k {
+            for which in 0..2 {
+                rest[which] = (-s.half_square[j][which]).mul_add(c.steep[k - j][which], rest[which]);
             }
-            c.steep[which][k] = rest * inverse[which];
         }
-        let far = &c.steep[1];
-        let mut both = [R::from_f64(0.0); TERMS];
+        c.steep[k] = [rest[0] * inverse[0], rest[1] * inverse[1]];
+
+        let mut lever = Quad([s.side * c.steep[k][1], zero, zero, zero]);
         for j in 0..=k {
-            both[j] = c.steep[0][j] + far[j];
+            lever = Quad::splat(c.steep[j][0] + c.steep[j][1]).mul_add(s.position[k - j], lever);
         }
-        c.lever[0][k] = s.side.mul_add(far[k], product(&both, d, k));
-        c.lever[1][k] = product(&both, y, k);
-        c.lever[2][k] = product(&both, z, k);
+        c.lever[k] = lever;
+
+        let mut along_x = Quad::splat(zero);
+        let mut others = Quad::splat(zero);
+        for j in 0..=k {
+            let Quad([lever_x, lever_y, lever_z, _]) = c.lever[j];
+            along_x = Quad::splat(lever_x).mul_add(s.position[k - j], along_x);
+            others = Quad([lever_y, lever_y, lever_z, c.steep[j][1]]).mul_add(c.shuffled[k - j], others);
+        }
+        let (Quad([xx, xy, xz, _]), Quad([yy, yz, zz, far_d])) = (along_x, others);
         let diagonal = if k == 0 { one - s.total[0] } else { -s.total[k] };
-        let offset = s.side.mul_add(product(far, d, k), far[k]);
-        c.gradient[0][k] = (product(&c.lever[0], d, k) + offset) + diagonal;
-        c.gradient[1][k] = product(&c.lever[0], y, k);
-        c.gradient[2][k] = product(&c.lever[0], z, k);
-        c.gradient[3][k] = product(&c.lever[1], y, k) + diagonal;
-        c.gradient[4][k] = product(&c.lever[1], z, k);
-        c.gradient[5][k] = product(&c.lever[2], z, k) - s.total[k];
+        let offset = s.side.mul_add(far_d, c.steep[k][1]);
+        c.gradient[k] = [(xx + offset) + diagonal, xy, xz, yy + diagonal, yz, zz - s.total[k]];
     }
 }
 
 /// From the columns' coefficients up to k + 1, those of order k + 2.
 #[inline(always)]
 fn order<R: Real>(c: &mut Columns<R>, k: usize) {
-    let zero = R::from_f64(0.0);
-    let [xx, xy, xz, yy, yz, zz] = &c.gradient;
-    let mut sums = [[zero; COLUMNS]; 3];
+    let mut sums = [[Quad::splat(R::from_f64(0.0)); 2]; 3];
     for j in 0..=k {
+        let [xx, xy, xz, yy, yz, zz] = c.gradient[j].map(Quad::splat);
         let [x, y, z] = &c.position[k - j];
-        for column in 0..COLUMNS {
-            let (x, y, z) = (x[column], y[column], z[column]);
-            sums[0][column] = xz[j].mul_add(z, xy[j].mul_add(y, xx[j].mul_add(x, sums[0][column])));
-            sums[1][column] = yz[j].mul_add(z, yy[j].mul_add(y, xy[j].mul_add(x, sums[1][column])));
-            sums[2][column] = zz[j].mul_add(z, yz[j].mul_add(y, xz[j].mul_add(x, sums[2][column])));
+        for half in 0..2 {
+            let (x, y, z) = (x[half], y[half], z[half]);
+            sums[0][half] = xz.mul_add(z, xy.mul_add(y, xx.mul_add(x, sums[0][half])));
+            sums[1][half] = yz.mul_add(z, yy.mul_add(y, xy.mul_add(x, sums[1][half])));
+            sums[2][half] = zz.mul_add(z, yz.mul_add(y, xz.mul_add(x, sums[2][half])));
         }
     }
     #[expect(clippy::cast_precision_loss, reason = "orders are small")]
-    let (integrated, turned) =
-        (R::from_f64(1.0 / ((k + 1) * (k + 2)) as f64), R::from_f64(2.0 / (k + 2) as f64));
+    let (integrated, turned) = (
+        Quad::splat(R::from_f64(1.0 / ((k + 1) * (k + 2)) as f64)),
+        Quad::splat(R::from_f64(2.0 / (k + 2) as f64)),
+    );
     let (before, after) = c.position.split_at_mut(k + 2);
     let (rates, next) = (&before[k + 1], &mut after[0]);
-    for column in 0..COLUMNS {
-        next[0][column] = sums[0][column].mul_add(integrated, turned * rates[1][column]);
-        next[1][column] = sums[1][column].mul_add(integrated, -(turned * rates[0][column]));
-        next[2][column] = sums[2][column] * integrated;
+    for half in 0..2 {
+        next[0][half] = sums[0][half].mul_add(integrated, turned * rates[1][half]);
+        next[1][half] = sums[1][half].mul_add(integrated, -(turned * rates[0][half]));
+        next[2][half] = sums[2][half] * integrated;
     }
+}
+
+/// What the columns change by within `time`: Horner's rule as for the trajectory.
+#[inline(always)]
+pub(super) fn change<R: Real>(c: &Columns<R>, time: R, rates: &[f64; TERMS]) -> [[R; 6]; 6] {
+    let time = Quad::splat(time);
+    let mut change = [[R::from_f64(0.0); 6]; 6];
+    for axis in 0..3 {
+        let mut ends = [[Quad::splat(R::from_f64(0.0)); 2]; 2];
+        for half in 0..2 {
+            let coefficient = |k: usize| c.position[k][axis][half];
+            let rated = |k: usize| coefficient(k) * Quad::splat(R::from_f64(rates[k - 1]));
+            let mut place = coefficient(TERMS - 1);
+            let mut rate = rated(TERMS - 1);
+            for k in (2..TERMS - 1).rev() {
+                place = place.mul_add(time, coefficient(k));
+                rate = rate.mul_add(time, rated(k));
+            }
+            ends[half] = [place.mul_add(time, coefficient(1)) * time, rate * time];
+        }
+        for which in 0..2 {
+            let ([a, b, c, d], [e, f, ..]) = (ends[0][which].0, ends[1][which].0);
+            change[axis + 3 * which] = [a, b, c, d, e, f];
+        }
+    }
+    change
 }

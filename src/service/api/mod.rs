@@ -9,6 +9,7 @@ mod limits;
 mod openapi;
 mod problems;
 mod systems;
+mod trajectories;
 mod units_convert;
 mod version;
 
@@ -35,6 +36,7 @@ fn operations() -> OpenApiRouter<App> {
         .routes(routes!(jacobi::jacobi))
         .routes(routes!(units_convert::units_convert))
         .routes(routes!(frames_convert::frames_convert))
+        .routes(routes!(trajectories::trajectories))
         .routes(routes!(limits::limits))
         .routes(routes!(version::version))
         .routes(routes!(health::livez))

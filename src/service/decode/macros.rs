@@ -2,7 +2,8 @@
 
 /// A JSON object of a request: the struct, all of its members [`Field`](super::Field)s; its decoder; and its
 /// closed schema, with each member's documentation. Members are `required` or `optional`. An object that is a
-/// whole request names the file with its example.
+/// whole request names the file with its example. Members of the contract that this server refuses are listed as
+/// `not_offered`.
 ///
 /// ```ignore
 /// request! {
@@ -18,7 +19,7 @@
 /// ```
 macro_rules! request {
     (
-        $(#[doc = $doc:literal])* $(#[example($example:literal)])?
+        $(#[doc = $doc:literal])* $(#[example($example:literal)])? $(#[not_offered($($refused:literal),*)])?
         $vis:vis struct $name:ident {
             $($(#[doc = $member_doc:literal])* $need:ident $member:ident: $type:ty),* $(,)?
         }
@@ -26,7 +27,7 @@ macro_rules! request {
         $(#[doc = $doc])*
         #[derive(Clone, Debug, PartialEq)]
         $vis struct $name {
-            $($(#[doc = $member_doc])* pub $member: $crate::decode::Field<$type>,)*
+            $($(#[doc = $member_doc])* $vis $member: $crate::decode::Field<$type>,)*
         }
 
         impl $crate::decode::Named for $name {
@@ -43,6 +44,7 @@ macro_rules! request {
                 #[expect(clippy::allow_attributes, reason = "an object may have no members")]
                 #[allow(unused_mut, reason = "an object may have no members")]
                 let mut members = $crate::decode::Members::open(node, at, KNOWN, errors)?;
+                $(members.not_offered(&[$($refused),*]);)?
                 let decoded = Self {
                     $($member: members.$need($crate::decode::plain(stringify!($member)), errors),)*
                 };

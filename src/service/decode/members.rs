@@ -72,6 +72,7 @@ pub struct Members<'n> {
     object: &'n [(std::borrow::Cow<'n, str>, Node<'n>)],
     at: Path<'n>,
     known: &'static [&'static str],
+    not_offered: &'static [&'static str],
 }
 
 impl<'n> Members<'n> {
@@ -83,7 +84,7 @@ impl<'n> Members<'n> {
         errors: &mut Errors,
     ) -> Option<Self> {
         if let Node::Object(members) = node {
-            Some(Self { object: members, at, known })
+            Some(Self { object: members, at, known, not_offered: &[] })
         } else {
             errors.push(at, format!("must be an object, got {}", node.kind()));
             None
@@ -98,6 +99,11 @@ impl<'n> Members<'n> {
 
     fn find(&self, name: &str) -> Option<&'n Node<'n>> {
         self.object.iter().find(|(known, _)| known == name).map(|(_, node)| node)
+    }
+
+    /// Names members that are understood but refused.
+    pub fn not_offered(&mut self, names: &'static [&'static str]) {
+        self.not_offered = names;
     }
 
     /// A member that must be there.
@@ -122,9 +128,14 @@ impl<'n> Members<'n> {
     /// Reports every member that is not known.
     pub fn finish(self, errors: &mut Errors) {
         for (name, _) in self.object {
-            if !self.known.contains(&&**name) {
-                let detail = format!("unknown {}; {}", errors.noun(), did_you_mean(name, self.known));
-                errors.push(self.at.member(name), detail);
+            if self.known.contains(&&**name) {
+                continue;
+            }
+            let at = self.at.member(name);
+            if self.not_offered.contains(&&**name) {
+                errors.push(at, "is not offered by this server");
+            } else {
+                errors.push(at, format!("unknown member; {}", did_you_mean(name, self.known)));
             }
         }
     }

@@ -81,6 +81,6 @@ fn jacobi_constant_of_regular_orbits_over_a_thousand_revolutions() {
         let drift = |revolutions: f64| run(parts(MU, start, revolutions * period)).evidence.jacobi_drift;
         let (hundred, thousand) = (drift(100.0), drift(1000.0));
         assert!(thousand < 1e-13, "{thousand}");
-        assert!(thousand < 6.0 * hundred.max(5e-15), "{hundred} then {thousand}");
+        assert!(thousand < 8.0 * hundred.max(5e-15), "{hundred} then {thousand}");
     }
 }

@@ -1,0 +1,28 @@
+//! `POST /v1/trajectories`.
+
+mod events;
+mod request;
+mod response;
+mod solve;
+
+use axum::extract::State;
+
+use crate::answer::Answer;
+use crate::extract::Submission;
+use crate::operation;
+use crate::problem::Problem;
+use crate::state::App;
+
+use request::TrajectoriesRequest;
+use response::TrajectoriesAnswer;
+
+/// Trajectories of one or many states
+///
+/// Propagates each state by its Taylor series, with samples from the dense polynomial, events, manoeuvres, contact
+/// with the primaries' surfaces and state transition matrices. A trajectory that ends early says why in its
+/// `outcome`, and a client can go on from its `final` state.
+#[utoipa::path(post, path = "/v1/trajectories", tag = "motion", request_body = TrajectoriesRequest, responses(
+    (status = 200, body = TrajectoriesAnswer, description = "The trajectories, in the order of their initial states")))]
+pub(crate) async fn trajectories(State(app): State<App>, submission: Submission) -> Result<Answer, Problem> {
+    operation::answer::<TrajectoriesRequest>(app, submission).await
+}

@@ -1,0 +1,459 @@
+//! What is asked: trajectories of one or many states.
+
+use std::time::Duration as WallTime;
+
+use mechanics::propagation::{
+    BurnAxes, Contact, Durations, Invalid, Limits as Granted, Manoeuvre, MatrixOutput, Request, RequestParts,
+    Sampling,
+};
+use mechanics::quantity::{Distance, Duration, Epoch, Quantity, Speed, Tolerance};
+use mechanics::state::State;
+use mechanics::system::Primary;
+use nalgebra::Vector3;
+use utoipa::ToSchema;
+use utoipa::openapi::schema::{ArrayBuilder, ObjectBuilder, OneOfBuilder, Type};
+use utoipa::openapi::{RefOr, Schema};
+
+use super::events::{EventSpec, MOST_EVENTS};
+use super::solve::Task;
+use crate::config::Limits;
+use crate::decode::{
+    Decode, Errors, Field, Integer, Named, Node, Path, Scalar, Schemas, by_name, choice, choices,
+    one_of_names, request, with_description,
+};
+use crate::wire::{Conventions, FrameSpec, LimitsSpec, StatesSpec, SystemSpec, UnitsSpec, scaled};
+
+/// Default of `tolerance`.
+const TOLERANCE: f64 = 1e-15;
+/// The most manoeuvres of a request: each is looked at for every trajectory.
+const MOST_MANOEUVRES: usize = 1000;
+/// Counts beyond this are beyond every limit.
+const MANY: u64 = 1 << 53;
+
+choices! {
+    /// The state transition matrices to return: none, that of the final state, or those of the samples as well.
+    pub(super) enum MatrixSpec = MatrixOutput { None = "none", Final = "final", Samples = "samples" }
+}
+
+choices! {
+    /// Whether a trajectory ends at a primary's surface.
+    pub(super) enum ContactSpec { Stop = "stop", Ignore = "ignore" }
+}
+
+choices! {
+    /// The axes of a change of velocity: the request's frame, or v, r x v and v x (r x v) of the state before.
+    pub(super) enum BurnAxesSpec = BurnAxes {
+        Frame = "frame", VelocityNormalBinormal = "velocity_normal_binormal"
+    }
+}
+
+request! {
+    /// An impulsive change of velocity.
+    pub(super) struct ManoeuvreSpec {
+        /// Instant on the absolute clock, within each trajectory it is for.
+        required time: f64,
+        /// Change of velocity [x, y, z] along the axes, a velocity.
+        required delta_v: [f64; 3],
+        /// Its axes; `frame` if absent. `velocity_normal_binormal` needs a positive duration.
+        optional axes: BurnAxesSpec,
+        /// Indices of the initial states whose trajectories it is for; all if absent.
+        optional r#for: Vec<Integer<0, MANY>>,
+    }
+}
+
+request! {
+    /// Trajectories of one or many states.
+    #[example("example.json")]
+    #[not_offered("arithmetic", "audit")]
+    pub(super) struct TrajectoriesRequest {
+        /// The primaries.
+        required system: SystemSpec,
+        /// Units of the request and of its answer; normalised if absent.
+        optional units: UnitsSpec,
+        /// Frame of states, events, manoeuvres and matrices; barycentric rotating axes if absent.
+        optional frame: FrameSpec,
+        /// The states to start from.
+        required initial_states: StatesSpec,
+        /// How long the trajectories run, a time; negative runs backwards. A list gives one for each state.
+        required duration: DurationSpec,
+        /// Relative local error per step; 1e-15 if absent.
+        optional tolerance: Scalar<Tolerance>,
+        /// Where the trajectories are sampled; `none` if absent.
+        optional samples: SamplesSpec,
+        /// The state transition matrices to return; `none` if absent.
+        optional state_transition_matrix: MatrixSpec,
+        /// What to watch for.
+        optional events: Vec<EventSpec>,
+        /// Changes of velocity.
+        optional manoeuvres: Vec<ManoeuvreSpec>,
+        /// Whether the surfaces of primaries with a known radius end a trajectory; `stop` if absent.
+        optional contact: ContactSpec,
+        /// How much the computation may take.
+        optional limits: LimitsSpec,
+    }
+}
+
+/// One duration for all, or one for each.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) enum DurationSpec {
+    All(f64),
+    Each(Vec<f64>),
+}
+
+impl Named for DurationSpec {
+    const NAME: &'static str = "DurationSpec";
+}
+
+impl Decode for DurationSpec {
+    fn decode(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
+        match node {
+            Node::Numbers(_) | Node::Array(_) => Decode::decode(node, at, errors).map(Self::Each),
+            Node::Number(all) => Some(Self::All(*all)),
+            _ => {
+                errors.push(at, format!("must be a finite number or an array of them, got {}", node.kind()));
+                None
+            }
+        }
+    }
+
+    fn describe(named: &mut Schemas) -> RefOr<Schema> {
+        by_name::<Self>(named)
+    }
+}
+
+impl utoipa::PartialSchema for DurationSpec {
+    fn schema() -> RefOr<Schema> {
+        let number = f64::describe(&mut Vec::new());
+        let either = OneOfBuilder::new().item(number.clone()).item(ArrayBuilder::new().items(number));
+        with_description(RefOr::T(either.build().into()), "One duration for all states, or one for each.")
+    }
+}
+
+impl ToSchema for DurationSpec {
+    fn name() -> std::borrow::Cow<'static, str> {
+        Self::NAME.into()
+    }
+}
+
+/// Where trajectories are sampled, in the request's units.
+#[derive(Clone, Debug, PartialEq)]
+pub(super) enum SamplesSpec {
+    None,
+    EveryStep,
+    Count(u64),
+    Interval(f64),
+    Times(Vec<f64>),
+}
+
+const NONE: &str = "none";
+const EVERY_STEP: &str = "every_step";
+const COUNT: &str = "count";
+const INTERVAL: &str = "interval";
+const TIMES: &str = "times";
+
+impl Named for SamplesSpec {
+    const NAME: &'static str = "SamplesSpec";
+}
+
+impl Decode for SamplesSpec {
+    fn decode(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
+        let (name, value) = choice(node, at, &[NONE, EVERY_STEP], &[COUNT, INTERVAL, TIMES], errors)?;
+        let under = at.member(name);
+        match (name, value) {
+            (EVERY_STEP, _) => Some(Self::EveryStep),
+            (COUNT, Some(value)) => {
+                Integer::<2, MANY>::decode(value, under, errors).map(|Integer(count)| Self::Count(count))
+            }
+            (INTERVAL, Some(value)) => f64::decode(value, under, errors).map(Self::Interval),
+            (TIMES, Some(value)) => Vec::decode(value, under, errors).map(Self::Times),
+            _ => Some(Self::None),
+        }
+    }
+
+    fn describe(named: &mut Schemas) -> RefOr<Schema> {
+        by_name::<Self>(named)
+    }
+}
+
+impl utoipa::PartialSchema for SamplesSpec {
+    fn schema() -> RefOr<Schema> {
+        let number = || ObjectBuilder::new().schema_type(Type::Number);
+        let count = with_description(
+            Integer::<2, MANY>::describe(&mut Vec::new()),
+            "So many, evenly spaced, both planned ends included.",
+        );
+        let interval =
+            number().exclusive_minimum(Some(0.0)).description(Some("From the start, so often; a time."));
+        let times = ArrayBuilder::new().items(number()).description(Some(
+            "At these instants, strictly along the integration and within each trajectory.",
+        ));
+        let names = "Nowhere, or at the initial state and at the end of each step.";
+        let one = OneOfBuilder::new()
+            .item(one_of_names(&[NONE, EVERY_STEP], names))
+            .item(keyed(COUNT, count))
+            .item(keyed(INTERVAL, RefOr::T(interval.build().into())))
+            .item(keyed(TIMES, RefOr::T(times.build().into())));
+        with_description(RefOr::T(one.build().into()), "Where trajectories are sampled.")
+    }
+}
+
+impl ToSchema for SamplesSpec {
+    fn name() -> std::borrow::Cow<'static, str> {
+        Self::NAME.into()
+    }
+}
+
+/// The schema of an object with exactly this one member.
+pub(super) fn keyed(name: &str, schema: RefOr<Schema>) -> RefOr<Schema> {
+    use utoipa::openapi::schema::AdditionalProperties;
+    let object = ObjectBuilder::new()
+        .schema_type(Type::Object)
+        .property(name, schema)
+        .required(name)
+        .additional_properties(Some(AdditionalProperties::FreeForm(false)));
+    RefOr::T(object.build().into())
+}
+
+impl TrajectoriesRequest {
+    /// Checks the members against each other and against the server's limits.
+    pub(super) fn checked(self, limits: &Limits, errors: &mut Errors) -> Option<Task> {
+        let granted = LimitsSpec::check(self.limits, limits, errors);
+        let conventions = Conventions::check(self.system, self.units, self.frame, errors);
+        let tolerance = self.tolerance.or_else(|| Scalar(Tolerance::constant(TOLERANCE)));
+        count_states(&self.initial_states, limits, errors);
+        at_most("events", &self.events, MOST_EVENTS, errors);
+        at_most("manoeuvres", &self.manoeuvres, MOST_MANOEUVRES, errors);
+        // Without system, units and frame no number can be given a meaning.
+        let conventions = conventions?;
+        let (states, given_times) = states(self.initial_states, &conventions, errors).unzip();
+        let durations = durations(self.duration.as_ref(), &conventions, errors);
+        let sampling = sampling(self.samples.as_ref(), &conventions, errors);
+        let events = events(self.events, &conventions, errors);
+        let manoeuvres = manoeuvres(self.manoeuvres, &conventions, errors);
+        let contact = contact(self.contact, &conventions, errors);
+        let matrix = self.state_transition_matrix.or(MatrixSpec::None);
+        // Whatever is faulty is left out of the checks across members, so that these find the rest.
+        let (events, names) = events.unwrap_or_default().into_iter().unzip();
+        let parts = RequestParts {
+            mass_parameter: conventions.system.mass_parameter(),
+            frame: conventions.frame,
+            states: states?,
+            durations: durations?,
+            tolerance: tolerance.map_or(Tolerance::constant(TOLERANCE), |Scalar(tolerance)| tolerance),
+            sampling: sampling.unwrap_or_default(),
+            matrix: matrix.map_or(MatrixOutput::None, Into::into),
+            events,
+            manoeuvres: manoeuvres.unwrap_or_default(),
+            contact: contact.unwrap_or_default(),
+            limits: Granted {
+                steps: granted.map_or(limits.steps, |granted| granted.steps),
+                events: usize::try_from(limits.events).unwrap_or(usize::MAX),
+                sample_values: limits.sample_values,
+            },
+        };
+        match Request::new(parts) {
+            Ok(request) => Some(Task {
+                request,
+                conventions,
+                names,
+                given_times: given_times?,
+                given_duration: self.duration.given()?,
+                given_samples: self.samples.given(),
+                wall_time: granted?.wall_time,
+            }),
+            Err(faults) => {
+                for fault in faults {
+                    report(&fault, errors);
+                }
+                None
+            }
+        }
+    }
+}
+
+impl Task {
+    /// The time that the request is granted.
+    pub(super) fn wall_time(&self) -> WallTime {
+        self.wall_time
+    }
+}
+
+fn count_states(states: &Field<StatesSpec>, limits: &Limits, errors: &mut Errors) {
+    if let Field::Given(states) = states {
+        let count = states.states.len() as u64;
+        if count > limits.states {
+            errors.beyond(Path::ROOT.member("initial_states"), "states", limits.states, count);
+        }
+    }
+}
+
+fn at_most<T>(name: &str, list: &Field<Vec<T>>, most: usize, errors: &mut Errors) {
+    if let Field::Given(list) = list
+        && list.len() > most
+    {
+        errors.beyond(Path::ROOT.member(name), name, most as u64, list.len() as u64);
+    }
+}
+
+/// The states in the default frame, and the times as they were given.
+fn states(
+    field: Field<StatesSpec>,
+    conventions: &Conventions,
+    errors: &mut Errors,
+) -> Option<(Vec<State>, Vec<f64>)> {
+    let at = Path::ROOT.member("initial_states");
+    let checked = field.given()?.check(at, |given, places| {
+        let time = given.time;
+        Some((conventions.state_in(given, places, errors)?, time))
+    });
+    checked.map(|all| all.into_iter().unzip())
+}
+
+fn durations(
+    field: Field<&DurationSpec>,
+    conventions: &Conventions,
+    errors: &mut Errors,
+) -> Option<Durations> {
+    let at = Path::ROOT.member("duration");
+    let scale = conventions.scale.time;
+    match field.given()? {
+        DurationSpec::All(all) => scaled::<Duration>(*all, scale, at, errors).map(Durations::All),
+        DurationSpec::Each(each) => {
+            let checked: Vec<_> = each
+                .iter()
+                .enumerate()
+                .filter_map(|(index, duration)| scaled::<Duration>(*duration, scale, at.item(index), errors))
+                .collect();
+            (checked.len() == each.len()).then_some(Durations::Each(checked))
+        }
+    }
+}
+
+fn sampling(field: Field<&SamplesSpec>, conventions: &Conventions, errors: &mut Errors) -> Option<Sampling> {
+    let at = Path::ROOT.member("samples");
+    let scale = conventions.scale.time;
+    match field {
+        Field::Absent | Field::Given(SamplesSpec::None) => Some(Sampling::None),
+        Field::Faulty => None,
+        Field::Given(SamplesSpec::EveryStep) => Some(Sampling::EveryStep),
+        Field::Given(SamplesSpec::Count(count)) => Some(Sampling::Count(*count)),
+        Field::Given(SamplesSpec::Interval(interval)) => Some(Sampling::Interval(interval / scale)),
+        Field::Given(SamplesSpec::Times(times)) => {
+            let under = at.member(TIMES);
+            let checked: Vec<f64> = times
+                .iter()
+                .enumerate()
+                .filter_map(|(index, time)| scaled::<Epoch>(*time, scale, under.item(index), errors))
+                .map(Quantity::get)
+                .collect();
+            (checked.len() == times.len()).then_some(Sampling::Times(checked))
+        }
+    }
+}
+
+fn events(
+    field: Field<Vec<EventSpec>>,
+    conventions: &Conventions,
+    errors: &mut Errors,
+) -> Option<Vec<(mechanics::propagation::event::Event, Option<String>)>> {
+    let at = Path::ROOT.member("events");
+    let given = field.or_else(Vec::new)?;
+    let count = given.len();
+    let checked: Vec<_> = given
+        .into_iter()
+        .enumerate()
+        .filter_map(|(index, event)| event.check(at.item(index), conventions, errors))
+        .collect();
+    (checked.len() == count).then_some(checked)
+}
+
+fn manoeuvres(
+    field: Field<Vec<ManoeuvreSpec>>,
+    conventions: &Conventions,
+    errors: &mut Errors,
+) -> Option<Vec<Manoeuvre>> {
+    let at = Path::ROOT.member("manoeuvres");
+    let given = field.or_else(Vec::new)?;
+    let count = given.len();
+    let checked: Vec<_> = given
+        .into_iter()
+        .enumerate()
+        .filter_map(|(index, spec)| manoeuvre(spec, at.item(index), conventions, errors))
+        .collect();
+    (checked.len() == count).then_some(checked)
+}
+
+fn manoeuvre(
+    spec: ManoeuvreSpec,
+    at: Path<'_>,
+    conventions: &Conventions,
+    errors: &mut Errors,
+) -> Option<Manoeuvre> {
+    let scale = &conventions.scale;
+    let time = spec
+        .time
+        .given()
+        .and_then(|time| scaled::<Epoch>(time, scale.time, at.member("time"), errors))
+        .map(Quantity::get);
+    let delta_v = spec.delta_v.given().and_then(|delta_v| {
+        let place = at.member("delta_v");
+        let [x, y, z] = std::array::from_fn(|i| {
+            scaled::<Speed>(delta_v[i], scale.velocity, place.item(i), errors).map(Quantity::get)
+        });
+        Some(Vector3::new(x?, y?, z?))
+    });
+    let axes = spec.axes.or(BurnAxesSpec::Frame)?.into();
+    let trajectories = spec.r#for.optional()?.map(|list| {
+        list.into_iter().map(|Integer(index)| usize::try_from(index).unwrap_or(usize::MAX)).collect()
+    });
+    Some(Manoeuvre { time: time?, delta_v: delta_v?, axes, trajectories })
+}
+
+/// The surfaces that end a trajectory.
+fn contact(field: Field<ContactSpec>, conventions: &Conventions, errors: &mut Errors) -> Option<Contact> {
+    let radius = |primary| conventions.system.radius(primary).and_then(|radius| Distance::new(radius).ok());
+    let known = Contact { larger: radius(Primary::Larger), smaller: radius(Primary::Smaller) };
+    let asked = !field.is_absent();
+    match field.or(ContactSpec::Stop)? {
+        ContactSpec::Ignore => Some(Contact::default()),
+        ContactSpec::Stop if asked && known == Contact::default() => {
+            errors.push(
+                Path::ROOT.member("contact"),
+                "needs the radius of a primary, and the system has none: give `radius_larger` or `radius_smaller`",
+            );
+            None
+        }
+        ContactSpec::Stop => Some(known),
+    }
+}
+
+/// The fault in the place of the member that should change.
+fn report(fault: &Invalid, errors: &mut Errors) {
+    let root = Path::ROOT;
+    let (samples, manoeuvres) = (root.member("samples"), root.member("manoeuvres"));
+    match fault {
+        Invalid::DurationCount { .. } => errors.push(root.member("duration"), fault.to_string()),
+        Invalid::OnPrimary { state, .. } => {
+            errors.push(root.member("initial_states").item(*state), fault.to_string());
+        }
+        Invalid::TooFewSamples(_) => errors.push(samples.member(COUNT), fault.to_string()),
+        Invalid::Interval(_) | Invalid::LongInterval { .. } => {
+            errors.push(samples.member(INTERVAL), fault.to_string());
+        }
+        Invalid::TimeOrder { index, .. } | Invalid::TimeOutside { index, .. } => {
+            errors.push(samples.member(TIMES).item(*index), fault.to_string());
+        }
+        Invalid::ManoeuvreOutside { index, .. } => {
+            errors.push(manoeuvres.item(*index).member("time"), fault.to_string());
+        }
+        Invalid::ManoeuvreFor { index, place, .. } => {
+            errors.push(manoeuvres.item(*index).member("for").item(*place), fault.to_string());
+        }
+        Invalid::ManoeuvreBackwards { index, .. } => {
+            errors.push(manoeuvres.item(*index).member("axes"), fault.to_string());
+        }
+        Invalid::SampleValues { asked, limit } => {
+            errors.beyond(samples, "sample values", *limit, u64::try_from(*asked).unwrap_or(u64::MAX));
+        }
+    }
+}

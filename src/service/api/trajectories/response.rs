@@ -1,0 +1,249 @@
+//! The answer: trajectories in the units and the frame of the request.
+
+use std::collections::BTreeMap;
+use std::sync::Arc;
+
+use mechanics::propagation::{Evidence, Outcome, Sampling, Trajectory};
+use mechanics::units::Scale;
+use nalgebra::{Matrix6, Vector3};
+use serde::{Serialize, Serializer};
+use utoipa::ToSchema;
+
+use super::request::{DurationSpec, SamplesSpec};
+use super::solve::Task;
+use crate::wire::{FrameEcho, StateEcho, SystemEcho, UnitsEcho};
+
+/// What was computed.
+#[derive(Debug)]
+pub(super) struct Solution {
+    pub task: Arc<Task>,
+    pub outcome: Outcome,
+    pub steps: u64,
+    pub trajectories: Vec<Trajectory>,
+}
+
+/// Trajectories, in the order of their initial states.
+#[derive(Serialize, ToSchema)]
+pub(super) struct TrajectoriesAnswer<'a> {
+    /// The system that was computed in.
+    system: SystemEcho<'a>,
+    /// The units of all numbers.
+    units: UnitsEcho,
+    /// The frame of all states and matrices.
+    frame: FrameEcho,
+    /// Relative local error per step.
+    tolerance: f64,
+    /// The primaries whose surfaces end a trajectory.
+    contact_bodies: Vec<&'static str>,
+    /// `complete`, or `wall_time_limit` where some trajectories were cut short by it.
+    outcome: &'static str,
+    /// How many trajectories ended in which way.
+    outcomes: BTreeMap<&'static str, u64>,
+    /// How good all of them are.
+    evidence: TotalEvidence,
+    /// The trajectories.
+    #[schema(value_type = Vec<TrajectoryAnswer>)]
+    trajectories: Each<'a>,
+}
+
+/// How good all trajectories are.
+#[derive(Serialize, ToSchema)]
+struct TotalEvidence {
+    /// Integration steps of all trajectories.
+    steps: u64,
+    /// Largest drift of the Jacobi constant within one leg, in the velocity unit squared.
+    jacobi_drift: f64,
+}
+
+/// A trajectory.
+#[derive(Serialize, ToSchema)]
+#[schema(as = Trajectory)]
+pub(super) struct TrajectoryAnswer<'a> {
+    /// Index of its initial state.
+    index: usize,
+    /// Why it ended: complete, `stopped_by_event`, `contact_larger`, `contact_smaller`, `step_limit`, `event_limit`,
+    /// `step_floor` (on the way into a primary's centre), `wall_time_limit` or `not_started`.
+    outcome: &'static str,
+    /// The state at its end, from which it can go on.
+    r#final: StateEcho,
+    /// Index of the event that stopped it; null if none did.
+    stopped_by: Option<usize>,
+    /// The samples; null if none were asked for.
+    samples: Option<SamplesAnswer>,
+    /// The events, in the order of the integration.
+    events: Vec<Occurrence<'a>>,
+    /// d(final)/d(initial), rows and columns (x, y, z, vx, vy, vz); null if not asked for.
+    state_transition_matrix: Option<[[f64; 6]; 6]>,
+    /// How good it is, measured along it.
+    evidence: EvidenceAnswer,
+}
+
+/// Samples as columns of equal length.
+#[derive(Serialize, ToSchema)]
+#[schema(as = Samples)]
+struct SamplesAnswer {
+    /// Instants on the absolute clock.
+    time: Vec<f64>,
+    /// Positions [x, y, z].
+    position: Vec<[f64; 3]>,
+    /// Velocities [vx, vy, vz].
+    velocity: Vec<[f64; 3]>,
+    /// d(state)/d(initial state) of each sample; absent if not asked for.
+    #[serde(skip_serializing_if = "Option::is_none")]
+    state_transition_matrix: Option<Vec<[[f64; 6]; 6]>>,
+}
+
+/// An event that happened.
+#[derive(Serialize, ToSchema)]
+#[schema(as = EventOccurrence)]
+struct Occurrence<'a> {
+    /// Index of the event in the request.
+    event: usize,
+    /// Its name; null if it has none.
+    name: Option<&'a str>,
+    /// Instant on the absolute clock.
+    time: f64,
+    /// Position [x, y, z].
+    position: [f64; 3],
+    /// Velocity [vx, vy, vz].
+    velocity: [f64; 3],
+}
+
+/// How good a trajectory is.
+#[derive(Serialize, ToSchema)]
+#[schema(as = TrajectoryEvidence)]
+struct EvidenceAnswer {
+    /// Integration steps.
+    steps: u64,
+    /// Largest drift of the Jacobi constant within one leg between manoeuvres, in the velocity unit squared.
+    jacobi_drift: f64,
+    /// |det - 1| of the normalised rotating canonical matrix, the largest of the legs; null without a matrix.
+    determinant_defect: Option<f64>,
+    /// Largest element of `|M^T J M - J|` of that matrix, the largest of the legs; null without a matrix.
+    symplectic_defect: Option<f64>,
+}
+
+/// The trajectories, put into the client's units one at a time as they are written.
+struct Each<'a>(&'a Solution);
+
+impl Serialize for Each<'_> {
+    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
+        serializer.collect_seq(self.0.trajectories.iter().map(|trajectory| self.0.task.answer(trajectory)))
+    }
+}
+
+impl Serialize for Solution {
+    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
+        let conventions = &self.task.conventions;
+        let parts = self.task.request.parts();
+        let mut outcomes = BTreeMap::new();
+        for trajectory in &self.trajectories {
+            *outcomes.entry(outcome_name(trajectory.outcome)).or_default() += 1;
+        }
+        let drift = self.trajectories.iter().map(|t| t.evidence.jacobi_drift).fold(0.0, f64::max);
+        let bodies = [("larger", parts.contact.larger), ("smaller", parts.contact.smaller)];
+        TrajectoriesAnswer {
+            system: (&conventions.system).into(),
+            units: UnitsEcho(conventions.units),
+            frame: conventions.frame.into(),
+            tolerance: mechanics::quantity::Quantity::get(parts.tolerance),
+            contact_bodies: bodies.into_iter().filter_map(|(name, radius)| radius.map(|_| name)).collect(),
+            outcome: outcome_name(self.outcome),
+            outcomes,
+            evidence: TotalEvidence { steps: self.steps, jacobi_drift: drift * conventions.scale.energy() },
+            trajectories: Each(self),
+        }
+        .serialize(serializer)
+    }
+}
+
+impl Task {
+    fn answer<'a>(&'a self, trajectory: &Trajectory) -> TrajectoryAnswer<'a> {
+        let scale = &self.conventions.scale;
+        let mut last = StateEcho::from(scale.state_out(&trajectory.last));
+        match trajectory.outcome {
+            // The planned end in the client's own digits, not as a sum of rounded conversions.
+            Outcome::Complete => {
+                last.time = self.given_times[trajectory.index] + self.duration(trajectory.index);
+            }
+            Outcome::NotStarted => last.time = self.given_times[trajectory.index],
+            _ => {}
+        }
+        TrajectoryAnswer {
+            index: trajectory.index,
+            outcome: outcome_name(trajectory.outcome),
+            r#final: last,
+            stopped_by: trajectory.stopped_by,
+            samples: self.samples(trajectory),
+            events: trajectory
+                .events
+                .iter()
+                .map(|occurrence| {
+                    let StateEcho { time, position, velocity } = scale.state_out(&occurrence.state).into();
+                    let name = self.names[occurrence.event].as_deref();
+                    Occurrence { event: occurrence.event, name, time, position, velocity }
+                })
+                .collect(),
+            state_transition_matrix: trajectory.matrix.as_ref().map(|matrix| rows(scale, matrix)),
+            evidence: evidence(scale, &trajectory.evidence),
+        }
+    }
+
+    fn duration(&self, index: usize) -> f64 {
+        match &self.given_duration {
+            DurationSpec::All(all) => *all,
+            DurationSpec::Each(each) => each[index],
+        }
+    }
+
+    fn samples(&self, trajectory: &Trajectory) -> Option<SamplesAnswer> {
+        if self.request.parts().sampling == Sampling::None {
+            return None;
+        }
+        let scale = &self.conventions.scale;
+        let samples = &trajectory.samples;
+        let scaled = |vectors: &[Vector3<f64>], factor: f64| {
+            vectors.iter().map(|vector| (vector * factor).into()).collect::<Vec<[f64; 3]>>()
+        };
+        let time = match &self.given_samples {
+            Some(SamplesSpec::Times(times)) => times[..samples.times.len()].to_vec(),
+            _ => samples.times.iter().map(|time| time * scale.time).collect(),
+        };
+        Some(SamplesAnswer {
+            time,
+            position: scaled(&samples.positions, scale.length),
+            velocity: scaled(&samples.velocities, scale.velocity),
+            state_transition_matrix: (!samples.matrices.is_empty())
+                .then(|| samples.matrices.iter().map(|matrix| rows(scale, matrix)).collect()),
+        })
+    }
+}
+
+fn rows(scale: &Scale, matrix: &Matrix6<f64>) -> [[f64; 6]; 6] {
+    let matrix = scale.matrix_out(matrix);
+    std::array::from_fn(|row| std::array::from_fn(|column| matrix[(row, column)]))
+}
+
+fn evidence(scale: &Scale, evidence: &Evidence) -> EvidenceAnswer {
+    EvidenceAnswer {
+        steps: evidence.steps,
+        jacobi_drift: evidence.jacobi_drift * scale.energy(),
+        determinant_defect: evidence.determinant_defect,
+        symplectic_defect: evidence.symplectic_defect,
+    }
+}
+
+/// The name of an outcome in the contract.
+pub(super) fn outcome_name(outcome: Outcome) -> &'static str {
+    match outcome {
+        Outcome::Complete => "complete",
+        Outcome::StoppedByEvent => "stopped_by_event",
+        Outcome::ContactLarger => "contact_larger",
+        Outcome::ContactSmaller => "contact_smaller",
+        Outcome::StepLimit => "step_limit",
+        Outcome::EventLimit => "event_limit",
+        Outcome::StepFloor => "step_floor",
+        Outcome::WallTimeLimit => "wall_time_limit",
+        Outcome::NotStarted => "not_started",
+    }
+}
