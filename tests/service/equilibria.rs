@@ -145,11 +145,12 @@ fn hills_limit_keeps_its_digits() {
 fn positions_are_in_the_frame_and_names_go_with_the_bodies() {
     let service = Local::start();
     let (mu, height) = (0.1, 0.75_f64.sqrt());
-    let l1 = |frame: Value| {
-        service.answer(POST, &json!({"system": {"mass_parameter": mu}, "frame": frame}))
-    };
+    let l1 = |frame: Value| service.answer(POST, &json!({"system": {"mass_parameter": mu}, "frame": frame}));
     let default = l1(json!({}));
-    assert_eq!(default["frame"], json!({"axes": "rotating", "origin": "barycenter", "x_axis": "toward_smaller"}));
+    assert_eq!(
+        default["frame"],
+        json!({"axes": "rotating", "origin": "barycenter", "x_axis": "toward_smaller"})
+    );
     let x = point(&default, "L1")["position"][0].as_f64().unwrap();
     for (origin, shift) in [("barycenter", 0.0), ("larger", mu), ("smaller", mu - 1.0)] {
         for (x_axis, sign) in [("toward_smaller", 1.0), ("toward_larger", -1.0)] {
@@ -287,8 +288,12 @@ fn all_faults_come_at_once() {
     );
     let path = "/v1/systems/earth-moon/equilibria?time=x&lenght=km&axes=inertial&jacobi_form=";
     let reply = service.get(path).json();
-    let mut names: Vec<&str> =
-        reply["errors"].as_array().unwrap().iter().map(|fault| fault["parameter"].as_str().unwrap()).collect();
+    let mut names: Vec<&str> = reply["errors"]
+        .as_array()
+        .unwrap()
+        .iter()
+        .map(|fault| fault["parameter"].as_str().unwrap())
+        .collect();
     names.sort_unstable();
     assert_eq!(names, ["axes", "jacobi_form", "lenght", "length", "time"]);
     service.get("/v1/systems/earth-moon/equilibria?origin=larger&origin=smaller").has_fault(

@@ -18,7 +18,8 @@ fn one(service: &Local, body: &Value) -> Value {
 #[test]
 fn elements_of_textbook_examples() {
     let service = Local::start();
-    let inertial = json!({"units": {"length": "km", "time": "s"}, "frame": {"axes": "inertial", "origin": "larger"}});
+    let inertial =
+        json!({"units": {"length": "km", "time": "s"}, "frame": {"axes": "inertial", "origin": "larger"}});
     let mut to = inertial.clone();
     to["elements_about"] = json!("larger");
     // Curtis, Orbital Mechanics for Engineering Students, example 4.3, and Vallado, Fundamentals of Astrodynamics and
@@ -185,7 +186,8 @@ fn every_pair_of_frames_leads_back() {
     for axes in ["rotating", "inertial"] {
         for origin in ["barycenter", "larger", "smaller"] {
             for x_axis in ["toward_smaller", "toward_larger"] {
-                let there = json!({"units": units, "frame": {"axes": axes, "origin": origin, "x_axis": x_axis}});
+                let there =
+                    json!({"units": units, "frame": {"axes": axes, "origin": origin, "x_axis": x_axis}});
                 let mut to = there.clone();
                 to["elements_about"] = json!("smaller");
                 let answer = service.answer(POST, &json!({"system": system, "states": [given], "to": to}));
@@ -207,7 +209,8 @@ fn every_pair_of_frames_leads_back() {
                     "states": answer["states"],
                 });
                 let normalised = json!({"system": system, "states": [given]});
-                let here = service.answer("/v1/jacobi", &body)["states"][0]["jacobi_constant"].as_f64().unwrap();
+                let here =
+                    service.answer("/v1/jacobi", &body)["states"][0]["jacobi_constant"].as_f64().unwrap();
                 let there = &service.answer("/v1/jacobi", &normalised)["states"][0]["jacobi_constant"];
                 close(&json!(here / 100.0), there.as_f64().unwrap(), 2e-15);
             }
@@ -264,8 +267,16 @@ fn bad_requests_are_told_what_would_be_right() {
     service.refuses(
         POST,
         &[
-            (to(json!({"variables": "momentum", "frame": {"axes": "inertial"}})), "/to/variables", "rotating axes"),
-            (to(json!({"variables": "momentum", "frame": {"origin": "larger"}})), "/to/variables", "barycenter"),
+            (
+                to(json!({"variables": "momentum", "frame": {"axes": "inertial"}})),
+                "/to/variables",
+                "rotating axes",
+            ),
+            (
+                to(json!({"variables": "momentum", "frame": {"origin": "larger"}})),
+                "/to/variables",
+                "barycenter",
+            ),
             (to(json!({"variables": "momenta"})), "/to/variables", "did you mean `momentum`?"),
             (to(json!({"elements_about": "moon"})), "/to/elements_about", "known are `larger` and `smaller`"),
             (to(json!({"unit": "normalized"})), "/to/unit", "did you mean `units`?"),
@@ -287,12 +298,32 @@ fn bad_requests_are_told_what_would_be_right() {
             ),
             (elements(json!({"eccentricity": -1})), "/states/0/elements/eccentricity", "got -1"),
             (elements(json!({"eccentricity": 0.1})), "/states/0/elements/inclination", "missing"),
-            (elements(json!({"eccentricty": 0.1})), "/states/0/elements/eccentricty", "did you mean `eccentricity`?"),
+            (
+                elements(json!({"eccentricty": 0.1})),
+                "/states/0/elements/eccentricty",
+                "did you mean `eccentricity`?",
+            ),
             (state(json!({"elements": {"eccentricity": 0}})), "/states/0/elements_about", "is required"),
-            (state(json!({"position": [1, 0, 0], "elements_about": "larger", "velocity": [0, 0, 0]})), "/states/0/elements_about", "goes with"),
-            (state(json!({"position": [1, 0, 0], "momentum": [0, 0, 0], "velocity": [0, 0, 0]})), "/states/0", "exactly one of"),
-            (state(json!({"time": "now", "position": [1, 0, 0], "velocity": [0, 0, 0]})), "/states/0/time", "got a string"),
-            (state(json!({"time": 1e300, "position": [1, 0, 0], "velocity": [0, 0, 0]})), "/states/0/time", "got 1e300"),
+            (
+                state(json!({"position": [1, 0, 0], "elements_about": "larger", "velocity": [0, 0, 0]})),
+                "/states/0/elements_about",
+                "goes with",
+            ),
+            (
+                state(json!({"position": [1, 0, 0], "momentum": [0, 0, 0], "velocity": [0, 0, 0]})),
+                "/states/0",
+                "exactly one of",
+            ),
+            (
+                state(json!({"time": "now", "position": [1, 0, 0], "velocity": [0, 0, 0]})),
+                "/states/0/time",
+                "got a string",
+            ),
+            (
+                state(json!({"time": 1e300, "position": [1, 0, 0], "velocity": [0, 0, 0]})),
+                "/states/0/time",
+                "got 1e300",
+            ),
             (json!({"system": "earth-moon"}), "/states", "is required"),
             (json!({"system": "earth-moon", "states": []}), "/states", "at least one state"),
             (json!({}), "/system", "is required"),

@@ -27,12 +27,8 @@ fn constants_of_published_orbits() {
     close(&arenstorf["distance_to_larger"], 1.006277471, 1e-15);
     close(&arenstorf["distance_to_smaller"], 0.006277471, 1e-17);
     // The 9:2 resonant near-rectilinear orbit, used as a baseline in the literature (from memory).
-    let halo = at(
-        &service,
-        0.0121505856,
-        [1.0220281547241, 0.0, -0.18210136080006],
-        [0.0, -0.10327082335568, 0.0],
-    );
+    let halo =
+        at(&service, 0.0121505856, [1.0220281547241, 0.0, -0.18210136080006], [0.0, -0.10327082335568, 0.0]);
     close(&halo["jacobi_constant"], 3.046493809, 1e-9);
 }
 
@@ -47,7 +43,8 @@ fn the_two_forms_differ_by_the_published_term() {
         {"position": [0.9, 0.2, -0.1], "velocity": [3.0, -40.0, 5.0]},
     ]);
     let ask = |form: &str| {
-        service.answer(POST, &json!({"system": {"mass_parameter": mu}, "jacobi_form": form, "states": states}))
+        service
+            .answer(POST, &json!({"system": {"mass_parameter": mu}, "jacobi_form": form, "states": states}))
     };
     let (plain, symmetric) = (ask("plain"), ask("symmetric"));
     assert_eq!((&plain["jacobi_form"], &symmetric["jacobi_form"]), (&json!("plain"), &json!("symmetric")));
@@ -71,13 +68,16 @@ fn the_two_forms_differ_by_the_published_term() {
 #[test]
 fn the_definition_in_any_units() {
     let service = Local::start();
-    let (mu, length, time) = (0.2, 5000.0, 250.0);
+    let (mu, length, time): (f64, f64, f64) = (0.2, 5000.0, 250.0);
     let system = json!({"mass_parameter": mu, "length_km": length, "time_s": time});
     let state = json!({"position": [1.5e6, -2.5e6, 4e5], "velocity": [3000.0, 1000.0, -2000.0]});
     let units = json!({"length": "m", "time": "min", "velocity": "m/s"});
     let answer = service.answer(POST, &json!({"system": system, "units": units, "states": [state]}));
     assert_eq!(answer["units"], units);
-    assert_eq!(answer["frame"], json!({"axes": "rotating", "origin": "barycenter", "x_axis": "toward_smaller"}));
+    assert_eq!(
+        answer["frame"],
+        json!({"axes": "rotating", "origin": "barycenter", "x_axis": "toward_smaller"})
+    );
     let (x, y, z): (f64, f64, f64) = (0.3, -0.5, 0.08);
     let speed_squared = 14.0 / (length / time).powi(2);
     let distance = |along: f64| (along * along + y * y + z * z).sqrt();
@@ -109,7 +109,9 @@ fn no_frame_changes_a_constant() {
                 let converted = service.answer("/v1/frames/convert", &body);
                 let body = json!({"system": system, "frame": frame, "states": converted["states"]});
                 let found = one(&service, &body);
-                for name in ["jacobi_constant", "energy", "speed", "distance_to_larger", "distance_to_smaller"] {
+                for name in
+                    ["jacobi_constant", "energy", "speed", "distance_to_larger", "distance_to_smaller"]
+                {
                     close(&found[name], default[name].as_f64().unwrap(), 2e-15);
                 }
                 assert_eq!(found["region"], default["region"]);
@@ -147,7 +149,8 @@ fn passages_open_in_order_and_join_regions() {
     let constants = &first["equilibria"];
     let potential = first["states"][0]["effective_potential"].as_f64().unwrap();
     let level = |name: &str| constants[name].as_f64().unwrap();
-    let (all, two) = (json!(["around_larger", "around_smaller", "outside"]), json!(["around_larger", "around_smaller"]));
+    let (all, two) =
+        (json!(["around_larger", "around_smaller", "outside"]), json!(["around_larger", "around_smaller"]));
     for (constant, open, reachable) in [
         (level("L1") + 1e-3, json!([]), json!(["around_larger"])),
         (0.5 * (level("L1") + level("L2")), json!(["L1"]), two),
@@ -300,12 +303,9 @@ fn bad_requests_are_told_what_would_be_right() {
         ],
     );
     assert_eq!(service.post_text(POST, "").json()["type"], "/problems/malformed-json");
-    service.post_text(POST, r#"{"system": "earth-moon", "states": [{"position": [1e999, 0, 0]}]}"#).has_fault(
-        "invalid-request",
-        "pointer",
-        "/states/0/position/0",
-        "finite",
-    );
+    service
+        .post_text(POST, r#"{"system": "earth-moon", "states": [{"position": [1e999, 0, 0]}]}"#)
+        .has_fault("invalid-request", "pointer", "/states/0/position/0", "finite");
 }
 
 #[test]
@@ -319,6 +319,9 @@ fn faults_of_several_states_come_at_once() {
     let reply = service.post(POST, &body).json();
     let pointers: Vec<&str> =
         reply["errors"].as_array().unwrap().iter().map(|fault| fault["pointer"].as_str().unwrap()).collect();
-    assert_eq!(pointers, ["/jacobi_form", "/states/0/position", "/states/1/velocity/1", "/states/2/position"]);
+    assert_eq!(
+        pointers,
+        ["/jacobi_form", "/states/0/position", "/states/1/velocity/1", "/states/2/position"]
+    );
     assert_eq!(reply["detail"], "4 members are not valid");
 }

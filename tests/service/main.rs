@@ -16,5 +16,5 @@ mod problems;
 mod router;
 mod support;
 mod systems;
-mod units_convert;
 mod trajectories;
+mod units_convert;

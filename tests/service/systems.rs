@@ -41,7 +41,10 @@ fn the_catalogue_has_every_system_with_its_sources() {
     let ids: Vec<&str> = systems.iter().map(|system| system["id"].as_str().unwrap()).collect();
     assert_eq!(ids, IDS);
     for system in &systems {
-        assert_eq!(*system, service.get(&format!("/v1/systems/{}", system["id"].as_str().unwrap())).success());
+        assert_eq!(
+            *system,
+            service.get(&format!("/v1/systems/{}", system["id"].as_str().unwrap())).success()
+        );
         let sources = system["sources"].as_array().unwrap();
         for constant in sources {
             assert!(constant["source"].as_str().unwrap().len() > 20, "{constant}");
@@ -59,7 +62,10 @@ fn constants_are_the_published_ones() {
     // IAU 2015 Resolution B3; separations: Astronomical Almanac, and Standish, Keplerian elements, Table 1.
     let service = Local::start();
     let moon = service.get("/v1/systems/earth-moon").success();
-    assert_eq!(moon["larger"], json!({"name": "Earth", "gm_km3_s2": 398600.43550702266, "radius_km": 6371.0084}));
+    assert_eq!(
+        moon["larger"],
+        json!({"name": "Earth", "gm_km3_s2": 398600.43550702266, "radius_km": 6371.0084})
+    );
     assert_eq!(moon["smaller"], json!({"name": "Moon", "gm_km3_s2": 4902.80011845755, "radius_km": 1737.4}));
     assert_eq!(moon["length_km"], 384400.0);
     assert_eq!(moon["published_period_d"], 27.321661);

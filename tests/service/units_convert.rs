@@ -96,20 +96,34 @@ fn what_is_returned_can_be_sent_and_the_bytes_repeat() {
 #[test]
 fn bad_requests_are_told_what_would_be_right() {
     let service = Local::start();
-    let value = |system: Value, quantity: &str, value: Value, from: &str, to: &str| {
-        json!({"system": system, "values": [{"quantity": quantity, "value": value, "from": from, "to": to}]})
-    };
+    let value = |system: Value, quantity: &str, value: Value, from: &str, to: &str| json!({"system": system, "values": [{"quantity": quantity, "value": value, "from": from, "to": to}]});
     let moon = || json!("earth-moon");
     let bare = || json!({"mass_parameter": 0.1});
     service.refuses(
         POST,
         &[
-            (value(moon(), "length", json!(1), "mile", "km"), "/values/0/from", "must be one of normalized, m, km, au"),
-            (value(moon(), "length", json!(1), "km", "s"), "/values/0/to", "must be one of normalized, m, km, au"),
+            (
+                value(moon(), "length", json!(1), "mile", "km"),
+                "/values/0/from",
+                "must be one of normalized, m, km, au",
+            ),
+            (
+                value(moon(), "length", json!(1), "km", "s"),
+                "/values/0/to",
+                "must be one of normalized, m, km, au",
+            ),
             (value(moon(), "lenght", json!(1), "km", "m"), "/values/0/quantity", "did you mean `length`?"),
-            (value(moon(), "length", json!("1"), "km", "m"), "/values/0/value", "must be a finite number, got a string"),
+            (
+                value(moon(), "length", json!("1"), "km", "m"),
+                "/values/0/value",
+                "must be a finite number, got a string",
+            ),
             (value(moon(), "length", json!(null), "km", "m"), "/values/0/value", "got null"),
-            (value(moon(), "length", json!(1e308), "km", "m"), "/values/0/value", "beyond the range of double precision"),
+            (
+                value(moon(), "length", json!(1e308), "km", "m"),
+                "/values/0/value",
+                "beyond the range of double precision",
+            ),
             (value(bare(), "length", json!(1), "normalized", "km"), "/values/0/from", "`length_km`"),
             (value(bare(), "time", json!(1), "s", "normalized"), "/values/0/to", "`time_s`"),
             (json!({"system": "earth-moon"}), "/values", "is required"),
@@ -117,7 +131,11 @@ fn bad_requests_are_told_what_would_be_right() {
             (json!({"system": "earth-moon", "values": [1]}), "/values/0", "must be an object, got a number"),
             (json!({"system": "earth-moon", "values": [{}]}), "/values/0/from", "is required"),
             (json!({"system": "earth-moon", "values": [], "unit": 1}), "/unit", "unknown member"),
-            (value(json!({"mass_parameter": 0}), "length", json!(1), "km", "m"), "/system/mass_parameter", "got 0"),
+            (
+                value(json!({"mass_parameter": 0}), "length", json!(1), "km", "m"),
+                "/system/mass_parameter",
+                "got 0",
+            ),
             (json!([]), "", "must be an object, got an array"),
         ],
     );
