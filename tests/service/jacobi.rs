@@ -126,7 +126,7 @@ fn digits_survive_near_a_primary() {
     let (service, distance, mu) = (Local::start(), 3e-20, 0.25);
     for (origin, share) in [("larger", 1.0 - mu), ("smaller", mu)] {
         for axes in ["rotating", "inertial"] {
-            let states = json!([{"position": [0.0, distance, 0.0], "velocity": [0.0, 0.0, 0.0]}]);
+            let states = json!([{"position": [distance, 0.0, 0.0], "velocity": [0.0, 0.0, 0.0]}]);
             let frame = json!({"origin": origin, "axes": axes});
             let body = json!({"system": {"mass_parameter": mu}, "frame": frame, "states": states});
             let found = one(&service, &body);
