@@ -5,6 +5,7 @@ mod configuration;
 mod decoding;
 mod dependencies;
 mod documents;
+mod in_flight;
 mod lifecycle;
 mod network;
 mod openapi;
