@@ -32,7 +32,10 @@ fn serve(config: Config) -> ExitCode {
         Ok(runtime) => runtime,
         Err(error) => return fail(&error),
     };
-    let logs = telemetry::start(&config.log);
+    let logs = match telemetry::start(&config.log) {
+        Ok(logs) => logs,
+        Err(error) => return fail(&error),
+    };
     let served = runtime.block_on(async {
         let listener = tokio::net::TcpListener::bind(config.listen).await?;
         let address = listener.local_addr()?;

@@ -63,6 +63,7 @@ struct Points {
 }
 
 #[derive(Serialize)]
+#[expect(clippy::struct_field_names, reason = "names of the contract")]
 struct Energy {
     jacobi_constant: f64,
     energy: f64,

@@ -7,6 +7,7 @@ mod dependencies;
 mod documents;
 mod equilibria;
 mod frames_convert;
+mod in_flight;
 mod jacobi;
 mod lifecycle;
 mod network;

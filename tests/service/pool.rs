@@ -52,23 +52,17 @@ async fn a_full_queue_refuses_at_once_and_a_place_is_free_again_after() {
 #[tokio::test]
 async fn dropping_the_answer_stops_the_computation_at_its_next_poll() {
     let pool = pool(1, 0);
-    let (begin, begun) = mpsc::channel();
+    let (begin, begun) = tokio::sync::oneshot::channel();
     let (end, ended) = mpsc::channel();
     let work = pool.run(move |context: &Context| {
         begin.send(()).unwrap();
         end.send(poll_on(context.interrupt())).unwrap();
     });
-    work_until(work, begun).await;
-    assert_eq!(ended.recv_timeout(PATIENCE), Ok(Stop::Cancelled));
-}
-
-/// Waits for `work` only until it has begun.
-async fn work_until<T>(work: impl Future<Output = T>, begun: mpsc::Receiver<()>) {
-    let begun = tokio::task::spawn_blocking(move || begun.recv().is_ok());
     tokio::select! {
         _ = work => panic!("it cannot end by itself"),
-        begun = begun => assert!(begun.unwrap()),
+        begun = begun => begun.unwrap(),
     }
+    assert_eq!(ended.recv_timeout(PATIENCE), Ok(Stop::Cancelled));
 }
 
 #[tokio::test]

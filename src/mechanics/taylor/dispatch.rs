@@ -109,3 +109,35 @@ fn change<R: Real>(position: &[Quad<R>; TERMS], time: R) -> [R; 6] {
     let Quad([vx, vy, vz, _]) = rate * time;
     [x, y, z, vx, vy, vz]
 }
+
+#[cfg(test)]
+mod tests {
+    use super::{Columns, Compensated, Primaries, Series, change, recurrence, variational};
+
+    /// Without target features `mul_add` is the software's; the results are the same to the bit.
+    #[test]
+    fn portable_and_accelerated_paths_have_the_same_bits() {
+        let primaries = Primaries::new(0.0121);
+        let mut state = [0.83, 0.05, -0.03, 0.02, 0.31, -0.1].map(Compensated::new);
+        let matrix = std::array::from_fn(|i| std::array::from_fn(|j| if i == j { 1.0 } else { 0.25 }));
+        let (mut fast, mut plain) = (Series::new(), Series::new());
+        let (mut fast_columns, mut plain_columns) = (Columns::new(), Columns::new());
+        for _ in 0..50 {
+            super::expand(&primaries, &state, &mut fast);
+            let rounded = state.map(|component| component.value);
+            let away = [primaries.larger_x(), primaries.smaller_x()].map(|centre| state[0].minus(centre));
+            recurrence::expand(&primaries, &rounded, away[0], away[1], &mut plain);
+            assert_eq!(format!("{fast:?}"), format!("{plain:?}"));
+
+            super::expand_variational(&fast, &matrix, &mut fast_columns);
+            variational::expand(&plain, &matrix, &mut plain_columns);
+            assert_eq!(format!("{fast_columns:?}"), format!("{plain_columns:?}"));
+
+            let moved = super::flow(&fast, 0.05);
+            assert_eq!(moved.map(f64::to_bits), change(&plain.position, 0.05).map(f64::to_bits));
+            for (component, moved) in state.iter_mut().zip(moved) {
+                *component = component.plus(moved);
+            }
+        }
+    }
+}

@@ -93,6 +93,7 @@ fn either(object: RefOr<Schema>, description: &str) -> RefOr<Schema> {
 #[derive(Clone, Copy, Debug)]
 pub struct UnitsEcho(pub Units);
 
+/// Physical units that numbers are in.
 #[derive(Serialize, ToSchema)]
 #[schema(as = PhysicalUnits)]
 struct PhysicalEcho {

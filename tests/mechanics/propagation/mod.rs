@@ -2,6 +2,7 @@
 
 mod contact;
 mod events;
+mod golden;
 mod interruption;
 mod manoeuvres;
 mod matrices;

@@ -147,7 +147,7 @@ function trial(api, method, path, operation) {
   const more = element("details", { hidden: "" }, element("summary", {}, "Response headers"), headers);
   const body = element("pre", { tabindex: "0", "aria-label": "Response body" });
 
-  const url = () => {
+  const address = () => {
     const query = new URLSearchParams();
     let target = path;
     for (const { parameter, input } of inputs) {
@@ -165,7 +165,7 @@ function trial(api, method, path, operation) {
       const request = { method: method.toUpperCase(), headers: {} };
       if (area) Object.assign(request, { body: area.value, headers: { "content-type": "application/json" } });
       if (accept) request.headers.accept = accept.value;
-      const response = await fetch(url(), request);
+      const response = await fetch(address(), request);
       const text = await response.text();
       const took = performance.now() - begun;
       const compute = /compute;dur=([\d.]+)/.exec(response.headers.get("server-timing") || "")?.[1];
@@ -190,7 +190,7 @@ function trial(api, method, path, operation) {
     type: "button",
     onclick: async () => {
       const data = area ? ` \\\n  -H 'content-type: application/json' -d '${area.value.replaceAll("'", "'\\''")}'` : "";
-      const command = `curl -s '${location.origin}${url()}'${data}`;
+      const command = `curl -s '${location.origin}${address()}'${data}`;
       try {
         await navigator.clipboard.writeText(command);
         note.textContent = "Copied";
