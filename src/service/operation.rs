@@ -88,7 +88,7 @@ pub async fn answer<O: Operation>(app: App, submission: Submission) -> Result<An
     }
 }
 
-/// Items that are computed between two looks at the clock: a few milliseconds of work at most.
+/// Items that are computed between two looks at the clock, a few microseconds each.
 const PART: usize = 64;
 
 /// Computes `each` of `0..total` on this and the idle compute threads, in order.

@@ -3,6 +3,7 @@
 use std::f64::consts::TAU;
 
 use mechanics::equilibria::{Equilibria, Equilibrium, Point, ROUTH};
+use mechanics::frame::Origin;
 use mechanics::potential::{JacobiConstant, JacobiForm, distances, gradient};
 use proptest::prelude::*;
 
@@ -75,6 +76,26 @@ fn residuals_are_those_of_rounding() {
     for mu in [5e-324, 1e-300, 1e-60, 1e-16, 1e-9, 0.012_150_585_6, 0.3, 0.5] {
         let residual = equilibria(mu).largest_residual();
         assert!(residual < 1e-15, "{mu:e}: {residual:e}");
+    }
+}
+
+/// From a primary the digits are those of the distances; elsewhere it is the same place.
+#[test]
+fn positions_count_from_any_origin() {
+    for mu in [1e-30, 1e-5, 0.3] {
+        for found in equilibria(mu).iter() {
+            let x = found.position().x;
+            for (origin, from_barycenter) in
+                [(Origin::Barycenter, 0.0), (Origin::Larger, -mu), (Origin::Smaller, 1.0 - mu)]
+            {
+                let seen = found.position_from(origin);
+                assert!((seen.x - (x - from_barycenter)).abs() < 3e-16, "{mu:e} {origin:?} {found:?}");
+                assert_eq!((seen.y, seen.z), (found.position().y, 0.0));
+            }
+            let larger = found.position_from(Origin::Larger).norm() / found.distance_to_larger();
+            let smaller = found.position_from(Origin::Smaller).norm() / found.distance_to_smaller();
+            assert!((larger - 1.0).abs() < 3e-16 && (smaller - 1.0).abs() < 3e-16, "{mu:e} {found:?}");
+        }
     }
 }
 

@@ -44,6 +44,33 @@ fn the_default_frame_keeps_every_bit() {
     );
 }
 
+/// Every frame to every other is the way through the default one, but for the digits that the way round loses.
+#[test]
+fn frames_convert_into_each_other() {
+    let given = State::new(2.5, [0.7, 0.3, 0.05, 0.1, -0.2, 0.02]);
+    for from in frames() {
+        for to in frames() {
+            let direct = from.convert(to, MU, &given).components();
+            let through_default = to.from_default(MU, &from.to_default(MU, &given)).components();
+            assert!(near(&direct, &through_default, 2e-15), "{from:?} to {to:?}");
+        }
+        assert_eq!(from.convert(from, MU, &given), given);
+    }
+}
+
+#[test]
+fn states_about_one_origin_keep_their_digits() {
+    let distance = 1e-30;
+    let given = State::new(2.5, [0.6 * distance, 0.8 * distance, 0.0, 0.0, 0.0, 0.0]);
+    for from in frames() {
+        for to in frames().into_iter().filter(|to| to.origin == from.origin) {
+            let found = from.convert(to, MU, &given);
+            let error = (found.position.norm() / distance - 1.0).abs();
+            assert!(error < 1e-15, "{from:?} to {to:?}: {error:e}");
+        }
+    }
+}
+
 #[test]
 fn bodies_at_rest_in_rotating_axes_circle_the_origin() {
     // Uniform circular motion: the smaller primary seen from the larger is at (cos t, sin t) with velocity

@@ -1,8 +1,10 @@
 //! Effective potential, its derivatives, Jacobi constant.
 
+use mechanics::frame::Origin;
 use mechanics::potential::{
-    AtPrimary, JacobiConstant, JacobiForm, distances, effective_potential, gradient, hessian,
+    AtPrimary, JacobiConstant, JacobiForm, distances, distances_from, effective_potential, gradient, hessian,
 };
+use mechanics::state::State;
 use nalgebra::Vector3;
 use proptest::prelude::*;
 
@@ -10,6 +12,29 @@ use crate::reference::{JACOBI, assert_close, mass_parameter, number, rows};
 
 /// Required of C, relative to the largest term of the plain form.
 const ACCURACY: f64 = 4e-16;
+
+/// Beside a primary C is all but 2GM/r, with the digits of r if r is counted from that primary.
+#[test]
+fn digits_survive_beside_a_primary() {
+    let (mu, r) = (0.3, 1e-25);
+    for (origin, gm) in [(Origin::Larger, 1.0 - mu), (Origin::Smaller, mu)] {
+        let position = Vector3::new(0.6 * r, 0.0, -0.8 * r);
+        let at_rest =
+            JacobiConstant::at_rest_from(origin, mass_parameter(mu), &position).expect("off the centre");
+        assert!((at_rest.value(JacobiForm::Plain) * r / (2.0 * gm) - 1.0).abs() <= ACCURACY);
+        let distances = distances_from(origin, mass_parameter(mu), &position);
+        assert!((distances.larger.min(distances.smaller) / r - 1.0).abs() <= ACCURACY);
+        assert!((distances.larger.max(distances.smaller) - 1.0).abs() <= ACCURACY);
+        let still = State { time: 0.0, position, velocity: Vector3::zeros() };
+        assert!(at_rest.departure_from_definition(origin, &still) < 1e-15);
+        let other = at_rest.plus(at_rest.value(JacobiForm::Plain));
+        assert!((other.departure_from_definition(origin, &still) - 1.0).abs() < 1e-14, "an error shows");
+    }
+    assert_eq!(
+        JacobiConstant::at_rest_from(Origin::Smaller, mass_parameter(mu), &Vector3::zeros()),
+        Err(AtPrimary::Smaller)
+    );
+}
 
 #[test]
 fn jacobi_constant_agrees_with_40_digits() {

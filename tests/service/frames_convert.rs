@@ -247,6 +247,34 @@ fn digits_survive_near_a_primary() {
 }
 
 #[test]
+fn what_is_returned_can_be_sent_to_every_other_operation() {
+    let service = Local::start();
+    let body: Value =
+        serde_json::from_str(include_str!("../../src/service/api/frames_convert/example.json")).unwrap();
+    let answer = service.answer(POST, &body);
+    let conventions = json!({"system": answer["system"], "units": answer["units"], "frame": answer["frame"]});
+    let with = |member: &str, value: &Value| {
+        let mut body = conventions.clone();
+        body[member] = value.clone();
+        body
+    };
+    let jacobi = service.answer("/v1/jacobi", &with("states", &answer["states"]));
+    let mut motion = with("initial_states", &answer["states"]);
+    motion["duration"] = json!(0.01);
+    let trajectories = service.answer("/v1/trajectories", &motion);
+    let equilibria = service.answer("/v1/equilibria", &conventions);
+    for other in [&jacobi, &trajectories, &equilibria] {
+        for member in ["system", "units", "frame"] {
+            assert_eq!(other[member], answer[member]);
+        }
+    }
+    let last = json!([trajectories["trajectories"][0]["final"]]);
+    let there = service.answer("/v1/jacobi", &with("states", &last));
+    let constant = jacobi["states"][0]["jacobi_constant"].as_f64().unwrap();
+    close(&there["states"][0]["jacobi_constant"], constant, 1e-12 * constant.abs());
+}
+
+#[test]
 fn the_bytes_repeat_and_units_keep_the_bits() {
     let service = Local::start();
     let body: Value =

@@ -140,3 +140,17 @@ async fn a_panic_in_a_part_reaches_the_one_who_waits() {
     });
     assert!(joined.await.unwrap_err().is_panic());
 }
+
+#[tokio::test]
+async fn a_batch_whose_time_is_up_is_a_problem() {
+    for pool in [pool(1, 0), pool(2, 0)] {
+        let batch = pool.run(|context: &Context| {
+            context.grant(Duration::ZERO);
+            synodia::operation::batch(context, 1000, |index| index)
+        });
+        let problem = batch.await.unwrap().unwrap_err();
+        assert_eq!(problem.slug().name(), "wall-time-limit");
+        let whole = pool.run(|context: &Context| synodia::operation::batch(context, 1000, |index| index));
+        assert_eq!(whole.await.unwrap().unwrap(), (0..1000).collect::<Vec<_>>());
+    }
+}

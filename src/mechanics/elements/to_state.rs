@@ -68,10 +68,10 @@ pub enum ElementsError {
     #[error("missing: {1}")]
     Missing(Member, &'static str),
     /// A semi-major axis of the wrong sign.
-    #[error("must be positive for an ellipse and negative for a hyperbola, got {0}")]
+    #[error("must be positive for an ellipse and negative for a hyperbola, got {0:?}")]
     Sign(f64),
     /// A periapsis distance other than a(1 − e).
-    #[error("contradicts semi-major axis and eccentricity, from which {expected} follows, got {given}")]
+    #[error("contradicts semi-major axis and eccentricity, from which {expected:?} follows, got {given:?}")]
     Contradiction {
         /// The periapsis distance.
         given: f64,
@@ -79,7 +79,7 @@ pub enum ElementsError {
         expected: f64,
     },
     /// A true anomaly that the orbit never has.
-    #[error("lies at or beyond the asymptote of this orbit, got {0}")]
+    #[error("lies at or beyond the asymptote of this orbit, got {0:?}")]
     BeyondAsymptote(f64),
     /// A state that cannot be written as doubles.
     #[error("the elements give a state beyond the range of double precision")]

@@ -97,7 +97,7 @@ pub enum SystemError {
     #[error("missing: give `mass_parameter`, an `id`, or two bodies with `gm_km3_s2` and `separation_km`")]
     NoMass,
     /// A member that disagrees with what the others make of it.
-    #[error("contradicts the other members, from which {expected} follows, got {given}")]
+    #[error("contradicts the other members, from which {expected:?} follows, got {given:?}")]
     Contradiction {
         /// The member at fault.
         member: Member,
@@ -117,7 +117,7 @@ pub enum SystemError {
         expected: String,
     },
     /// The body called larger has the smaller gravitational parameter.
-    #[error("the larger primary's gravitational parameter {larger} is below the smaller's {smaller}")]
+    #[error("the larger primary's gravitational parameter {larger:?} is below the smaller's {smaller:?}")]
     LargerIsLighter {
         /// km³/s².
         larger: f64,

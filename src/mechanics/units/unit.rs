@@ -173,7 +173,7 @@ pub enum ConvertError {
     #[error("the units are of different dimensions")]
     Incompatible,
     /// The result cannot be written as a double.
-    #[error("{0} in the unit asked for is beyond the range of double precision")]
+    #[error("{0:?} in the unit asked for is beyond the range of double precision")]
     Range(f64),
 }
 

@@ -61,7 +61,7 @@ request! {
 }
 
 request! {
-    /// A constant and where it was published.
+    /// A constant of the catalogue and its source; ignored.
     pub(crate) struct SourceSpec {
         /// Which constant.
         optional constant: Text,

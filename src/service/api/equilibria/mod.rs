@@ -72,7 +72,7 @@ impl Operation for EquilibriaRequest {
 
     fn cost(task: &Task) -> Duration {
         /// Measured, with writing the answer.
-        const PER_SYSTEM: Duration = Duration::from_micros(15);
+        const PER_SYSTEM: Duration = Duration::from_micros(5);
         PER_SYSTEM.saturating_mul(u32::try_from(task.subject.count()).unwrap_or(u32::MAX))
     }
 

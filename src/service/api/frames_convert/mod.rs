@@ -41,7 +41,7 @@ impl Operation for FramesConvertRequest {
     }
 
     fn cost(task: &Task) -> Duration {
-        /// Measured, with elements.
+        /// Measured, with elements and with writing the answer.
         const PER_STATE: Duration = Duration::from_micros(2);
         PER_STATE.saturating_mul(u32::try_from(task.states.len()).unwrap_or(u32::MAX))
     }
