@@ -39,6 +39,24 @@ pub enum Origin {
     Smaller,
 }
 
+impl Origin {
+    /// x of this origin, counted from `other` towards the smaller primary; none if they are the same.
+    pub(crate) fn x_seen_from(self, other: Self, mass_parameter: MassParameter) -> Option<f64> {
+        let mu = mass_parameter.get();
+        match (self, other) {
+            (Self::Barycenter, Self::Larger) => Some(mu),
+            (Self::Barycenter, Self::Smaller) => Some(-(1.0 - mu)),
+            (Self::Larger, Self::Barycenter) => Some(-mu),
+            (Self::Smaller, Self::Barycenter) => Some(1.0 - mu),
+            (Self::Larger, Self::Smaller) => Some(-1.0),
+            (Self::Smaller, Self::Larger) => Some(1.0),
+            (Self::Barycenter, Self::Barycenter)
+            | (Self::Larger, Self::Larger)
+            | (Self::Smaller, Self::Smaller) => None,
+        }
+    }
+}
+
 /// Which way the x axis points, at time 0 if the axes are inertial.
 #[derive(Clone, Copy, Debug, Default, Eq, PartialEq)]
 pub enum XAxis {
@@ -81,26 +99,36 @@ impl Frame {
     /// A state of the default frame in this one. The default frame keeps the bits.
     #[must_use]
     pub fn from_default(self, mass_parameter: MassParameter, state: &State) -> State {
-        let turn = self.turn(state.time);
-        let position = self.shift(mass_parameter, &state.position, -1.0);
-        let velocity = match self.axes {
-            Axes::Rotating => state.velocity,
-            Axes::Inertial => state.velocity + swept(&position),
-        };
-        State { time: state.time, position: turn.forward(&position), velocity: turn.forward(&velocity) }
+        Self::default().convert(self, mass_parameter, state)
     }
 
     /// A state of this frame in the default one. The default frame keeps the bits.
     #[must_use]
     pub fn to_default(self, mass_parameter: MassParameter, state: &State) -> State {
-        let turn = self.turn(state.time);
-        let position = turn.backward(&state.position);
-        let velocity = turn.backward(&state.velocity);
-        let velocity = match self.axes {
-            Axes::Rotating => velocity,
-            Axes::Inertial => velocity - swept(&position),
-        };
-        State { time: state.time, position: self.shift(mass_parameter, &position, 1.0), velocity }
+        self.convert(Self::default(), mass_parameter, state)
+    }
+
+    /// A state of this frame in `other`. Between frames of one origin a position keeps its digits however near the
+    /// origin it is; a frame and itself keep the bits.
+    #[must_use]
+    pub fn convert(self, other: Self, mass_parameter: MassParameter, state: &State) -> State {
+        if self == other {
+            return *state;
+        }
+        let State { time, position, velocity } = *state;
+        let (turn, other_turn) = (self.turn(time), other.turn(time));
+        let mut position = turn.backward(&position);
+        let mut velocity = turn.backward(&velocity);
+        if self.axes == Axes::Inertial {
+            velocity -= swept(&position);
+        }
+        if let Some(x) = self.origin.x_seen_from(other.origin, mass_parameter) {
+            position.x += x;
+        }
+        if other.axes == Axes::Inertial {
+            velocity += swept(&position);
+        }
+        State { time, position: other_turn.forward(&position), velocity: other_turn.forward(&velocity) }
     }
 
     /// A position of the default frame at `time` in this one.
@@ -111,7 +139,11 @@ impl Frame {
         time: f64,
         position: &Vector3<f64>,
     ) -> Vector3<f64> {
-        self.turn(time).forward(&self.shift(mass_parameter, position, -1.0))
+        let mut position = *position;
+        if let Some(x) = Origin::default().x_seen_from(self.origin, mass_parameter) {
+            position.x += x;
+        }
+        self.turn(time).forward(&position)
     }
 
     /// A position of this frame at `time` in the default one.
@@ -122,7 +154,11 @@ impl Frame {
         time: f64,
         position: &Vector3<f64>,
     ) -> Vector3<f64> {
-        self.shift(mass_parameter, &self.turn(time).backward(position), 1.0)
+        let mut position = self.turn(time).backward(position);
+        if let Some(x) = self.origin.x_seen_from(Origin::default(), mass_parameter) {
+            position.x += x;
+        }
+        position
     }
 
     /// A direction or Δv of the default frame at `time` in this one.
@@ -149,7 +185,7 @@ impl Frame {
         offset: f64,
     ) -> (Vector3<f64>, f64) {
         let normal = self.turn(time).backward(normal);
-        match self.origin_x(mass_parameter) {
+        match self.origin.x_seen_from(Origin::default(), mass_parameter) {
             None => (normal, offset),
             Some(x) => (normal, offset + normal.x * x),
         }
@@ -204,22 +240,6 @@ impl Frame {
             jacobian.fixed_view_mut::<3, 3>(3, 0).copy_from(&velocity_by_position);
         }
         jacobian
-    }
-
-    /// x of the origin in the default frame, unless it is the barycentre.
-    fn origin_x(self, mass_parameter: MassParameter) -> Option<f64> {
-        match self.origin {
-            Origin::Barycenter => None,
-            Origin::Larger => Some(-mass_parameter.get()),
-            Origin::Smaller => Some(1.0 - mass_parameter.get()),
-        }
-    }
-
-    fn shift(self, mass_parameter: MassParameter, position: &Vector3<f64>, sign: f64) -> Vector3<f64> {
-        match self.origin_x(mass_parameter) {
-            None => *position,
-            Some(x) => Vector3::new(position.x + sign * x, position.y, position.z),
-        }
     }
 
     /// The rotation from the default axes to this frame's at `time`.

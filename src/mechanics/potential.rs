@@ -11,6 +11,7 @@ use nalgebra::{Matrix3, Vector3};
 use thiserror::Error;
 
 use crate::arithmetic::DoubleDouble;
+use crate::frame::Origin;
 use crate::quantity::{MassParameter, Quantity};
 use crate::state::State;
 
@@ -54,7 +55,14 @@ pub struct Distances {
 /// Distances of a position (x, y, z), barycentric and rotating.
 #[must_use]
 pub fn distances(mass_parameter: MassParameter, position: &Vector3<f64>) -> Distances {
-    let place = Place::of(mass_parameter, position);
+    distances_from(Origin::Barycenter, mass_parameter, position)
+}
+
+/// Distances of a rotating position (x, y, z) counted from `origin`; from a primary's centre they keep their digits
+/// however near it is.
+#[must_use]
+pub fn distances_from(origin: Origin, mass_parameter: MassParameter, position: &Vector3<f64>) -> Distances {
+    let place = Place::from(origin, mass_parameter, position);
     Distances { larger: place.larger.to_f64(), smaller: place.smaller.to_f64() }
 }
 
@@ -160,7 +168,20 @@ impl JacobiConstant {
     /// # Errors
     /// [`AtPrimary`] in the centre of a primary.
     pub fn at_rest(mass_parameter: MassParameter, position: &Vector3<f64>) -> Result<Self, AtPrimary> {
-        let place = Place::of(mass_parameter, position);
+        Self::at_rest_from(Origin::Barycenter, mass_parameter, position)
+    }
+
+    /// The same of a rotating position counted from `origin`; from a primary's centre it keeps its digits however near
+    /// it is.
+    ///
+    /// # Errors
+    /// [`AtPrimary`] in the centre of a primary.
+    pub fn at_rest_from(
+        origin: Origin,
+        mass_parameter: MassParameter,
+        position: &Vector3<f64>,
+    ) -> Result<Self, AtPrimary> {
+        let place = Place::from(origin, mass_parameter, position);
         if place.larger.to_f64() < NEAREST {
             return Err(AtPrimary::Larger);
         }
@@ -204,17 +225,23 @@ impl JacobiConstant {
         -0.5 * self.value(form)
     }
 
-    /// How far the constant of `state` is from C = x² + y² + 2(1 − μ)/r₁ + 2μ/r₂ − v² evaluated in double precision,
-    /// relative to the largest of these terms. The rounding of the definition's own evaluation is most of it.
+    /// How far the constant of the rotating `state`, its position counted from `origin`, is from
+    /// C = x² + y² + 2(1 − μ)/r₁ + 2μ/r₂ − v² evaluated in double precision, relative to the largest of these terms.
+    /// The rounding of the definition's own evaluation is most of it.
     #[must_use]
-    pub fn departure_from_definition(&self, state: &State) -> f64 {
+    pub fn departure_from_definition(&self, origin: Origin, state: &State) -> f64 {
         let (r, v, mu) = (&state.position, &state.velocity, self.mu);
+        let (x, from_larger, from_smaller) = match origin {
+            Origin::Barycenter => (r.x, r.x + mu, (r.x + mu) - 1.0),
+            Origin::Larger => (r.x - mu, r.x, r.x - 1.0),
+            Origin::Smaller => (r.x + (1.0 - mu), r.x + 1.0, r.x),
+        };
         let across = r.y * r.y + r.z * r.z;
         let distance = |along: f64| (along * along + across).sqrt();
         let terms = [
-            r.x * r.x + r.y * r.y,
-            2.0 * (1.0 - mu) / distance(r.x + mu),
-            2.0 * mu / distance((r.x + mu) - 1.0),
+            x * x + r.y * r.y,
+            2.0 * (1.0 - mu) / distance(from_larger),
+            2.0 * mu / distance(from_smaller),
             -v.norm_squared(),
         ];
         let largest = terms.iter().fold(0.0, |largest: f64, term| largest.max(term.abs()));
@@ -264,10 +291,21 @@ pub(crate) struct Place {
 
 impl Place {
     pub(crate) fn of(mass_parameter: MassParameter, position: &Vector3<f64>) -> Self {
-        let from_larger = DoubleDouble::sum(position.x, mass_parameter.get());
+        Self::from(Origin::Barycenter, mass_parameter, position)
+    }
+
+    pub(crate) fn from(origin: Origin, mass_parameter: MassParameter, position: &Vector3<f64>) -> Self {
+        let (from_larger, from_smaller) = match origin {
+            Origin::Barycenter => {
+                let from_larger = DoubleDouble::sum(position.x, mass_parameter.get());
+                (from_larger, from_larger - 1.0)
+            }
+            Origin::Larger => (position.x.into(), DoubleDouble::sum(position.x, -1.0)),
+            Origin::Smaller => (DoubleDouble::sum(position.x, 1.0), position.x.into()),
+        };
         let height_squared = DoubleDouble::square(position.z);
         let across = DoubleDouble::square(position.y) + height_squared;
         let distance = |along: DoubleDouble| (along.squared() + across).sqrt();
-        Self { larger: distance(from_larger), smaller: distance(from_larger - 1.0), height_squared }
+        Self { larger: distance(from_larger), smaller: distance(from_smaller), height_squared }
     }
 }

@@ -93,7 +93,22 @@ impl Elements {
         about: Primary,
         x_axis: XAxis,
     ) -> Result<Self, NotOsculating> {
-        let State { time, position, velocity } = inertial(about, x_axis).from_default(mass_parameter, state);
+        Self::from_state_of(Frame::default(), mass_parameter, state, about, x_axis)
+    }
+
+    /// The same of a state of `frame`. A state counted from the primary keeps its digits however near it is.
+    ///
+    /// # Errors
+    /// [`NotOsculating`] on the primary itself, or where the elements overflow.
+    pub fn from_state_of(
+        frame: Frame,
+        mass_parameter: MassParameter,
+        state: &State,
+        about: Primary,
+        x_axis: XAxis,
+    ) -> Result<Self, NotOsculating> {
+        let axes = Self::frame(about, x_axis);
+        let State { time, position, velocity } = frame.convert(axes, mass_parameter, state);
         let gm = gravity(mass_parameter, about);
         let distance = position.norm();
         if distance == 0.0 {
@@ -138,6 +153,16 @@ impl Elements {
             elements.oriented(&orbit, &position, &momentum, longitude_of_smaller(time, x_axis))
         };
         if elements.is_finite() { Ok(elements) } else { Err(NotOsculating::Range) }
+    }
+
+    /// The frame that elements about `about` refer to, whose x points along `x_axis` at time 0.
+    #[must_use]
+    pub fn frame(about: Primary, x_axis: XAxis) -> Frame {
+        let origin = match about {
+            Primary::Larger => Origin::Larger,
+            Primary::Smaller => Origin::Smaller,
+        };
+        Frame { axes: Axes::Inertial, origin, x_axis }
     }
 
     /// Tisserand's parameter with respect to the smaller primary, T = 1/a + 2 √(a(1 − e²)) cos i, of elements
@@ -247,15 +272,6 @@ impl Orbit {
         let anomaly = libm::asinh(sinh);
         sinh_less(anomaly) - self.shortfall * sinh
     }
-}
-
-/// The axes elements refer to.
-fn inertial(about: Primary, x_axis: XAxis) -> Frame {
-    let origin = match about {
-        Primary::Larger => Origin::Larger,
-        Primary::Smaller => Origin::Smaller,
-    };
-    Frame { axes: Axes::Inertial, origin, x_axis }
 }
 
 /// The gravitational parameter of a primary, in total masses.

@@ -4,7 +4,7 @@ use nalgebra::Vector3;
 use thiserror::Error;
 
 use super::angle::{degrees, sincos_degrees, true_from_mean};
-use super::{CIRCULAR, Elements, gravity, inertial};
+use super::{CIRCULAR, Elements, gravity};
 use crate::frame::XAxis;
 use crate::quantity::{
     Angle, Eccentricity, Inclination, MassParameter, OutOfRange, PeriapsisDistance, Quantity, SemiMajorAxis,
@@ -118,6 +118,21 @@ impl Elements {
         about: Primary,
         x_axis: XAxis,
     ) -> Result<State, Vec<ElementsError>> {
+        let state = self.to_state_about(mass_parameter, time, about)?;
+        Ok(Self::frame(about, x_axis).to_default(mass_parameter, &state))
+    }
+
+    /// The same state in the frame that the elements refer to, [`Elements::frame`], where it keeps its digits however
+    /// near the primary it is.
+    ///
+    /// # Errors
+    /// Everything that is missing, out of range or contradictory, all at once.
+    pub fn to_state_about(
+        &self,
+        mass_parameter: MassParameter,
+        time: f64,
+        about: Primary,
+    ) -> Result<State, Vec<ElementsError>> {
         let mut errors = Vec::new();
         let eccentricity =
             require::<Eccentricity>(Member::Eccentricity, Some(self.eccentricity), &mut errors);
@@ -162,7 +177,6 @@ impl Elements {
         let along = ahead * cos_u - toward_node * sin_u;
         let state =
             State { time, position: outward * distance, velocity: outward * radial + along * transverse };
-        let state = inertial(about, x_axis).to_default(mass_parameter, &state);
         if state.components().iter().all(|component| component.is_finite()) {
             Ok(state)
         } else {

@@ -135,7 +135,8 @@ impl<'n> Members<'n> {
             if self.not_offered.contains(&&**name) {
                 errors.push(at, "is not offered by this server");
             } else {
-                errors.push(at, format!("unknown member; {}", did_you_mean(name, self.known)));
+                let noun = errors.noun();
+                errors.push(at, format!("unknown {noun}; {}", did_you_mean(name, self.known)));
             }
         }
     }

@@ -3,6 +3,7 @@
 
 use std::borrow::Cow;
 
+use mechanics::elements::Elements;
 use mechanics::frame::Frame;
 use mechanics::quantity::{Coordinate, Epoch, OutOfRange, Quantity, Speed};
 use mechanics::state::State;
@@ -85,6 +86,18 @@ impl Conventions {
 
     /// The state in normalised units and the default frame, each component within its range.
     pub fn state_in(&self, given: StateSpec, places: &Places<'_>, errors: &mut Errors) -> Option<State> {
+        let (frame, state) = self.state_given(given, places, errors)?;
+        Some(frame.to_default(self.system.mass_parameter(), &state))
+    }
+
+    /// The state in normalised units and the frame that it was given in, so that no digit is lost near a primary: the
+    /// request's, or that of its elements.
+    pub fn state_given(
+        &self,
+        given: StateSpec,
+        places: &Places<'_>,
+        errors: &mut Errors,
+    ) -> Option<(Frame, State)> {
         let good = errors.count();
         let time = in_range::<Epoch>(given.time, self.scale.time)
             .map_err(|detail| places.report("time", "", detail, errors))
@@ -110,8 +123,8 @@ impl Conventions {
             Motion::Elements(elements, about) => {
                 let elements = elements.normalized(&self.scale);
                 let mu = self.system.mass_parameter();
-                return match elements.to_state(mu, time, about.into(), self.frame.x_axis) {
-                    Ok(state) => Some(state),
+                return match elements.to_state_about(mu, time, about.into()) {
+                    Ok(state) => Some((Elements::frame(about.into(), self.frame.x_axis), state)),
                     Err(faults) => {
                         for fault in faults {
                             let member = fault.member().map_or("", |member| member.pointer());
@@ -122,7 +135,7 @@ impl Conventions {
                 };
             }
         };
-        (errors.count() == good).then(|| self.frame.to_default(self.system.mass_parameter(), &state))
+        (errors.count() == good).then_some((self.frame, state))
     }
 
     /// A state of the default frame in the units and the frame of the answer.

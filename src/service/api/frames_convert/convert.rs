@@ -1,13 +1,15 @@
 use mechanics::elements::Elements;
+use mechanics::frame::Frame;
 use mechanics::state::State;
 
 use super::request::Variables;
 use super::response::ConvertedState;
 use crate::wire::{About, Conventions, ElementsEcho};
 
-/// A state in the default frame, with its elements if they are asked.
+/// A state in the frame that it was given in, with its elements if they are asked.
 #[derive(Debug)]
 pub(crate) struct Given {
+    pub(super) frame: Frame,
     pub(super) state: State,
     pub(super) elements: Option<Elements>,
 }
@@ -34,7 +36,7 @@ impl Target {
     pub(super) fn convert(&self, given: &Given) -> Converted {
         let Conventions { system, scale, frame, .. } = &self.conventions;
         let mu = system.mass_parameter();
-        let state = frame.from_default(mu, &given.state);
+        let state = given.frame.convert(*frame, mu, &given.state);
         let mut answer = scale.state_out(&state);
         let mut back = scale.state_in(&answer);
         let momentum = match self.variables {
@@ -46,22 +48,23 @@ impl Target {
             let momentum = scale.velocity_in(&answer.velocity);
             back.velocity = frame.velocity_from_momentum(&back.position, &momentum).unwrap_or(back.velocity);
         }
-        let back = frame.to_default(mu, &back);
+        let back = frame.convert(given.frame, mu, &back);
         let elements = given.elements.as_ref();
         Converted {
             position_error: (back.position - given.state.position).norm(),
             velocity_error: (back.velocity - given.state.velocity).norm(),
-            elements_error: elements.and_then(|elements| self.elements_error(elements, &given.state)),
+            elements_error: elements.and_then(|elements| self.elements_error(elements, given)),
             state: self.state(&answer, momentum.is_some(), elements),
         }
     }
 
     /// How far from the state it leads that the elements describe, in separations.
-    fn elements_error(&self, elements: &Elements, state: &State) -> Option<f64> {
+    fn elements_error(&self, elements: &Elements, given: &Given) -> Option<f64> {
         let Conventions { system, frame, .. } = &self.conventions;
-        let about = self.elements_about?.into();
-        let back = elements.to_state(system.mass_parameter(), state.time, about, frame.x_axis).ok()?;
-        Some((back.position - state.position).norm())
+        let (mu, about) = (system.mass_parameter(), self.elements_about?.into());
+        let back = elements.to_state_about(mu, given.state.time, about).ok()?;
+        let back = Elements::frame(about, frame.x_axis).convert(given.frame, mu, &back);
+        Some((back.position - given.state.position).norm())
     }
 
     fn state(&self, answer: &State, canonical: bool, elements: Option<&Elements>) -> ConvertedState {

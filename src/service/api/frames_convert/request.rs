@@ -2,7 +2,6 @@ use std::time::Duration;
 
 use mechanics::elements::Elements;
 use mechanics::frame::NotCanonical;
-use mechanics::state::State;
 
 use super::convert::{Given, Target};
 use crate::config::Limits;
@@ -83,12 +82,13 @@ impl FramesConvertRequest {
         let about = to.as_ref().and_then(|to| to.elements_about);
         let mu = from.system.mass_parameter();
         let states = states?.check(at, |state, places| {
-            let state: State = from.state_in(state, places, errors)?;
+            let (frame, state) = from.state_given(state, places, errors)?;
             let x_axis = to.as_ref().map_or(from.frame.x_axis, |to| to.conventions.frame.x_axis);
-            let elements =
-                about.map(|about| Elements::from_state(mu, &state, about.into(), x_axis)).transpose();
+            let elements = about
+                .map(|about| Elements::from_state_of(frame, mu, &state, about.into(), x_axis))
+                .transpose();
             match elements {
-                Ok(elements) => Some(Given { state, elements }),
+                Ok(elements) => Some(Given { frame, state, elements }),
                 Err(error) => {
                     places.report("position", "", error.to_string(), errors);
                     None

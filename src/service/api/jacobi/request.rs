@@ -1,5 +1,6 @@
 use std::time::Duration;
 
+use mechanics::frame::{Frame, Origin};
 use mechanics::potential::JacobiConstant;
 use mechanics::state::State;
 
@@ -31,9 +32,18 @@ request! {
 pub(crate) struct Task {
     pub(super) conventions: Conventions,
     pub(super) form: JacobiForm,
-    /// Each with the constant of rest at its position.
-    pub(super) states: Vec<(State, JacobiConstant)>,
+    pub(super) states: Vec<Subject>,
     pub(super) wall_time: Duration,
+}
+
+/// A state, in rotating axes.
+#[derive(Debug)]
+pub(crate) struct Subject {
+    /// Where its position is counted from: the origin it was given from, so that no digit is lost near a primary.
+    pub(super) origin: Origin,
+    pub(super) state: State,
+    /// The constant of rest at its position.
+    pub(super) at_rest: JacobiConstant,
 }
 
 impl JacobiRequest {
@@ -45,9 +55,11 @@ impl JacobiRequest {
         let conventions = conventions?;
         let mu = conventions.system.mass_parameter();
         let states = states?.check(at, |state, places| {
-            let state = conventions.state_in(state, places, errors)?;
-            match JacobiConstant::at_rest(mu, &state.position) {
-                Ok(at_rest) => Some((state, at_rest)),
+            let (frame, state) = conventions.state_given(state, places, errors)?;
+            let origin = frame.origin;
+            let state = frame.convert(Frame { origin, ..Frame::default() }, mu, &state);
+            match JacobiConstant::at_rest_from(origin, mu, &state.position) {
+                Ok(at_rest) => Some(Subject { origin, state, at_rest }),
                 Err(at_primary) => {
                     places.report("position", "", at_primary.to_string(), errors);
                     None

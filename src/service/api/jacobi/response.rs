@@ -1,11 +1,12 @@
 use mechanics::equilibria::{Equilibria, Point};
+use mechanics::frame::Frame;
 use mechanics::hill::{self, OpenPassages};
 use mechanics::potential::{self, JacobiConstant};
-use mechanics::state::State;
 use mechanics::units::Scale;
 use serde::Serialize;
 use utoipa::ToSchema;
 
+use super::request::Subject;
 use crate::decode::choices;
 use crate::wire::{Conventions, JacobiForm};
 
@@ -107,13 +108,13 @@ impl JacobiAnswer {
         conventions: Conventions,
         jacobi_form: JacobiForm,
         equilibria: &Equilibria,
-        given: &[(State, JacobiConstant)],
+        given: &[Subject],
         states: Vec<Energetics>,
     ) -> Self {
         let energy = conventions.scale.energy();
-        let departures = given
-            .iter()
-            .map(|(state, at_rest)| at_rest.moving(&state.velocity).departure_from_definition(state));
+        let departures = given.iter().map(|Subject { origin, state, at_rest }| {
+            at_rest.moving(&state.velocity).departure_from_definition(*origin, state)
+        });
         Self {
             evidence: JacobiEvidence {
                 largest_departure_from_definition: departures.fold(0.0, f64::max),
@@ -129,14 +130,16 @@ impl JacobiAnswer {
 
 impl Energetics {
     pub(super) fn new(
-        (state, at_rest): &(State, JacobiConstant),
+        Subject { origin, state, at_rest }: &Subject,
         equilibria: &Equilibria,
         scale: &Scale,
         form: potential::JacobiForm,
     ) -> Self {
         let constant = at_rest.moving(&state.velocity);
-        let distances = potential::distances(equilibria.mass_parameter(), &state.position);
-        let region = hill::Region::of(equilibria, &state.position);
+        let mu = equilibria.mass_parameter();
+        let distances = potential::distances_from(*origin, mu, &state.position);
+        let frame = Frame { origin: *origin, ..Frame::default() };
+        let region = hill::Region::of(equilibria, &frame.to_default(mu, state).position);
         let open = OpenPassages::at(equilibria, &constant);
         let energy = scale.energy();
         Self {

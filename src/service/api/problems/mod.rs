@@ -1,10 +1,10 @@
 //! `GET /problems/{slug}`: what a kind of problem means, for a person.
 
-use axum::extract::Path;
 use axum::response::Response;
 use http::HeaderMap;
 
 use crate::answer::{Document, negotiation::negotiate};
+use crate::extract::Segment;
 use crate::problem::{Problem, Slug};
 
 const HTML: &str = "text/html; charset=utf-8";
@@ -17,7 +17,7 @@ const TEXT: &str = "text/plain; charset=utf-8";
     params(("slug" = String, Path, description = "Last segment of a problem's `type`", example = "invalid-request")),
     responses((status = 200, description = "The explanation",
         content((String = "text/html"), (String = "text/plain")))))]
-pub(crate) async fn problem(Path(slug): Path<String>, headers: HeaderMap) -> Result<Response, Problem> {
+pub(crate) async fn problem(Segment(slug): Segment, headers: HeaderMap) -> Result<Response, Problem> {
     let known = Slug::ALL.iter().find(|known| known.name() == slug);
     let slug = *known.ok_or_else(|| {
         let names: Vec<&str> = Slug::ALL.iter().map(|known| known.name()).collect();
