@@ -1,7 +1,9 @@
 //! The `synodia` program.
 
+mod demo;
 mod healthcheck;
 
+use std::fmt::Display;
 use std::io::Write;
 use std::process::ExitCode;
 
@@ -23,20 +25,16 @@ fn main() -> ExitCode {
             Err(error) => fail(&error),
         },
         Task::Healthcheck => healthcheck::run(config.listen),
-        Task::Demo => fail(&"the demonstration is not part of this build"),
+        Task::Demo => on_runtime(demo::run(config)),
     }
 }
 
 fn serve(config: Config) -> ExitCode {
-    let runtime = match tokio::runtime::Builder::new_multi_thread().enable_all().build() {
-        Ok(runtime) => runtime,
-        Err(error) => return fail(&error),
-    };
     let logs = match telemetry::start(&config.log) {
         Ok(logs) => logs,
         Err(error) => return fail(&error),
     };
-    let served = runtime.block_on(async {
+    let served = on_runtime(async {
         let listener = tokio::net::TcpListener::bind(config.listen).await?;
         let address = listener.local_addr()?;
         let (app, router) = api::start(config)?;
@@ -49,15 +47,25 @@ fn serve(config: Config) -> ExitCode {
         );
         server::serve(listener, app, router).await
     });
-    runtime.shutdown_background();
     drop(logs);
-    match served {
+    served
+}
+
+/// Runs the program's asynchronous part, and leaves what still computes afterwards to the end of the process.
+fn on_runtime<E: Display>(part: impl Future<Output = Result<(), E>>) -> ExitCode {
+    let runtime = match tokio::runtime::Builder::new_multi_thread().enable_all().build() {
+        Ok(runtime) => runtime,
+        Err(error) => return fail(&error),
+    };
+    let ended = runtime.block_on(part);
+    runtime.shutdown_background();
+    match ended {
         Ok(()) => ExitCode::SUCCESS,
         Err(error) => fail(&error),
     }
 }
 
-fn fail(error: &dyn std::fmt::Display) -> ExitCode {
+fn fail(error: &dyn Display) -> ExitCode {
     let _ = writeln!(std::io::stderr(), "synodia: {error}");
     ExitCode::FAILURE
 }

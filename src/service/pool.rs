@@ -106,11 +106,12 @@ fn run<T>(
     if context.watch.poll() == Some(Stop::Cancelled) {
         return;
     }
+    tracing::debug!("computation begun");
     let outcome = catch_unwind(AssertUnwindSafe(|| work(context)));
+    drop(permit);
     if context.watch.is_cancelled() {
         tracing::debug!(polls = context.watch.polls(), "computation cancelled");
     }
-    drop(permit);
     let _ = answer.send(outcome);
 }
 

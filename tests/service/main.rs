@@ -3,6 +3,7 @@
 
 mod configuration;
 mod decoding;
+mod demo;
 mod dependencies;
 mod documents;
 mod equilibria;
