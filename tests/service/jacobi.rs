@@ -243,7 +243,11 @@ fn a_hundred_thousand_states_and_no_more() {
     let (_, states) = text.split_once("\"states\":[").unwrap();
     let each = states.trim_end_matches("]}").split("},{").map(|state| state.trim_matches(['{', '}']));
     let expected = alone.trim_matches(['{', '}']);
-    assert_eq!(each.filter(|state| *state == expected).count(), 100_000, "the same bits alone and in a batch");
+    assert_eq!(
+        each.filter(|state| *state == expected).count(),
+        100_000,
+        "the same bits alone and in a batch"
+    );
     let reply = service.post(POST, &columns(100_001));
     reply.has_fault("work-limit", "pointer", "/states", "at most 100000 states");
     let fault = &reply.json()["errors"][0];
