@@ -57,7 +57,7 @@ def test_state_transition_matrix(service, case):
     found = np.array(trajectory["state_transition_matrix"])
     scale = np.abs(matrix).max()
     assert np.abs(found - matrix).max() <= 1e-9 * scale
-    assert trajectory["evidence"]["determinant_defect"] < 1e-15 * scale**2 + 1e-12
+    assert trajectory["evidence"]["determinant_defect"] < 1e-14 * scale**2
 
 
 def test_matrices_of_samples_in_an_inertial_frame_and_physical_units(service):

@@ -61,7 +61,7 @@ request! {
 }
 
 request! {
-    /// A constant of the catalogue and its source; ignored.
+    /// A constant of the catalogue, as answers give it; ignored.
     pub(crate) struct SourceSpec {
         /// Which constant.
         optional constant: Text,
