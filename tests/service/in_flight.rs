@@ -55,6 +55,8 @@ fn a_full_queue_is_told_and_cheap_answers_still_come() {
 fn a_client_that_goes_away_stops_its_computation() {
     let (server, waiting) = busy(&endless(), &[]);
     drop(waiting);
+    let line = server.log(|line| line["outcome"] == "client_gone");
+    assert_eq!((line["path"].as_str(), line["status"].as_u64()), (Some(PATH), Some(499)));
     let line = server.log(|line| line["message"] == "computation cancelled");
     assert!(line["polls"].as_u64().unwrap() > 0);
     // Its place is free again before the line is written.

@@ -27,7 +27,11 @@ struct Own {
     app: App,
 }
 
-/// `POST /length` answers the body's length; `POST /hold` computes until it is told to stop; `GET /panic` panics.
+/// More than the buffers between a server and a client that does not read can take.
+const LARGE: usize = 256 << 20;
+
+/// `POST /length` answers the body's length; `POST /hold` computes until it is told to stop; `GET /panic` panics;
+/// `GET /large` has more to say than a client may want to hear.
 fn own(config: Config) -> Own {
     let (begin, begun) = mpsc::channel();
     let (end, ended) = mpsc::channel();
@@ -54,6 +58,7 @@ fn own(config: Config) -> Own {
     let router = Router::new()
         .route("/hold", post(async move |state: State<App>, body: Submission| hold(state, body).await))
         .route("/length", post(length))
+        .route("/large", get(async || "x".repeat(LARGE)))
         .route("/panic", get(async || -> &'static str { panic!("planned") }))
         .layer(from_fn_with_state(app.clone(), observe))
         .with_state(app.clone());
@@ -202,6 +207,20 @@ fn heads_have_a_limit() {
     let long = "x".repeat(100_000);
     assert_eq!(server.get_with("/livez", &format!("x: {long}\r\n")).status, 431);
     assert_eq!(server.get_with("/livez", &"x: y\r\n".repeat(200)).status, 431);
+}
+
+#[test]
+fn a_client_that_does_not_read_is_cut_off() {
+    let own = with(|config| config.times.send = std::time::Duration::from_millis(200));
+    let mut stream = connect(own.address);
+    stream.write_all(b"GET /large HTTP/1.1\r\nhost: t\r\n\r\n").unwrap();
+    // Writing fails once the server has closed the connection; as long as it is open, this goes on.
+    let patience = (PATIENCE.as_millis() / 10) as usize;
+    let closed = (0..patience).any(|_| {
+        std::thread::sleep(std::time::Duration::from_millis(10));
+        stream.write_all(b"x").is_err()
+    });
+    assert!(closed);
 }
 
 #[test]

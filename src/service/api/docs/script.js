@@ -11,13 +11,17 @@ function element(name, attributes = {}, ...children) {
   return made;
 }
 
-/** Paragraphs, **bold** and `code` of a description. */
-function prose(text) {
-  const inline = (part) => part.split(/(\*\*[^*]+\*\*|`[^`]+`)/).map((piece) => {
+/** **Bold** and `code` of a description. */
+function inline(text) {
+  return (text || "").split(/(\*\*[^*]+\*\*|`[^`]+`)/).map((piece) => {
     if (piece.startsWith("**")) return element("strong", {}, piece.slice(2, -2));
     if (piece.startsWith("`")) return element("code", {}, piece.slice(1, -1));
     return piece;
   });
+}
+
+/** The paragraphs and lists of a description. */
+function prose(text) {
   return (text || "").split(/\n{2,}/).filter(Boolean).map((part) => {
     const lines = part.split("\n");
     if (lines.every((line) => line.startsWith("- "))) {
@@ -29,6 +33,9 @@ function prose(text) {
 
 const TOKEN = /"(?:[^"\\]|\\.)*"|-?\d[\d.eE+-]*|true|false|null|[{}[\],:]/g;
 
+/** What fits in so many characters stays on one line. */
+const WIDTH = 76;
+
 /** A JSON text laid out anew, every token exactly as it came: a number read and written again might not be. */
 function layout(text) {
   const tokens = text.match(TOKEN) || [];
@@ -36,11 +43,13 @@ function layout(text) {
   let depth = 0;
   const line = () => out.push(["", "\n" + "  ".repeat(depth)]);
   const short = (from) => {
+    let open = 0;
     let size = 0;
-    for (let at = from + 1; at < tokens.length && size < 88; at += 1) {
-      if (tokens[at] === "]") return true;
-      if (tokens[at] === "[" || tokens[at] === "{") return false;
-      size += tokens[at].length + 1;
+    for (let at = from; at < tokens.length && size < WIDTH; at += 1) {
+      size += tokens[at].length + (tokens[at] === "," || tokens[at] === ":" ? 1 : 0);
+      if (tokens[at] === "[" || tokens[at] === "{") open += 1;
+      if (tokens[at] === "]" || tokens[at] === "}") open -= 1;
+      if (open === 0) return size < WIDTH;
     }
     return false;
   };
@@ -48,7 +57,7 @@ function layout(text) {
   tokens.forEach((token, at) => {
     const inner = flat.at(-1);
     if (token === "{" || token === "[") {
-      flat.push(token === "[" && short(at));
+      flat.push(inner || short(at));
       out.push(["", token]);
       depth += 1;
       if (!flat.at(-1) && tokens[at + 1] !== "}" && tokens[at + 1] !== "]") line();
@@ -86,6 +95,7 @@ const follow = (api, schema) => {
 function kind(api, given, deep = 0) {
   const schema = follow(api, given) || {};
   if (schema.enum) return schema.enum.length > 8 ? "one of " + schema.enum.length + " names" : schema.enum.map((name) => JSON.stringify(name)).join(" | ");
+  if (schema.type === "null") return "null";
   const either = schema.anyOf || schema.oneOf;
   if (either) return [...new Set(either.map((one) => kind(api, one, deep + 1)))].filter((one) => one !== "null").join(" or ");
   const types = [schema.type].flat().filter((type) => type && type !== "null");
@@ -119,7 +129,7 @@ function members(api, schema) {
       return element("tr", {},
         element("td", {}, element("code", {}, name), need ? element("span", { class: "need" }, "required") : null),
         element("td", {}, kind(api, member)),
-        element("td", {}, follow(api, member)?.description || "", inner.length ? more : null));
+        element("td", {}, ...inline(follow(api, member)?.description), inner.length ? more : null));
     });
     const head = ["Member", "Type", "Meaning"].map((text) => element("th", { scope: "col" }, text));
     return element("table", {}, element("thead", {}, element("tr", {}, ...head)), element("tbody", {}, ...rows));
@@ -134,10 +144,17 @@ function trial(api, method, path, operation) {
   const area = content && element("textarea", { id: `body-${id}`, spellcheck: "false", autocomplete: "off", rows: Math.min(28, example.split("\n").length + 1) });
   if (area) area.value = example;
   const inputs = (operation.parameters || []).map((parameter) => {
-    const input = element("input", { id: `${id}-${parameter.name}`, autocomplete: "off" });
+    const names = follow(api, parameter.schema)?.enum;
+    const attributes = { id: `${id}-${parameter.name}`, autocomplete: "off" };
+    const input = names
+      ? element("select", attributes, ...["", ...names].map((name) => element("option", {}, name)))
+      : element("input", attributes);
     input.value = parameter.in === "path" ? parameter.example ?? "" : "";
-    return { parameter, input, label: element("label", { for: input.id }, parameter.name, input) };
+    return { parameter, input };
   });
+  const parameters = inputs.length ? element("table", {}, element("tbody", {}, ...inputs.map(({ parameter, input }) => element("tr", {},
+    element("td", {}, element("label", { for: input.id }, element("code", {}, parameter.name))), element("td", {}, input),
+    element("td", {}, ...inline(parameter.description)))))) : null;
   const types = Object.keys(operation.responses?.["200"]?.content || {});
   const accept = types.length > 1 && element("select", { id: `accept-${id}` }, ...types.map((type) => element("option", {}, type)));
 
@@ -208,9 +225,9 @@ function trial(api, method, path, operation) {
       try { JSON.parse(area.value); note.textContent = ""; } catch (error) { note.textContent = error.message; }
     });
   }
-  const row = element("div", { class: "row" }, ...inputs.map(({ label }) => label), accept || null, send, reset, curl, note);
+  const row = element("div", { class: "row" }, accept || null, send, reset, curl, note);
   const answer = element("div", { class: "answer" }, status, more, body);
-  if (!area) return element("div", { class: "try plain" }, element("div", {}, row, answer));
+  if (!area) return element("div", { class: "try plain" }, element("div", {}, parameters, row, answer));
   const label = element("label", { for: area.id, class: "hidden" }, `Body of ${path}`);
   return element("div", { class: "try" }, element("div", {}, label, area, row), answer);
 }
@@ -218,9 +235,6 @@ function trial(api, method, path, operation) {
 function operation(api, method, path, item) {
   const badge = element("span", { class: `method ${method}` }, method.toUpperCase());
   const parts = [];
-  for (const parameter of item.parameters || []) {
-    parts.push(element("p", {}, element("code", {}, parameter.name), ` ${parameter.description || ""}`));
-  }
   const request = item.requestBody?.content?.["application/json"]?.schema;
   if (request) parts.push(element("details", {}, element("summary", {}, "Members of the request"), ...members(api, request)));
   const answer = item.responses?.["200"]?.content?.["application/json"]?.schema;
