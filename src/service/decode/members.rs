@@ -60,6 +60,15 @@ impl<T> Field<T> {
         }
     }
 
+    /// This member, or `other` if it is absent.
+    #[must_use]
+    pub fn before(self, other: Self) -> Self {
+        match self {
+            Self::Absent => other,
+            Self::Faulty | Self::Given(_) => self,
+        }
+    }
+
     /// Whether the member is not there.
     #[must_use]
     pub fn is_absent(&self) -> bool {

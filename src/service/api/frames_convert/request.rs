@@ -21,9 +21,13 @@ request! {
         required system: SystemSpec,
         /// The states.
         required states: StatesSpec,
-        /// What the states are in; normalised units and the default frame if absent.
+        /// Units where `from` or `to` says none; normalised if absent.
+        optional units: UnitsSpec,
+        /// Frame where `from` or `to` says none; rotating, barycentric, x toward the smaller primary if absent.
+        optional frame: FrameSpec,
+        /// What the states are in.
         optional from: FramesConvertFrom,
-        /// What to give them in; normalised units, the default frame and velocities if absent.
+        /// What to give them in; velocities if absent.
         optional to: FramesConvertTo,
         /// How much the computation may take.
         optional limits: LimitsSpec,
@@ -33,9 +37,9 @@ request! {
 request! {
     /// What the given states are in.
     pub(crate) struct FramesConvertFrom {
-        /// Units; normalised if absent.
+        /// Units; those of the request if absent.
         optional units: UnitsSpec,
-        /// Frame; rotating, barycentric, x toward the smaller primary if absent.
+        /// Frame; that of the request if absent.
         optional frame: FrameSpec,
     }
 }
@@ -43,9 +47,9 @@ request! {
 request! {
     /// What to give the states in.
     pub(crate) struct FramesConvertTo {
-        /// Units; normalised if absent.
+        /// Units; those of the request if absent.
         optional units: UnitsSpec,
-        /// Frame; rotating, barycentric, x toward the smaller primary if absent.
+        /// Frame; that of the request if absent.
         optional frame: FrameSpec,
         /// What goes with the positions: velocities if absent, or canonical momenta, which need rotating axes about the
         /// barycentre.
@@ -73,8 +77,9 @@ impl FramesConvertRequest {
             Field::Absent => (Field::Absent, Field::Absent),
             Field::Faulty => (Field::Faulty, Field::Faulty),
         };
-        let from = Conventions::check_under(from_at, self.system.clone(), from_units, from_frame, errors);
-        let to = target(self.system, self.to, to_at, errors);
+        let both = Both { units: self.units, frame: self.frame };
+        let from = both.conventions(from_at, self.system.clone(), from_units, from_frame, errors);
+        let to = target(self.system, both, self.to, to_at, errors);
 
         let at = Path::ROOT.member("states");
         let states = self.states.given().and_then(|states| states.at_most(limits.states, at, errors));
@@ -99,22 +104,46 @@ impl FramesConvertRequest {
     }
 }
 
+/// Units and frame of the whole request.
+#[derive(Clone, Copy)]
+struct Both {
+    units: Field<UnitsSpec>,
+    frame: Field<FrameSpec>,
+}
+
+impl Both {
+    /// What the object `at` says, and where it says nothing, what the request says.
+    fn conventions(
+        self,
+        at: Path<'_>,
+        system: Field<SystemSpec>,
+        units: Field<UnitsSpec>,
+        frame: Field<FrameSpec>,
+        errors: &mut Errors,
+    ) -> Option<Conventions> {
+        let at = if units.is_absent() { Path::ROOT } else { at };
+        Conventions::check_under(at, system, units.before(self.units), frame.before(self.frame), errors)
+    }
+}
+
 fn target(
     system: Field<SystemSpec>,
+    both: Both,
     to: Field<FramesConvertTo>,
     at: Path<'_>,
     errors: &mut Errors,
 ) -> Option<Target> {
     let Some(to) = to.optional()? else {
-        let conventions = Conventions::check(system, Field::Absent, Field::Absent, errors)?;
+        let conventions = both.conventions(at, system, Field::Absent, Field::Absent, errors)?;
         return Some(Target { conventions, variables: Variables::Velocity, elements_about: None });
     };
     let variables = to.variables.or(Variables::Velocity);
-    let canonical = to.frame.or(FrameSpec::default()).is_none_or(|FrameSpec(frame)| frame.is_canonical());
+    let frame = to.frame.before(both.frame).or(FrameSpec::default());
+    let canonical = frame.is_none_or(|FrameSpec(frame)| frame.is_canonical());
     if variables == Some(Variables::Momentum) && !canonical {
         errors.push(at.member("variables"), NotCanonical.to_string());
     }
-    let conventions = Conventions::check_under(at, system, to.units, to.frame, errors);
+    let conventions = both.conventions(at, system, to.units, to.frame, errors);
     Some(Target {
         conventions: conventions?,
         variables: variables?,

@@ -105,7 +105,7 @@ impl Decode for WhenSpec {
 impl utoipa::PartialSchema for WhenSpec {
     fn schema() -> RefOr<Schema> {
         let keyed = |name: &str, schema: RefOr<Schema>, description: &str| {
-            super::request::keyed(name, with_description(schema, description))
+            super::span::keyed(name, with_description(schema, description))
         };
         let one = OneOfBuilder::new()
             .item(keyed(

@@ -4,6 +4,7 @@ mod events;
 mod request;
 mod response;
 mod solve;
+mod span;
 
 use axum::extract::State;
 

@@ -9,8 +9,8 @@ use nalgebra::{Matrix6, Vector3};
 use serde::{Serialize, Serializer};
 use utoipa::ToSchema;
 
-use super::request::{DurationSpec, SamplesSpec};
 use super::solve::Task;
+use super::span::{DurationSpec, SamplesSpec};
 use crate::wire::{FrameEcho, StateEcho, SystemEcho, UnitsEcho};
 
 /// What was computed.

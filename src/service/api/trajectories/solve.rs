@@ -5,8 +5,9 @@ use std::time::Duration;
 
 use mechanics::propagation::{Failure, Outcome, Request, SampleBudget, Trajectory, propagate};
 
-use super::request::{DurationSpec, SamplesSpec, TrajectoriesRequest};
+use super::request::TrajectoriesRequest;
 use super::response::{Solution, outcome_name};
+use super::span::{DurationSpec, SamplesSpec};
 use crate::answer::Effort;
 use crate::config::Limits;
 use crate::decode::{Errors, Path};
