@@ -5,7 +5,7 @@
 /// whole request names the file with its example. Members of the contract that this server refuses are listed as
 /// `not_offered`.
 ///
-/// ```ignore
+/// ```text
 /// request! {
 ///     /// What the Jacobi constant is asked of.
 ///     #[example("example.json")]
@@ -90,7 +90,7 @@ macro_rules! request {
 /// A choice among names: the enum, its decoder, its serialisation and its schema, and the way to and from the
 /// computation's enum of the same variants where one is given.
 ///
-/// ```ignore
+/// ```text
 /// choices! {
 ///     /// Whether the axes turn with the primaries.
 ///     pub enum Axes = mechanics::frame::Axes { Rotating = "rotating", Inertial = "inertial" }
