@@ -12,13 +12,17 @@ use super::watch::{Hit, Stretch, Watch};
 use super::{Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Trajectory};
 use crate::arithmetic::sum::Compensated;
 use crate::interrupt::{Interrupt, Stop};
-use crate::quantity::Quantity;
+use crate::quantity::{Distance, Quantity};
 use crate::state::State;
 use crate::system::Primary;
 use crate::taylor::{self, STEP_FLOOR, Series};
 
 /// Steps between two polls: a tenth of a millisecond with a matrix, less without.
 const STEPS_PER_POLL: u64 = 64;
+/// A start this near to a surface is on it: coordinates of the order of 1 are rounded to about this.
+const SURFACE: f64 = 8.0 * f64::EPSILON;
+/// Numbers of an event in the answer: which, its time, position and velocity.
+const VALUES_PER_EVENT: u64 = 8;
 /// Samples between two polls, where one step holds many.
 const SAMPLES_PER_POLL: usize = 1024;
 
@@ -196,20 +200,23 @@ impl<'a> Course<'a> {
                 return Ok(ControlFlow::Break(Outcome::StepLimit));
             }
             taylor::expand(self.request.primaries(), &self.state, &mut self.series);
-            self.measure(self.series.jacobi);
             let remaining = target.minus(self.elapsed);
             let step = self.request.step_size().from_log2_radius(self.series.log2_radius);
             let last = step >= remaining.abs();
             // Written so that a step that is no number counts as too small.
-            if !(last || step >= STEP_FLOOR) {
+            if !(self.series.is_finite() && (last || step >= STEP_FLOOR)) {
                 return Ok(ControlFlow::Break(Outcome::StepFloor));
             }
+            self.measure(self.series.jacobi);
             self.evidence.steps += 1;
             if let Some(transition) = &mut self.transition {
                 transition.expand(&self.series);
             }
             let length = if last { remaining } else { step * self.direction };
-            let stop = self.watch(length);
+            let known = self.events.len();
+            let at_end = last && target == Compensated::new(self.duration);
+            let stop = self.watch(length, at_end);
+            self.budget.take(VALUES_PER_EVENT * (self.events.len() - known) as u64)?;
             let end = stop.map_or(length, |(at, _)| at);
             self.sample_within(end, last && stop.is_none())?;
             self.advance(end);
@@ -261,9 +268,15 @@ impl<'a> Course<'a> {
     fn inside(&self) -> Option<Outcome> {
         let contact = self.request.parts().contact;
         let primaries = self.request.primaries();
-        let below = |radius: Option<crate::quantity::Distance>, centre: Compensated| {
+        let velocity = Vector3::new(self.state[3].value, self.state[4].value, self.state[5].value);
+        let below = |radius: Option<Distance>, centre: Compensated| {
             let away = Vector3::new(self.state[0].minus(centre), self.state[1].value, self.state[2].value);
-            radius.is_some_and(|radius| away.norm() < radius.get())
+            let inwards = away.dot(&velocity) * self.direction < 0.0;
+            // On the surface as far as a state's digits tell, the way it moves decides.
+            radius.is_some_and(|radius| {
+                let height = away.norm() - radius.get();
+                if height.abs() <= SURFACE { inwards } else { height < 0.0 }
+            })
         };
         if below(contact.larger, primaries.larger_x()) {
             Some(Outcome::ContactLarger)
@@ -285,13 +298,10 @@ impl<'a> Course<'a> {
         if let Some(transition) = &mut self.transition {
             transition.end_leg(jump.as_ref());
         }
-        for watch in &mut self.watches {
-            watch.jumped();
-        }
     }
 
     /// Records the events of a step; gives where and why the trajectory ends in it, if it does.
-    fn watch(&mut self, length: f64) -> Option<(f64, Outcome)> {
+    fn watch(&mut self, length: f64, at_end: bool) -> Option<(f64, Outcome)> {
         if self.watches.is_empty() && self.surfaces.is_empty() {
             return None;
         }
@@ -308,7 +318,7 @@ impl<'a> Course<'a> {
         let surfaces = self.surfaces.iter_mut().map(|(primary, watch)| (Found::Surface(*primary), watch));
         for (what, watch) in events.chain(surfaces) {
             hits.clear();
-            watch.scan(&stretch, roots, hits);
+            watch.scan(&stretch, at_end, roots, hits);
             found.extend(hits.iter().map(|hit| (*hit, what)));
         }
         // Stable: ties stay in the order of the entries, surfaces last.
@@ -371,7 +381,11 @@ impl<'a> Course<'a> {
             }
             Sampling::None | Sampling::EveryStep => return None,
         };
-        Some((Compensated::new(since), self.start + since))
+        let time = self.start + since;
+        // Between the ends the instant is the one that the answer tells, so that it compares with manoeuvres' times.
+        let inside = since.abs() < self.duration.abs();
+        let since = if inside { self.request.since_start(self.index, time) } else { Compensated::new(since) };
+        Some((since, time))
     }
 
     /// The planned samples up to `end` of the step under way, without those of its very end if a leg ends there.

@@ -108,15 +108,15 @@ pub enum Failure {
     /// Nobody waits for it.
     #[error("the computation was cancelled")]
     Cancelled,
-    /// Samples at every step, whose number shows only on the way, came to more than was granted.
-    #[error("the samples hold more than {limit} values")]
+    /// Samples at every step and events, whose number shows only on the way, came to more than was granted.
+    #[error("samples and events hold more than {limit} values")]
     TooManySamples {
         /// The values granted.
         limit: u64,
     },
 }
 
-/// What all trajectories of a request may hold together.
+/// What the samples and events of all trajectories of a request may hold together.
 #[derive(Debug)]
 pub struct SampleBudget {
     left: AtomicU64,

@@ -377,6 +377,12 @@ impl Request {
 
     fn check_manoeuvres(&self, problems: &mut Vec<Invalid>) {
         let states = self.count();
+        // What all trajectories have in common is looked at once, not for each manoeuvre.
+        let common =
+            (0..states).map(|t| self.ends(t)).fold((f64::MIN, f64::MAX), |(low, high), (from, to)| {
+                (low.max(from.min(to)), high.min(from.max(to)))
+            });
+        let first_backwards = (0..states).find(|t| self.duration(*t) < 0.0);
         for (index, manoeuvre) in self.parts.manoeuvres.iter().enumerate() {
             for (place, &trajectory) in manoeuvre.trajectories.iter().flatten().enumerate() {
                 if trajectory >= states {
@@ -384,20 +390,22 @@ impl Request {
                 }
             }
             let time = manoeuvre.time;
-            let everyone: Vec<usize>;
-            let concerned = if let Some(list) = &manoeuvre.trajectories {
-                list
-            } else {
-                everyone = (0..states).collect();
-                &everyone
+            let outside = |t: &usize| !self.holds(*t, time);
+            let backwards = |t: &usize| self.duration(*t) < 0.0;
+            let (outside, backwards) = match &manoeuvre.trajectories {
+                Some(list) => {
+                    let own = || list.iter().copied().filter(|t| *t < states);
+                    (own().find(outside), own().find(backwards))
+                }
+                None if time >= common.0 && time <= common.1 => (None, first_backwards),
+                None => ((0..states).find(outside), first_backwards),
             };
-            let mut concerned = concerned.iter().copied().filter(|t| *t < states);
-            if let Some(trajectory) = concerned.clone().find(|&t| !self.holds(t, time)) {
+            if let Some(trajectory) = outside {
                 let (from, to) = self.ends(trajectory);
                 problems.push(Invalid::ManoeuvreOutside { index, time, trajectory, from, to });
             }
             if manoeuvre.axes == BurnAxes::VelocityNormalBinormal
-                && let Some(trajectory) = concerned.find(|&t| self.duration(t) < 0.0)
+                && let Some(trajectory) = backwards
             {
                 problems.push(Invalid::ManoeuvreBackwards { index, trajectory });
             }

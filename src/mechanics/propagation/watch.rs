@@ -16,12 +16,19 @@ use crate::taylor::{self, Primaries, Series, TERMS};
 /// Values this many round-offs of the largest term from zero have no certain sign.
 const NOISE: f64 = 8.0 * f64::EPSILON;
 
+/// What a polynomial leaves out, in terms of the last two it keeps: more than a geometric series leaves at the loosest
+/// tolerance.
+const BEYOND: f64 = 4.0;
+
 /// Zeros this close to the start of a trajectory are the start's own, so that a trajectory can go on from an
 /// event that another one ended at.
 const START: f64 = 1e-12;
 
 /// Newton steps on the function itself, from a root already good to the polynomial's truncation.
-const POLISHES: usize = 2;
+const POLISHES: usize = 4;
+
+/// A Newton step longer than this share of the step is no refinement: the function touches zero there.
+const LONGEST_POLISH: f64 = 0.01;
 
 /// The stretch between two steps, as the search sees it.
 pub(super) struct Stretch<'a> {
@@ -126,19 +133,28 @@ impl Watch {
         Self { function, side: 0.0, wanted }
     }
 
-    /// Appends the occurrences in a step, in the order of the integration.
-    pub(super) fn scan(&mut self, stretch: &Stretch, scratch: &mut Vec<f64>, hits: &mut Vec<Hit>) {
+    /// Appends the occurrences in a step, in the order of the integration. A function that comes to zero at the end of
+    /// the step is left to the next one, but `at_end` of a trajectory there is none.
+    pub(super) fn scan(
+        &mut self,
+        stretch: &Stretch,
+        at_end: bool,
+        scratch: &mut Vec<f64>,
+        hits: &mut Vec<Hit>,
+    ) {
         let composed = self.function.compose(stretch);
         scratch.clear();
-        let mut side = if self.side == 0.0 { 0.0 } else { self.side };
-        let end = roots::sign_changes(&composed, side, scratch);
-        let direction = stretch.length.signum();
-        // Each change flips the side; the last one leaves `end`.
-        if scratch.len() % 2 == 1 {
-            side = -end;
-        } else if side == 0.0 {
-            side = end;
+        let mut end = roots::sign_changes(&composed, self.side, scratch);
+        if at_end {
+            let (value, slope) = roots::value_and_slope(&composed.polynomial, 1.0);
+            if value.abs() <= composed.noise && slope * end < 0.0 {
+                scratch.push(1.0);
+                end = -end;
+            }
         }
+        // Each change flips the side; the last one leaves `end`.
+        let mut side = if scratch.len() % 2 == 1 { -end } else { end };
+        let direction = stretch.length.signum();
         for &root in &*scratch {
             let rate = -side * direction;
             side = -side;
@@ -151,13 +167,6 @@ impl Watch {
             }
         }
         self.side = end;
-    }
-
-    /// Forgets the side after a manoeuvre that made the function jump.
-    pub(super) fn jumped(&mut self) {
-        if matches!(self.function, Function::RadialRate { .. }) {
-            self.side = 0.0;
-        }
     }
 }
 
@@ -180,6 +189,8 @@ impl Function {
     fn compose(&self, stretch: &Stretch) -> Composed {
         let polynomial;
         let magnitude;
+        // The order that the polynomial is cut after, where it is cut.
+        let cut;
         match self {
             Self::Plane { normal, offset, origin, turning } => {
                 let start = position_from(stretch.state, *origin);
@@ -203,7 +214,9 @@ impl Function {
                         if k == 0 { height - offset } else { height }
                     });
                 }
-                magnitude = normal.abs().dot(&start.abs()) + offset.abs();
+                let reach = normal.abs().dot(&start.abs());
+                magnitude = reach + offset.abs() + if *turning { reach * stretch.time.abs() } else { 0.0 };
+                cut = turning.then_some(TERMS - 1);
             }
             Self::Distance { primary, radius } => {
                 let half_square = stretch.half_square(*primary);
@@ -214,6 +227,7 @@ impl Function {
                     _ => 0.0,
                 });
                 magnitude = half_square(0);
+                cut = Some(TERMS - 3);
             }
             Self::RadialRate { primary } => {
                 let half_square = stretch.half_square(*primary);
@@ -222,10 +236,12 @@ impl Function {
                 polynomial = stretch.scaled(of);
                 let speed: f64 = stretch.state[3..].iter().map(|v| v.value.abs()).sum();
                 magnitude = (2.0 * half_square(0)).sqrt() * speed;
+                cut = Some(TERMS - 4);
             }
         }
         let terms: f64 = polynomial.iter().map(|c| c.abs()).sum();
-        Composed { polynomial, noise: NOISE * (terms + magnitude) }
+        let beyond = cut.map_or(0.0, |last| polynomial[last].abs() + polynomial[last - 1].abs());
+        Composed { polynomial, noise: NOISE * (terms + magnitude) + BEYOND * beyond }
     }
 
     /// The function itself.
@@ -260,10 +276,13 @@ impl Function {
             let correction = self.value(stretch, at) / slope;
             let better = at - correction;
             let inside = better / stretch.length;
-            if !(correction.abs() < START && (0.0..=1.0).contains(&inside)) {
+            if !(correction.abs() < LONGEST_POLISH * stretch.length.abs() && (0.0..=1.0).contains(&inside)) {
                 break;
             }
             at = better;
+            if correction.abs() <= f64::EPSILON * at.abs() {
+                break;
+            }
         }
         at
     }

@@ -61,6 +61,14 @@ impl<R: Real> Series<R> {
     }
 }
 
+impl Series<f64> {
+    /// Whether no coefficient has overflowed: one that has spoils all later ones.
+    #[must_use]
+    pub fn is_finite(&self) -> bool {
+        self.position[TERMS - 2..].iter().all(|Quad([x, y, z, _])| (x + y + z).is_finite())
+    }
+}
+
 impl<R: Real> Default for Series<R> {
     fn default() -> Self {
         Self::new()

@@ -59,6 +59,8 @@ impl StepSize {
     #[must_use]
     pub fn from_log2_radius(&self, log2_radius: f64) -> f64 {
         // 2^±100 is far outside what is ever used, and inside what the coarse power can do.
-        (log2_radius + self.log2_fraction).clamp(-100.0, 100.0).exp2_coarse().min(MAX_STEP)
+        let step = (log2_radius + self.log2_fraction).clamp(-100.0, 100.0).exp2_coarse();
+        // Not `min`, which would make a step of what is no number.
+        if step > MAX_STEP { MAX_STEP } else { step }
     }
 }

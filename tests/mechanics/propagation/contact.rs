@@ -84,3 +84,37 @@ fn a_close_approach_loses_no_more_than_its_conditioning() {
     assert!((home.position.x - start[0]).abs() < 1e-9);
     assert!(out.evidence.jacobi_drift < 1e-10 * fast * fast, "{}", out.evidence.jacobi_drift);
 }
+
+#[test]
+fn a_start_next_to_a_centre_ends_at_the_step_floor_however_near() {
+    let mut distance = 1e-8;
+    while distance > 1e-150 {
+        for centre in [-MU, 1.0 - MU] {
+            let trajectory = run(parts(MU, [centre, distance, 0.0, 0.0, 0.0, 0.0], 1.0));
+            assert!(trajectory.last.components().iter().all(|c| c.is_finite()), "{distance}");
+            assert!(trajectory.evidence.jacobi_drift.is_finite());
+            if distance < 1e-10 {
+                assert_eq!(trajectory.outcome, Outcome::StepFloor, "{distance}");
+            }
+        }
+        distance /= 7.0;
+    }
+}
+
+#[test]
+fn a_trajectory_that_ended_on_a_surface_does_not_go_on_inside() {
+    for i in 0..100 {
+        let angle = 0.0628 * f64::from(i);
+        let start = [0.2 * libm::cos(angle) - MU, 0.2 * libm::sin(angle), 0.01, 0.0, 0.0, 0.0];
+        let mut request = parts(MU, start, 5.0);
+        request.contact = Contact { larger: Some(radius(0.0166)), smaller: Some(radius(0.0045)) };
+        let first = run(request.clone());
+        if first.outcome != Outcome::ContactLarger {
+            continue;
+        }
+        request.states[0] = first.last;
+        let second = run(request);
+        assert_eq!(second.outcome, Outcome::ContactLarger);
+        assert!(second.last.time - first.last.time < 1e-12, "{angle}");
+    }
+}

@@ -3,8 +3,8 @@
 use std::num::NonZeroU64;
 
 use mechanics::propagation::event::{Direction, Event, Only, Plane, Side, When};
-use mechanics::propagation::{Outcome, Sampling, Trajectory};
-use mechanics::quantity::{Distance, Quantity};
+use mechanics::propagation::{BurnAxes, Manoeuvre, Outcome, Sampling, Trajectory};
+use mechanics::quantity::{Distance, Duration, Quantity, Tolerance};
 use mechanics::system::Primary;
 use nalgebra::Vector3;
 use proptest::prelude::*;
@@ -137,6 +137,92 @@ fn events_are_counted_up_to_their_limit() {
     assert_eq!(trajectory.outcome, Outcome::EventLimit);
     assert_eq!(trajectory.events.len(), 7);
     assert_eq!(trajectory.last, trajectory.events[6].state);
+}
+
+const PROGRADE: [f64; 6] = [0.3, 0.0, 0.0, 0.0, 1.2, 0.0];
+
+fn apses() -> Vec<Event> {
+    vec![event(When::Periapsis(Primary::Larger)), event(When::Apoapsis(Primary::Larger))]
+}
+
+#[test]
+fn an_apsis_at_a_manoeuvre_is_not_lost() {
+    let mut request = parts(MU, PROGRADE, 8.0);
+    request.events = apses();
+    let plain = run(request.clone()).events;
+    for found in &plain {
+        for along in [0.0, 0.001, 0.05] {
+            let velocity = found.state.velocity.normalize() * along;
+            request.manoeuvres = vec![Manoeuvre {
+                time: found.state.time,
+                delta_v: velocity,
+                axes: BurnAxes::Frame,
+                trajectories: None,
+            }];
+            let burnt = run(request.clone()).events;
+            let there: Vec<_> =
+                burnt.iter().filter(|e| (e.state.time - found.state.time).abs() < 1e-9).collect();
+            assert_eq!(there.len(), 1, "{} {along}", found.state.time);
+            assert_eq!(there[0].event, found.event);
+        }
+    }
+}
+
+#[test]
+fn an_event_at_the_very_end_is_found() {
+    let mut request = parts(MU, PROGRADE, 8.0);
+    request.events = apses();
+    request.events.push(event(When::Plane(Plane::across(1, 0.0))));
+    let all = run(request.clone()).events;
+    for (index, found) in all.iter().enumerate() {
+        let duration = Duration::new(found.state.time).expect("in range");
+        request.durations = mechanics::propagation::Durations::All(duration);
+        let shorter = run(request.clone());
+        assert_eq!(shorter.events.len(), index + 1, "{}", found.state.time);
+        // And not a second time by whoever goes on.
+        let mut rest = request.clone();
+        rest.states[0] = shorter.last;
+        rest.durations = mechanics::propagation::Durations::All(Duration::new(0.05).expect("in range"));
+        let again = run(rest).events;
+        assert!(again.iter().all(|e| e.event != found.event || e.state.time - found.state.time > 1e-3));
+    }
+}
+
+#[test]
+fn an_event_at_the_end_of_a_step_is_found_once_at_every_tolerance() {
+    for tolerance in [1e-3, 1e-6, 1e-9, 1e-12, 1e-15] {
+        let mut request = parts(MU, [0.3, 0.0, 0.1, 0.0, 1.2, 0.1], 6.0);
+        request.tolerance = Tolerance::new(tolerance).expect("in range");
+        request.sampling = Sampling::EveryStep;
+        let path = run(request.clone());
+        let centre = Vector3::new(-MU, 0.0, 0.0);
+        for step_end in &path.samples.positions[1..] {
+            for offset in [-1e-4, -1e-6, -1e-8, -1e-11, 0.0, 1e-15, 1e-13, 1e-9, 1e-7, 1e-5] {
+                let radius = (step_end - centre).norm() * (1.0 + offset);
+                request.events = vec![event(When::Distance(Primary::Larger, distance(radius)))];
+                let times: Vec<f64> = run(request.clone()).events.iter().map(|e| e.state.time).collect();
+                for pair in times.windows(2) {
+                    assert!(pair[1] - pair[0] > 1e-4, "{tolerance} {offset} {pair:?}");
+                }
+            }
+        }
+    }
+}
+
+#[test]
+fn late_times_do_not_double_events_of_inertial_axes() {
+    let mut request = parts(MU, PROGRADE, 3.0);
+    request.states[0].time = 1e6;
+    request.frame.axes = mechanics::frame::Axes::Inertial;
+    request.sampling = Sampling::EveryStep;
+    let path = run(request.clone());
+    for step_end in &path.samples.positions[1..] {
+        for offset in [-1e-10, -1e-11, 0.0, 1e-12, 1e-11, 1e-10] {
+            request.events = vec![event(When::Plane(Plane::across(1, step_end.y + offset)))];
+            let times: Vec<f64> = run(request.clone()).events.iter().map(|e| e.state.time).collect();
+            assert!(times.windows(2).all(|pair| pair[1] - pair[0] > 1e-6), "{offset} {times:?}");
+        }
+    }
 }
 
 /// Sign changes of a condition between dense samples.

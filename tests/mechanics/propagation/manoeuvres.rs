@@ -59,6 +59,19 @@ fn the_state_at_a_manoeuvre_is_its_far_side() {
 }
 
 #[test]
+fn a_sample_told_for_the_time_of_a_manoeuvre_is_its_far_side() {
+    let mut request = parts(MU, [0.5, 0.0, 0.0, 0.0, 1.0, 0.0], 2.0);
+    request.states[0].time = 2.2;
+    request.sampling = Sampling::Interval(0.3);
+    let times = run(request.clone()).samples.times;
+    for (index, time) in times.iter().enumerate() {
+        request.manoeuvres = vec![burn(*time, [0.0, 0.0, 0.5])];
+        let vertical = run(request.clone()).samples.velocities[index].z;
+        assert!((vertical - 0.5).abs() < 1e-15, "{time}");
+    }
+}
+
+#[test]
 fn the_axes_are_those_of_the_frame() {
     let frame = Frame { axes: Axes::Inertial, origin: Origin::Smaller, x_axis: XAxis::TowardLarger };
     let kick = Vector3::new(0.01, 0.02, 0.03);

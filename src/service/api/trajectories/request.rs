@@ -93,9 +93,12 @@ impl TrajectoriesRequest {
         let granted = LimitsSpec::check(self.limits, limits, errors);
         let conventions = Conventions::check(self.system, self.units, self.frame, errors);
         let tolerance = self.tolerance.or_else(|| Scalar(Tolerance::constant(TOLERANCE)));
-        count_states(&self.initial_states, limits, errors);
-        at_most("events", &self.events, MOST_EVENTS, errors);
-        at_most("manoeuvres", &self.manoeuvres, MOST_MANOEUVRES, errors);
+        let few = count_states(&self.initial_states, limits, errors)
+            & at_most("events", &self.events, MOST_EVENTS, errors)
+            & at_most("manoeuvres", &self.manoeuvres, MOST_MANOEUVRES, errors);
+        if !few {
+            return None;
+        }
         // Without system, units and frame no number can be given a meaning.
         let conventions = conventions?;
         let (states, given_times) = states(self.initial_states, &conventions, errors).unzip();
@@ -151,21 +154,21 @@ impl Task {
     }
 }
 
-fn count_states(states: &Field<StatesSpec>, limits: &Limits, errors: &mut Errors) {
-    if let Field::Given(states) = states {
-        let count = states.states.len() as u64;
-        if count > limits.states {
-            errors.beyond(Path::ROOT.member("initial_states"), "states", limits.states, count);
-        }
+fn count_states(states: &Field<StatesSpec>, limits: &Limits, errors: &mut Errors) -> bool {
+    let Field::Given(states) = states else { return true };
+    let count = states.states.len() as u64;
+    if count > limits.states {
+        errors.beyond(Path::ROOT.member("initial_states"), "states", limits.states, count);
     }
+    count <= limits.states
 }
 
-fn at_most<T>(name: &str, list: &Field<Vec<T>>, most: usize, errors: &mut Errors) {
-    if let Field::Given(list) = list
-        && list.len() > most
-    {
+fn at_most<T>(name: &str, list: &Field<Vec<T>>, most: usize, errors: &mut Errors) -> bool {
+    let Field::Given(list) = list else { return true };
+    if list.len() > most {
         errors.beyond(Path::ROOT.member(name), name, most as u64, list.len() as u64);
     }
+    list.len() <= most
 }
 
 /// The states in the default frame, and the times as they were given.

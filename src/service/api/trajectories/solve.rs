@@ -3,7 +3,7 @@
 use std::sync::Arc;
 use std::time::Duration;
 
-use mechanics::propagation::{Failure, Outcome, Request, SampleBudget, Trajectory, propagate};
+use mechanics::propagation::{Failure, Outcome, Request, SampleBudget, Sampling, Trajectory, propagate};
 
 use super::request::TrajectoriesRequest;
 use super::response::{Solution, outcome_name};
@@ -62,7 +62,7 @@ impl Operation for TrajectoriesRequest {
         };
         let mut trajectories = Vec::with_capacity(task.request.count());
         for part in parts {
-            trajectories.extend(part.map_err(refused)?);
+            trajectories.extend(part.map_err(|failure| refused(failure, &task))?);
         }
         let cut_short = |t: &Trajectory| matches!(t.outcome, Outcome::WallTimeLimit | Outcome::NotStarted);
         let outcome =
@@ -73,12 +73,14 @@ impl Operation for TrajectoriesRequest {
     }
 }
 
-fn refused(failure: Failure) -> Problem {
+fn refused(failure: Failure, task: &Task) -> Problem {
     match failure {
         Failure::Cancelled => Problem::overloaded("The computation was cancelled"),
         Failure::TooManySamples { limit } => {
             let mut errors = Errors::default();
-            errors.beyond(Path::ROOT.member("samples"), "sample values", limit, limit.saturating_add(1));
+            let sampled = task.request.parts().sampling != Sampling::None;
+            let member = if sampled { "samples" } else { "events" };
+            errors.beyond(Path::ROOT.member(member), "values", limit, limit.saturating_add(1));
             errors.into()
         }
     }
