@@ -147,7 +147,11 @@ impl Watch {
         let mut end = roots::sign_changes(&composed, self.side, scratch);
         if at_end {
             let (value, slope) = roots::value_and_slope(&composed.polynomial, 1.0);
-            if value.abs() <= composed.noise && slope * end < 0.0 {
+            // The end itself is an instant rounded on the clock.
+            let instants =
+                2.0 * f64::EPSILON * (stretch.time.abs() + stretch.elapsed.abs() + stretch.length.abs());
+            let noise = composed.noise + (slope / stretch.length).abs() * instants;
+            if value.abs() <= noise && slope * end < 0.0 {
                 scratch.push(1.0);
                 end = -end;
             }
