@@ -96,6 +96,13 @@ impl Frame {
         self.axes == Axes::Rotating
     }
 
+    /// Rotating axes towards the smaller primary about the same origin: between these and this frame a position keeps
+    /// its digits however near the origin it is.
+    #[must_use]
+    pub fn co_rotating(self) -> Self {
+        Self { origin: self.origin, ..Self::default() }
+    }
+
     /// A state of the default frame in this one. The default frame keeps the bits.
     #[must_use]
     pub fn from_default(self, mass_parameter: MassParameter, state: &State) -> State {

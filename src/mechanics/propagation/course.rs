@@ -32,7 +32,7 @@ pub(super) fn not_started(request: &Request, index: usize) -> Trajectory {
     Trajectory {
         index,
         outcome: Outcome::NotStarted,
-        last: parts.frame.from_default(parts.mass_parameter, &parts.states[index]),
+        last: parts.states[index],
         stopped_by: None,
         samples: Samples::default(),
         events: Vec::new(),
@@ -97,11 +97,11 @@ impl<'a> Course<'a> {
         let parts = request.parts();
         let initial = &parts.states[index];
         let duration = request.duration(index);
-        let primaries = request.primaries();
+        let origin = request.origin_x();
         let watches: Vec<_> =
-            parts.events.iter().map(|event| Watch::new(&event.when, parts.frame, primaries)).collect();
+            parts.events.iter().map(|event| Watch::new(&event.when, parts.frame, origin)).collect();
         let surface = |(primary, radius): (Primary, Option<_>)| {
-            radius.map(|r| (primary, Watch::new(&When::Distance(primary, r), parts.frame, primaries)))
+            radius.map(|r| (primary, Watch::new(&When::Distance(primary, r), parts.frame, origin)))
         };
         let surfaces = [(Primary::Larger, parts.contact.larger), (Primary::Smaller, parts.contact.smaller)]
             .into_iter()
@@ -115,7 +115,7 @@ impl<'a> Course<'a> {
             direction: if duration < 0.0 { -1.0 } else { 1.0 },
             start: initial.time,
             duration,
-            state: std::array::from_fn(|i| Compensated::new(initial.components()[i])),
+            state: request.start_of(index),
             elapsed: Compensated::default(),
             series: Box::default(),
             transition: (parts.matrix != MatrixOutput::None).then(Transition::new),
@@ -138,8 +138,7 @@ impl<'a> Course<'a> {
             ControlFlow::Continue(()) => Outcome::Complete,
         };
         self.end_leg();
-        let frame = self.request.parts().frame;
-        let last = self.state_here();
+        let last = self.seen(self.time_here(), &[0.0; 6]);
         let matrix = self.transition.as_mut().map(|transition| {
             let (determinant, symplectic) = transition.defects();
             self.evidence.determinant_defect = Some(determinant);
@@ -149,7 +148,7 @@ impl<'a> Course<'a> {
         Ok(Trajectory {
             index: self.index,
             outcome,
-            last: frame.from_default(self.request.parts().mass_parameter, &last),
+            last,
             stopped_by: self.stopped_by,
             samples: self.samples,
             events: self.events,
@@ -290,8 +289,7 @@ impl<'a> Course<'a> {
     fn apply(&mut self, manoeuvre: &Manoeuvre) {
         self.end_leg();
         let parts = self.request.parts();
-        let here = State { time: manoeuvre.time, ..self.state_here() };
-        let (change, jump) = manoeuvre.impulse(parts.frame, parts.mass_parameter, &here);
+        let (change, jump) = manoeuvre.impulse(parts.frame, &self.seen(manoeuvre.time, &[0.0; 6]));
         for (component, change) in self.state[3..].iter_mut().zip(change.iter()) {
             *component = component.plus(change * self.direction);
         }
@@ -338,11 +336,9 @@ impl<'a> Course<'a> {
                 Found::Surface(_) => {}
                 Found::Event(entry) => {
                     let event = &parts.events[entry];
-                    let [x, y, z, vx, vy, vz] = stretch.components(hit.at);
                     let time = self.start + (self.elapsed.value + (self.elapsed.rest + hit.at));
-                    let state = parts
-                        .frame
-                        .from_default(parts.mass_parameter, &State::new(time, [x, y, z, vx, vy, vz]));
+                    let change = taylor::flow(&self.series, hit.at);
+                    let state = seen(self.request, &self.state, time, &change);
                     let admitted = event.direction.admits(hit.rate)
                         && event.only.is_none_or(|only| only.admits(&state.position));
                     if !admitted {
@@ -422,24 +418,22 @@ impl<'a> Course<'a> {
         Ok(())
     }
 
-    fn state_here(&self) -> State {
-        let time = self.start + (self.elapsed.value + self.elapsed.rest);
-        State::new(time, self.state.map(|component| component.value))
+    fn time_here(&self) -> f64 {
+        self.start + (self.elapsed.value + self.elapsed.rest)
+    }
+
+    /// The state after a change, in the request's frame.
+    fn seen(&self, time: f64, change: &[f64; 6]) -> State {
+        seen(self.request, &self.state, time, change)
     }
 
     /// The state `at` a time after the start of the step under way, 0 for the place reached.
     fn push_sample(&mut self, at: f64, time: Option<f64>) -> Result<(), Failure> {
         self.budget.take(self.request.values_per_sample())?;
-        let here = self.state_here();
-        let time = time.unwrap_or(here.time);
+        let time = time.unwrap_or(self.time_here());
         let parts = self.request.parts();
-        let components = if at == 0.0 {
-            self.state.map(|component| component.value)
-        } else {
-            let change = taylor::flow(&self.series, at);
-            std::array::from_fn(|i| self.state[i].plus(change[i]).value)
-        };
-        let seen = parts.frame.from_default(parts.mass_parameter, &State::new(time, components));
+        let change = if at == 0.0 { [0.0; 6] } else { taylor::flow(&self.series, at) };
+        let seen = self.seen(time, &change);
         self.samples.times.push(time);
         self.samples.positions.push(seen.position);
         self.samples.velocities.push(seen.velocity);
@@ -451,6 +445,17 @@ impl<'a> Course<'a> {
         }
         Ok(())
     }
+}
+
+/// A state of the default frame after a change, in the request's frame, with all the digits that it has about that
+/// frame's origin.
+fn seen(request: &Request, state: &[Compensated; 6], time: f64, change: &[f64; 6]) -> State {
+    let mut components: [f64; 6] = std::array::from_fn(|i| state[i].plus(change[i]).value);
+    let origin = request.origin_x();
+    components[0] = (state[0].value - origin.value) + ((state[0].rest - origin.rest) + change[0]);
+    let parts = request.parts();
+    let co_rotating = State::new(time, components);
+    parts.frame.co_rotating().convert(parts.frame, parts.mass_parameter, &co_rotating)
 }
 
 /// A matrix of the default frame between two instants in the request's frame.

@@ -3,7 +3,6 @@
 use nalgebra::{Matrix3, Matrix6, Vector3};
 
 use crate::frame::Frame;
-use crate::quantity::MassParameter;
 use crate::state::State;
 
 /// An impulse at an instant.
@@ -30,25 +29,19 @@ pub enum BurnAxes {
 }
 
 impl Manoeuvre {
-    /// The velocity of the default frame that is added to `state` (default frame), and d(state after)/d(state
-    /// before) there.
-    pub(super) fn impulse(
-        &self,
-        frame: Frame,
-        mass_parameter: MassParameter,
-        state: &State,
-    ) -> (Vector3<f64>, Option<Matrix6<f64>>) {
+    /// The velocity of the default frame that is added to a state, `seen` in the request's frame, and d(state
+    /// after)/d(state before) in the default one.
+    pub(super) fn impulse(&self, frame: Frame, seen: &State) -> (Vector3<f64>, Option<Matrix6<f64>>) {
         match self.axes {
-            BurnAxes::Frame => (frame.direction_to_default(state.time, &self.delta_v), None),
+            BurnAxes::Frame => (frame.direction_to_default(seen.time, &self.delta_v), None),
             BurnAxes::VelocityNormalBinormal => {
-                let seen = frame.from_default(mass_parameter, state);
                 let (change, slopes) = along_velocity(&seen.position, &seen.velocity, &self.delta_v);
                 let mut jump = Matrix6::identity();
                 jump.fixed_view_mut::<3, 3>(3, 0).copy_from(&slopes[0]);
                 jump.fixed_view_mut::<3, 3>(3, 3).copy_from(&(Matrix3::identity() + slopes[1]));
-                let to_frame = frame.jacobian(state.time);
-                let jump = frame.inverse_jacobian(state.time) * jump * to_frame;
-                (frame.direction_to_default(state.time, &change), Some(jump))
+                let to_frame = frame.jacobian(seen.time);
+                let jump = frame.inverse_jacobian(seen.time) * jump * to_frame;
+                (frame.direction_to_default(seen.time, &change), Some(jump))
             }
         }
     }

@@ -5,7 +5,7 @@ use thiserror::Error;
 use super::event::Event;
 use super::manoeuvre::{BurnAxes, Manoeuvre};
 use crate::arithmetic::sum::Compensated;
-use crate::frame::Frame;
+use crate::frame::{Frame, Origin};
 use crate::quantity::{Distance, Duration, MassParameter, Quantity, Tolerance};
 use crate::state::State;
 use crate::system::Primary;
@@ -83,9 +83,9 @@ pub struct Limits {
 pub struct RequestParts {
     /// μ.
     pub mass_parameter: MassParameter,
-    /// The frame of events, manoeuvres and results.
+    /// The frame of states, events, manoeuvres and results.
     pub frame: Frame,
-    /// Initial states, in the default frame whatever `frame` is.
+    /// Initial states.
     pub states: Vec<State>,
     /// How long each runs.
     pub durations: Durations,
@@ -233,7 +233,6 @@ impl Request {
     pub fn new(parts: RequestParts) -> Result<Self, Vec<Invalid>> {
         let mut problems = Vec::new();
         let primaries = Primaries::new(parts.mass_parameter.get());
-        check_states(&parts, &primaries, &mut problems);
         if let Durations::Each(durations) = &parts.durations
             && durations.len() != parts.states.len()
         {
@@ -242,6 +241,7 @@ impl Request {
         }
         let step_size = StepSize::new(parts.tolerance.get());
         let mut request = Self { parts, primaries, step_size };
+        request.check_states(&mut problems);
         request.check_sampling(&mut problems);
         request.check_manoeuvres(&mut problems);
         for list in request.parts.manoeuvres.iter_mut().filter_map(|m| m.trajectories.as_mut()) {
@@ -306,6 +306,40 @@ impl Request {
                     .saturating_add(1),
             ),
             Sampling::Times(times) => Some(times.len() as u64),
+        }
+    }
+
+    /// x of the frame's origin.
+    pub(super) fn origin_x(&self) -> Compensated {
+        match self.parts.frame.origin {
+            Origin::Barycenter => Compensated::default(),
+            Origin::Larger => self.primaries.larger_x(),
+            Origin::Smaller => self.primaries.smaller_x(),
+        }
+    }
+
+    /// An initial state in the default frame, with all the digits that it has about its own origin.
+    pub(super) fn start_of(&self, trajectory: usize) -> [Compensated; 6] {
+        let Self { parts, .. } = self;
+        let frame = parts.frame;
+        let given = frame.convert(frame.co_rotating(), parts.mass_parameter, &parts.states[trajectory]);
+        let mut start: [Compensated; 6] = std::array::from_fn(|i| Compensated::new(given.components()[i]));
+        let origin = self.origin_x();
+        start[0] = Compensated::sum(given.position.x, origin.value).plus(origin.rest);
+        start
+    }
+
+    fn check_states(&self, problems: &mut Vec<Invalid>) {
+        for state in 0..self.count() {
+            let [x, y, z, ..] = self.start_of(state);
+            for (primary, centre) in
+                [(Primary::Larger, self.primaries.larger_x()), (Primary::Smaller, self.primaries.smaller_x())]
+            {
+                let away = [x.minus(centre), y.value, z.value];
+                if away.iter().all(|c| c * c == 0.0) {
+                    problems.push(Invalid::OnPrimary { state, primary });
+                }
+            }
         }
     }
 
@@ -445,18 +479,4 @@ impl Request {
 /// Whether a manoeuvre, its list sorted, applies to a trajectory.
 fn concerns(manoeuvre: &Manoeuvre, trajectory: usize) -> bool {
     manoeuvre.trajectories.as_ref().is_none_or(|list| list.binary_search(&trajectory).is_ok())
-}
-
-fn check_states(parts: &RequestParts, primaries: &Primaries, problems: &mut Vec<Invalid>) {
-    for (state, initial) in parts.states.iter().enumerate() {
-        let x = Compensated::new(initial.position.x);
-        for (primary, centre) in
-            [(Primary::Larger, primaries.larger_x()), (Primary::Smaller, primaries.smaller_x())]
-        {
-            let away = [x.minus(centre), initial.position.y, initial.position.z];
-            if away.iter().all(|c| c * c == 0.0) {
-                problems.push(Invalid::OnPrimary { state, primary });
-            }
-        }
-    }
 }

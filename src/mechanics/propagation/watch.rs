@@ -8,10 +8,10 @@ use nalgebra::Vector3;
 use super::event::{Plane, When};
 use super::roots::{self, Composed, Polynomial};
 use crate::arithmetic::{Quad, sum::Compensated};
-use crate::frame::{Axes, Frame, Origin, XAxis};
+use crate::frame::{Axes, Frame, XAxis};
 use crate::quantity::Quantity;
 use crate::system::Primary;
-use crate::taylor::{self, Primaries, Series, TERMS};
+use crate::taylor::{self, Series, TERMS};
 
 /// Values this many round-offs of the largest term from zero have no certain sign.
 const NOISE: f64 = 8.0 * f64::EPSILON;
@@ -72,12 +72,6 @@ impl<'a> Stretch<'a> {
         move |k| self.series.half_square[k][lane]
     }
 
-    /// The state `at` a time after the start of the step.
-    pub(super) fn components(&self, at: f64) -> [f64; 6] {
-        let change = taylor::flow(self.series, at);
-        std::array::from_fn(|i| self.state[i].plus(change[i]).value)
-    }
-
     /// Position relative to a primary, and velocity, `at` a time after the start of the step.
     fn relative(&self, primary: Primary, at: f64) -> (Vector3<f64>, Vector3<f64>) {
         let moved = taylor::flow(self.series, at);
@@ -121,9 +115,10 @@ pub(super) struct Hit {
 }
 
 impl Watch {
-    pub(super) fn new(when: &When, frame: Frame, primaries: &Primaries) -> Self {
+    /// Follows a condition whose positions are in `frame`, the x of whose origin is given.
+    pub(super) fn new(when: &When, frame: Frame, origin: Compensated) -> Self {
         let (function, wanted) = match when {
-            When::Plane(plane) => (Function::of_plane(plane, frame, primaries), 0.0),
+            When::Plane(plane) => (Function::of_plane(plane, frame, origin), 0.0),
             When::Distance(primary, radius) => {
                 (Function::Distance { primary: *primary, radius: radius.get() }, 0.0)
             }
@@ -175,17 +170,12 @@ impl Watch {
 }
 
 impl Function {
-    fn of_plane(plane: &Plane, frame: Frame, primaries: &Primaries) -> Self {
+    fn of_plane(plane: &Plane, frame: Frame, origin: Compensated) -> Self {
         let mut normal = plane.normal();
         if frame.x_axis == XAxis::TowardLarger {
             normal.x = -normal.x;
             normal.y = -normal.y;
         }
-        let origin = match frame.origin {
-            Origin::Barycenter => Compensated::default(),
-            Origin::Larger => primaries.larger_x(),
-            Origin::Smaller => primaries.smaller_x(),
-        };
         Self::Plane { normal, offset: plane.offset(), origin, turning: frame.axes == Axes::Inertial }
     }
 

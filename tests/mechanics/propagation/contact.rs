@@ -1,5 +1,6 @@
 //! Contact with a primary's surface, and what happens without one.
 
+use mechanics::frame::{Frame, Origin};
 use mechanics::propagation::{Contact, Outcome};
 use mechanics::quantity::{Distance, Quantity};
 use nalgebra::Vector3;
@@ -116,5 +117,19 @@ fn a_trajectory_that_ended_on_a_surface_does_not_go_on_inside() {
         let second = run(request);
         assert_eq!(second.outcome, Outcome::ContactLarger);
         assert!(second.last.time - first.last.time < 1e-12, "{angle}");
+    }
+}
+
+#[test]
+fn a_state_counted_from_a_primary_keeps_its_digits() {
+    for origin in [Origin::Larger, Origin::Smaller] {
+        let mut distance = 1e-3;
+        while distance > 1e-17 {
+            let mut request = parts(MU, [distance, distance / 3.0, 0.0, 0.0, 0.0, 0.0], 0.0);
+            request.frame = Frame { origin, ..Frame::default() };
+            let last = run(request).last;
+            assert_eq!(last.position.x.to_bits(), distance.to_bits());
+            distance /= 7.0;
+        }
     }
 }

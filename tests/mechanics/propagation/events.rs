@@ -252,6 +252,7 @@ proptest! {
         let duration = if backwards { -6.0 } else { 6.0 };
         let mut request = parts(mu, state, duration);
         request.states[0].time = 0.7;
+        request.states[0] = frame.from_default(request.mass_parameter, &request.states[0]);
         request.frame = frame;
         request.sampling = Sampling::Count(20_001);
         let normal = Vector3::from(normal);

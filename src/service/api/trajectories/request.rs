@@ -171,7 +171,7 @@ fn at_most<T>(name: &str, list: &Field<Vec<T>>, most: usize, errors: &mut Errors
     list.len() <= most
 }
 
-/// The states in the default frame, and the times as they were given.
+/// The states in the request's frame, and the times as they were given.
 fn states(
     field: Field<StatesSpec>,
     conventions: &Conventions,
@@ -180,7 +180,8 @@ fn states(
     let at = Path::ROOT.member("initial_states");
     let checked = field.given()?.check(at, |given, places| {
         let time = given.time;
-        Some((conventions.state_in(given, places, errors)?, time))
+        let (frame, state) = conventions.state_given(given, places, errors)?;
+        Some((frame.convert(conventions.frame, conventions.system.mass_parameter(), &state), time))
     });
     checked.map(|all| all.into_iter().unzip())
 }
