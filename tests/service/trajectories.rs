@@ -287,6 +287,29 @@ fn samples_at_every_step_stay_within_the_limit() {
 }
 
 #[test]
+fn events_stay_within_the_limit_of_a_buffered_answer() {
+    let server = Server::with(&[("SYNODIA_MAX_SAMPLE_VALUES", "80")]);
+    let events = json!([{ "when": { "plane_crossing": { "axis": "y", "value": 0.0 } } }]);
+    let few = with(halo(), &json!({ "events": events, "duration": 16.0 }));
+    assert_eq!(solved(&server, &few)["trajectories"][0]["events"].as_array().unwrap().len(), 9);
+    let many = with(halo(), &json!({ "events": events, "duration": 100.0 }));
+    let problem = server.post(PATH, &many).problem("work-limit");
+    assert_eq!(problem["errors"][0]["pointer"], "/events");
+}
+
+#[test]
+fn too_many_of_anything_is_all_that_is_said() {
+    let server = Server::start();
+    let burns = vec![json!({ "time": 99.0, "delta_v": [0.0, 0.0, 0.0] }); 1001];
+    let problem = server.post(PATH, &with(halo(), &json!({ "manoeuvres": burns }))).problem("work-limit");
+    assert_eq!(
+        problem["errors"],
+        json!([{ "pointer": "/manoeuvres", "limit": 1000, "asked": 1001,
+        "detail": "at most 1000 manoeuvres are granted, got 1001" }])
+    );
+}
+
+#[test]
 fn each_fault_has_its_pointer_and_all_come_at_once() {
     let server = Server::start();
     let cases = [
