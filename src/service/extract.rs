@@ -9,9 +9,11 @@ use http_body::Body as _;
 use http_body_util::BodyExt;
 use tokio::sync::OwnedSemaphorePermit;
 use tokio::time::{Instant, timeout_at};
+use utoipa::openapi::{RefOr, Schema};
 
 use crate::answer::{JSON, negotiation::negotiate};
-use crate::decode::{Decode, Errors, Path, parse_query};
+use crate::decode::{ClosedObject, Decode, Errors, Members, Node, Path, Schemas, parse_query};
+
 use crate::problem::{Fault, Place, Problem, Slug};
 use crate::state::App;
 
@@ -160,9 +162,19 @@ fn too_large(app: &App, mut body: Body) -> Problem {
 /// A body this many times too large is no slip: its connection is closed.
 const DRAINED_LIMITS: usize = 8;
 
-crate::decode::request! {
-    /// No parameters.
-    pub struct Nothing {}
+/// No parameters.
+#[derive(Debug)]
+pub struct Nothing;
+
+impl Decode for Nothing {
+    fn decode(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
+        Members::open(node, at, &[], errors)?.finish(errors);
+        Some(Self)
+    }
+
+    fn describe(_: &mut Schemas) -> RefOr<Schema> {
+        ClosedObject::new("No parameters.").build()
+    }
 }
 
 /// The query parameters, as a request object of strings.

@@ -6,6 +6,7 @@
 
 mod course;
 pub mod event;
+mod invalid;
 mod manoeuvre;
 mod matrix;
 mod request;
@@ -20,8 +21,9 @@ use thiserror::Error;
 use crate::interrupt::{Interrupt, Stop};
 use crate::state::State;
 
+pub use invalid::Invalid;
 pub use manoeuvre::{BurnAxes, Manoeuvre};
-pub use request::{Contact, Durations, Invalid, Limits, MatrixOutput, Request, RequestParts, Sampling};
+pub use request::{Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling};
 
 /// Why a trajectory ended.
 #[derive(Clone, Copy, Debug, Eq, PartialEq)]

@@ -1,8 +1,7 @@
 //! What is asked for, checked as a whole.
 
-use thiserror::Error;
-
 use super::event::Event;
+use super::invalid::Invalid;
 use super::manoeuvre::{BurnAxes, Manoeuvre};
 use crate::arithmetic::sum::Compensated;
 use crate::frame::{Frame, Origin};
@@ -103,118 +102,6 @@ pub struct RequestParts {
     pub contact: Contact,
     /// Bounds.
     pub limits: Limits,
-}
-
-/// What is wrong between the parts of a request.
-#[derive(Clone, Debug, Error, PartialEq)]
-pub enum Invalid {
-    /// A list of durations of another length than the states.
-    #[error("{durations} durations are given for {states} initial states")]
-    DurationCount {
-        /// Durations given.
-        durations: usize,
-        /// Initial states given.
-        states: usize,
-    },
-    /// An initial state lies on a primary.
-    #[error("lies on the {} primary's centre, where the equations of motion are singular", name(*.primary))]
-    OnPrimary {
-        /// The initial state.
-        state: usize,
-        /// The primary.
-        primary: Primary,
-    },
-    /// Fewer than two samples from start to end.
-    #[error("must be at least 2, for both ends are included, got {0}")]
-    TooFewSamples(u64),
-    /// An interval that is not a positive number.
-    #[error("must be a finite number above 0, got {0}")]
-    Interval(f64),
-    /// An interval longer than the duration.
-    #[error("{interval} is longer than the duration {duration} of trajectory {trajectory}")]
-    LongInterval {
-        /// The interval.
-        interval: f64,
-        /// The duration.
-        duration: f64,
-        /// The trajectory.
-        trajectory: usize,
-    },
-    /// A sample's time that does not follow the one before.
-    #[error("{time} does not follow {before} in the direction of the integration")]
-    TimeOrder {
-        /// Its index.
-        index: usize,
-        /// Its time.
-        time: f64,
-        /// The time before it.
-        before: f64,
-    },
-    /// A sample's time outside a trajectory.
-    #[error("{time} lies outside trajectory {trajectory}, which runs from {from} to {to}")]
-    TimeOutside {
-        /// Its index.
-        index: usize,
-        /// Its time.
-        time: f64,
-        /// The trajectory.
-        trajectory: usize,
-        /// Its start.
-        from: f64,
-        /// Its end.
-        to: f64,
-    },
-    /// A manoeuvre outside a trajectory.
-    #[error("{time} lies outside trajectory {trajectory}, which runs from {from} to {to}")]
-    ManoeuvreOutside {
-        /// Its index.
-        index: usize,
-        /// Its time.
-        time: f64,
-        /// The trajectory.
-        trajectory: usize,
-        /// Its start.
-        from: f64,
-        /// Its end.
-        to: f64,
-    },
-    /// A manoeuvre for a trajectory that is not there.
-    #[error("there is no initial state {trajectory}; {states} are given, counted from 0")]
-    ManoeuvreFor {
-        /// Its index.
-        index: usize,
-        /// The place in its list.
-        place: usize,
-        /// What is not there.
-        trajectory: usize,
-        /// Initial states given.
-        states: usize,
-    },
-    /// A manoeuvre along the velocity before it, met backwards.
-    #[error(
-        "velocity_normal_binormal needs the state before the manoeuvre, but trajectory {trajectory} runs backwards"
-    )]
-    ManoeuvreBackwards {
-        /// Its index.
-        index: usize,
-        /// The trajectory.
-        trajectory: usize,
-    },
-    /// More sample numbers than granted.
-    #[error("the samples would hold {asked} values; at most {limit} are allowed")]
-    SampleValues {
-        /// Numbers asked for.
-        asked: u128,
-        /// Numbers granted.
-        limit: u64,
-    },
-}
-
-fn name(primary: Primary) -> &'static str {
-    match primary {
-        Primary::Larger => "larger",
-        Primary::Smaller => "smaller",
-    }
 }
 
 /// A checked request.

@@ -41,8 +41,6 @@ macro_rules! request {
                 errors: &mut $crate::decode::Errors,
             ) -> Option<Self> {
                 const KNOWN: &[&str] = &[$($crate::decode::plain(stringify!($member))),*];
-                #[expect(clippy::allow_attributes, reason = "an object may have no members")]
-                #[allow(unused_mut, reason = "an object may have no members")]
                 let mut members = $crate::decode::Members::open(node, at, KNOWN, errors)?;
                 $(members.not_offered(&[$($refused),*]);)?
                 let decoded = Self {
@@ -61,8 +59,6 @@ macro_rules! request {
 
         impl utoipa::PartialSchema for $name {
             fn schema() -> utoipa::openapi::RefOr<utoipa::openapi::Schema> {
-                #[expect(clippy::allow_attributes, reason = "an object may have no members")]
-                #[allow(unused_mut, reason = "an object may have no members")]
                 let mut object = $crate::decode::ClosedObject::new(concat!($($doc, "\n"),*));
                 $(object.$need::<$type>(
                     $crate::decode::plain(stringify!($member)),
@@ -78,8 +74,6 @@ macro_rules! request {
                 std::borrow::Cow::Borrowed(stringify!($name))
             }
 
-            #[expect(clippy::allow_attributes, reason = "an object may have no members")]
-            #[allow(unused_variables, reason = "an object may have no members")]
             fn schemas(schemas: &mut $crate::decode::Schemas) {
                 $(<$type as $crate::decode::Decode>::describe(schemas);)*
             }
