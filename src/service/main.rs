@@ -35,7 +35,9 @@ fn serve(config: Config) -> ExitCode {
         Err(error) => return fail(&error),
     };
     let served = on_runtime(async {
-        let listener = tokio::net::TcpListener::bind(config.listen).await?;
+        let listener = tokio::net::TcpListener::bind(config.listen).await.map_err(|error| {
+            std::io::Error::new(error.kind(), format!("cannot listen on {}: {error}", config.listen))
+        })?;
         let address = listener.local_addr()?;
         let (app, router) = api::start(config)?;
         tracing::info!(

@@ -248,9 +248,11 @@ fn contact_ends_a_trajectory_where_a_radius_is_known() {
     assert_eq!(answer["outcomes"], json!({ "contact_smaller": 1 }));
 
     let inside = json!([{ "position": [0.988, 0.0, 0.001], "velocity": [0.0, 0.0, 0.0] }]);
-    let answer = solved(&server, &with(body.clone(), &json!({ "initial_states": inside })));
+    let answer = solved(&server, &with(body.clone(), &json!({ "initial_states": &inside })));
     assert_eq!(answer["trajectories"][0]["outcome"], "contact_smaller");
     assert_eq!(answer["trajectories"][0]["final"]["time"], 0.0, "an outcome, not an error");
+    let sampled = with(body.clone(), &json!({ "initial_states": inside, "samples": "every_step" }));
+    assert_eq!(solved(&server, &sampled)["trajectories"][0]["samples"]["time"], json!([0.0]));
 
     let ignored = solved(&server, &with(body, &json!({ "contact": "ignore", "duration": 0.1 })));
     assert_eq!(ignored["contact_bodies"], json!([]));
@@ -284,6 +286,37 @@ fn samples_at_every_step_stay_within_the_limit() {
     let long = with(halo(), &json!({ "samples": "every_step", "duration": 100.0 }));
     let problem = server.post(PATH, &long).problem("work-limit");
     assert_eq!(problem["errors"][0]["pointer"], "/samples");
+}
+
+#[test]
+fn a_burn_along_an_undefined_axis_is_refused() {
+    let server = Server::start();
+    let burn = json!([{ "time": 0.0, "delta_v": [0.01, 0.02, 0.0], "axes": "velocity_normal_binormal" }]);
+    for velocity in [json!([0.0, 0.0, 0.0]), json!([0.5, 0.0, 0.0])] {
+        let states = json!([{ "position": [0.8, 0.0, 0.0], "velocity": velocity }]);
+        let body = with(halo(), &json!({ "initial_states": states, "manoeuvres": burn }));
+        assert_eq!(pointers(&server, &body), ["/manoeuvres/0/axes"]);
+    }
+}
+
+#[test]
+fn samples_are_told_in_the_digits_of_the_request() {
+    let server = Server::start();
+    let mut body = with(
+        halo(),
+        &json!({ "system": "earth-moon", "units": { "length": "km", "time": "d" }, "samples": { "count": 3 },
+            "duration": 0.529, "initial_states":
+                [{ "time": -124.225, "position": [200000.0, 0.0, 0.0], "velocity": [0.0, 60000.0, 0.0] }] }),
+    );
+    let trajectory = solved(&server, &body)["trajectories"][0].clone();
+    assert_eq!(trajectory["samples"]["time"][0], -124.225);
+    assert_eq!(trajectory["samples"]["time"][2], trajectory["final"]["time"]);
+    body["samples"] = json!({ "interval": 0.1 });
+    body["initial_states"][0]["time"] = json!(0.0);
+    body["duration"] = json!(-1.0);
+    let times = numbers(&solved(&server, &body)["trajectories"][0]["samples"]["time"]);
+    assert_eq!(times[5].to_bits(), (-0.5_f64).to_bits());
+    assert_eq!(times.len(), 11);
 }
 
 #[test]
@@ -373,6 +406,12 @@ fn each_fault_has_its_pointer_and_all_come_at_once() {
         "events": [{ "when": { "apoapsis": "larger" }, "direction": "either" }] });
     let mut found = pointers(&server, &with(halo(), &many));
     found.sort();
+    let counts = json!({ "duration": [1.0, 2.0], "samples": { "times": [5.0, 4.0] },
+        "manoeuvres": [{ "time": 99.0, "delta_v": [0.0, 0.0, 0.0], "for": [7] }] });
+    assert_eq!(
+        pointers(&server, &with(halo(), &counts)),
+        ["/duration", "/samples/times/1", "/manoeuvres/0/for/0"]
+    );
     assert_eq!(
         found,
         ["/audit", "/events/0/direction", "/manoeuvres/0/time", "/samples/interval", "/tolerance"]

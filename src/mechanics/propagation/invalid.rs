@@ -109,6 +109,19 @@ pub enum Invalid {
     },
 }
 
+impl Invalid {
+    /// Whether it says that something lies outside the time that a trajectory runs.
+    pub(super) fn is_about_span(&self) -> bool {
+        matches!(
+            self,
+            Self::LongInterval { .. }
+                | Self::TimeOutside { .. }
+                | Self::ManoeuvreOutside { .. }
+                | Self::ManoeuvreBackwards { .. }
+        )
+    }
+}
+
 fn name(primary: Primary) -> &'static str {
     match primary {
         Primary::Larger => "larger",

@@ -30,30 +30,30 @@ pub enum BurnAxes {
 
 impl Manoeuvre {
     /// The velocity of the default frame that is added to a state, `seen` in the request's frame, and d(state
-    /// after)/d(state before) in the default one.
-    pub(super) fn impulse(&self, frame: Frame, seen: &State) -> (Vector3<f64>, Option<Matrix6<f64>>) {
+    /// after)/d(state before) in the default one; none where the state leaves an axis of the burn undefined.
+    pub(super) fn impulse(&self, frame: Frame, seen: &State) -> Option<(Vector3<f64>, Option<Matrix6<f64>>)> {
         match self.axes {
-            BurnAxes::Frame => (frame.direction_to_default(seen.time, &self.delta_v), None),
+            BurnAxes::Frame => Some((frame.direction_to_default(seen.time, &self.delta_v), None)),
             BurnAxes::VelocityNormalBinormal => {
-                let (change, slopes) = along_velocity(&seen.position, &seen.velocity, &self.delta_v);
+                let (change, slopes) = along_velocity(&seen.position, &seen.velocity, &self.delta_v)?;
                 let mut jump = Matrix6::identity();
                 jump.fixed_view_mut::<3, 3>(3, 0).copy_from(&slopes[0]);
                 jump.fixed_view_mut::<3, 3>(3, 3).copy_from(&(Matrix3::identity() + slopes[1]));
                 let to_frame = frame.jacobian(seen.time);
                 let jump = frame.inverse_jacobian(seen.time) * jump * to_frame;
-                (frame.direction_to_default(seen.time, &change), Some(jump))
+                Some((frame.direction_to_default(seen.time, &change), Some(jump)))
             }
         }
     }
 }
 
 /// The change of velocity with the components `along` v, r × v and v × (r × v), and its derivatives with respect
-/// to r and v. A direction that is not defined, v = 0 or r parallel to v, adds nothing.
+/// to r and v; none where it has a component along a direction that is not defined, v = 0 or r parallel to v.
 fn along_velocity(
     r: &Vector3<f64>,
     v: &Vector3<f64>,
     along: &Vector3<f64>,
-) -> (Vector3<f64>, [Matrix3<f64>; 2]) {
+) -> Option<(Vector3<f64>, [Matrix3<f64>; 2])> {
     let normal = r.cross(v);
     let binormal = v.cross(&normal);
     // The unnormalised directions' derivatives with respect to r and v.
@@ -68,8 +68,11 @@ fn along_velocity(
         [(along.x, v, velocity_by), (along.y, &normal, normal_by), (along.z, &binormal, binormal_by)]
     {
         let length = direction.norm();
-        if component == 0.0 || length == 0.0 {
+        if component == 0.0 {
             continue;
+        }
+        if length == 0.0 {
+            return None;
         }
         let unit = direction / length;
         change += component * unit;
@@ -77,5 +80,5 @@ fn along_velocity(
         slopes[0] += projector * by[0];
         slopes[1] += projector * by[1];
     }
-    (change, slopes)
+    Some((change, slopes))
 }

@@ -110,6 +110,14 @@ pub enum Failure {
     /// Nobody waits for it.
     #[error("the computation was cancelled")]
     Cancelled,
+    /// A manoeuvre is given along an axis that the state before it does not define.
+    #[error("the state of trajectory {trajectory} before it leaves an axis of this manoeuvre undefined")]
+    UndefinedAxes {
+        /// The manoeuvre.
+        manoeuvre: usize,
+        /// The trajectory.
+        trajectory: usize,
+    },
     /// Samples at every step and events, whose number shows only on the way, came to more than was granted.
     #[error("samples and events hold more than {limit} values")]
     TooManySamples {

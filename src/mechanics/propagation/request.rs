@@ -117,23 +117,27 @@ impl Request {
     ///
     /// # Errors
     /// Everything that is wrong between them.
-    pub fn new(parts: RequestParts) -> Result<Self, Vec<Invalid>> {
+    pub fn new(mut parts: RequestParts) -> Result<Self, Vec<Invalid>> {
         let mut problems = Vec::new();
         let primaries = Primaries::new(parts.mass_parameter.get());
         if let Durations::Each(durations) = &parts.durations
             && durations.len() != parts.states.len()
         {
             problems.push(Invalid::DurationCount { durations: durations.len(), states: parts.states.len() });
-            return Err(problems);
+            // What does not hang on the durations is checked all the same.
+            let stand_in = durations.first().copied().unwrap_or(Duration::constant(0.0));
+            parts.durations = Durations::All(stand_in);
         }
+        let spanned = problems.is_empty();
         let step_size = StepSize::new(parts.tolerance.get());
         let mut request = Self { parts, primaries, step_size };
         request.check_states(&mut problems);
-        request.check_sampling(&mut problems);
+        request.check_sampling(spanned, &mut problems);
         request.check_manoeuvres(&mut problems);
         for list in request.parts.manoeuvres.iter_mut().filter_map(|m| m.trajectories.as_mut()) {
             list.sort_unstable();
         }
+        problems.retain(|problem| spanned || !problem.is_about_span());
         if problems.is_empty() { Ok(request) } else { Err(problems) }
     }
 
@@ -242,7 +246,7 @@ impl Request {
         time >= from.min(to) - slack && time <= from.max(to) + slack
     }
 
-    fn check_sampling(&self, problems: &mut Vec<Invalid>) {
+    fn check_sampling(&self, spanned: bool, problems: &mut Vec<Invalid>) {
         match &self.parts.sampling {
             Sampling::None | Sampling::EveryStep => return,
             Sampling::Count(count) if *count < 2 => {
@@ -266,29 +270,34 @@ impl Request {
         }
         match &self.parts.sampling {
             Sampling::Interval(interval) => {
-                let short = |t: &usize| self.duration(*t).abs() * INTERVAL_SLACK < *interval;
+                let short = |t: &usize| {
+                    let duration = self.duration(*t).abs();
+                    duration > 0.0 && duration * INTERVAL_SLACK < *interval
+                };
                 if let Some(trajectory) = (0..self.count()).find(short) {
                     let duration = self.duration(trajectory);
                     problems.push(Invalid::LongInterval { interval: *interval, duration, trajectory });
                 }
             }
-            Sampling::Times(times) => self.check_times(times, problems),
+            Sampling::Times(times) => self.check_times(times, spanned, problems),
             Sampling::None | Sampling::EveryStep | Sampling::Count(_) => {}
         }
     }
 
-    /// Each wrong time is reported once, for the first trajectory it is wrong for.
-    fn check_times(&self, times: &[f64], problems: &mut Vec<Invalid>) {
+    /// Each wrong time is reported once, for the first trajectory it is wrong for; where the durations are not known,
+    /// only the order is looked at.
+    fn check_times(&self, times: &[f64], spanned: bool, problems: &mut Vec<Invalid>) {
         for (index, &time) in times.iter().enumerate() {
+            let before = index.checked_sub(1).and_then(|i| times.get(i).copied());
             for trajectory in 0..self.count() {
-                if !self.holds(trajectory, time) {
+                if spanned && !self.holds(trajectory, time) {
                     let (from, to) = self.ends(trajectory);
                     problems.push(Invalid::TimeOutside { index, time, trajectory, from, to });
                     break;
                 }
-                let Some(&before) = index.checked_sub(1).and_then(|i| times.get(i)) else { continue };
-                let follows = if self.duration(trajectory) < 0.0 { time < before } else { time > before };
-                if !follows {
+                let backwards = self.duration(trajectory) < 0.0;
+                let follows = |before: f64| if backwards { time < before } else { time > before };
+                if let Some(before) = before.filter(|before| !follows(*before)) {
                     problems.push(Invalid::TimeOrder { index, time, before });
                     break;
                 }
@@ -345,17 +354,19 @@ impl Request {
         }
     }
 
-    /// The manoeuvres of a trajectory with their signed time since its start, along the integration.
-    pub(super) fn manoeuvres_of(&self, trajectory: usize) -> Vec<(Compensated, &Manoeuvre)> {
+    /// The manoeuvres of a trajectory, by index, with their signed time since its start, along the integration.
+    pub(super) fn manoeuvres_of(&self, trajectory: usize) -> Vec<(Compensated, usize)> {
         let backwards = self.duration(trajectory) < 0.0;
         let mut own: Vec<_> = self
             .parts
             .manoeuvres
             .iter()
-            .filter(|manoeuvre| concerns(manoeuvre, trajectory))
-            .map(|manoeuvre| (self.since_start(trajectory, manoeuvre.time), manoeuvre))
+            .enumerate()
+            .filter(|(_, manoeuvre)| concerns(manoeuvre, trajectory))
+            .map(|(index, manoeuvre)| (self.since_start(trajectory, manoeuvre.time), index))
             .collect();
-        own.sort_by(|(_, a), (_, b)| a.time.total_cmp(&b.time));
+        let time = |index: usize| self.parts.manoeuvres[index].time;
+        own.sort_by(|(_, a), (_, b)| time(*a).total_cmp(&time(*b)));
         if backwards {
             own.reverse();
         }

@@ -53,6 +53,21 @@ fn a_start_inside_ends_at_once() {
 }
 
 #[test]
+fn a_start_at_rest_on_the_surface_stays_there() {
+    let mut request = parts(MU, [0.0166, 0.0, 0.0, 0.0, 0.0, 0.0], 1.0);
+    request.frame = Frame { origin: Origin::Larger, ..Frame::default() };
+    request.contact = Contact { larger: Some(radius(0.0166)), smaller: None };
+    let trajectory = run(request.clone());
+    assert_eq!(trajectory.outcome, Outcome::ContactLarger);
+    assert_eq!(trajectory.evidence.steps, 0);
+    // Fast enough along the surface it is on an orbit that rises from there.
+    request.states[0].velocity.y = 9.0;
+    request.durations =
+        mechanics::propagation::Durations::All(mechanics::quantity::Duration::new(1e-3).expect("in range"));
+    assert_eq!(run(request).outcome, Outcome::Complete);
+}
+
+#[test]
 fn a_start_on_the_surface_may_leave() {
     // Straight up at a speed that does not come back within the time given.
     let up = [1.0 - MU + 0.01, 0.0, 0.0, 1.5, 0.0, 0.0];

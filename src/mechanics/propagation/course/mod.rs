@@ -7,13 +7,13 @@ use std::ops::ControlFlow;
 use nalgebra::{Matrix6, Vector3};
 
 use super::event::When;
-use super::manoeuvre::Manoeuvre;
 use super::matrix::Transition;
 use super::request::{MatrixOutput, Request, Sampling};
 use super::watch::{Hit, Stretch, Watch};
 use super::{Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Trajectory};
 use crate::arithmetic::sum::Compensated;
 use crate::interrupt::{Interrupt, Stop};
+use crate::potential::gradient;
 use crate::quantity::{Distance, Quantity};
 use crate::state::State;
 use crate::system::Primary;
@@ -160,6 +160,7 @@ impl<'a> Course<'a> {
     /// The legs between manoeuvres.
     fn legs(&mut self) -> Flow {
         if let Some(outcome) = self.inside() {
+            self.sample_here(false)?;
             return Ok(ControlFlow::Break(outcome));
         }
         let manoeuvres = self.request.manoeuvres_of(self.index);
@@ -169,7 +170,7 @@ impl<'a> Course<'a> {
             while let Some(((at, manoeuvre), later)) = rest.split_first()
                 && at.minus(self.elapsed) * self.direction <= 0.0
             {
-                self.apply(manoeuvre);
+                self.apply(*manoeuvre)?;
                 rest = later;
             }
             let end = Compensated::new(self.duration);
@@ -268,9 +269,14 @@ impl<'a> Course<'a> {
         let contact = self.request.parts().contact;
         let primaries = self.request.primaries();
         let velocity = Vector3::new(self.state[3].value, self.state[4].value, self.state[5].value);
+        let position = Vector3::new(self.state[0].value, self.state[1].value, self.state[2].value);
+        let coriolis = 2.0 * Vector3::new(velocity.y, -velocity.x, 0.0);
+        let acceleration = gradient(self.request.parts().mass_parameter, &position) + coriolis;
         let below = |radius: Option<Distance>, centre: Compensated| {
             let away = Vector3::new(self.state[0].minus(centre), self.state[1].value, self.state[2].value);
-            let inwards = away.dot(&velocity) * self.direction < 0.0;
+            let rate = away.dot(&velocity) * self.direction;
+            let inwards =
+                rate < 0.0 || (rate == 0.0 && away.dot(&acceleration) + velocity.norm_squared() < 0.0);
             // On the surface as far as a state's digits tell, the way it moves decides.
             radius.is_some_and(|radius| {
                 let height = away.norm() - radius.get();
@@ -286,16 +292,21 @@ impl<'a> Course<'a> {
         }
     }
 
-    fn apply(&mut self, manoeuvre: &Manoeuvre) {
+    fn apply(&mut self, index: usize) -> Result<(), Failure> {
         self.end_leg();
         let parts = self.request.parts();
-        let (change, jump) = manoeuvre.impulse(parts.frame, &self.seen(manoeuvre.time, &[0.0; 6]));
+        let manoeuvre = &parts.manoeuvres[index];
+        let before = self.seen(manoeuvre.time, &[0.0; 6]);
+        let (change, jump) = manoeuvre
+            .impulse(parts.frame, &before)
+            .ok_or(Failure::UndefinedAxes { manoeuvre: index, trajectory: self.index })?;
         for (component, change) in self.state[3..].iter_mut().zip(change.iter()) {
             *component = component.plus(change * self.direction);
         }
         if let Some(transition) = &mut self.transition {
             transition.end_leg(jump.as_ref());
         }
+        Ok(())
     }
 
     /// Records the events of a step; gives where and why the trajectory ends in it, if it does.

@@ -189,6 +189,28 @@ impl Task {
         }
     }
 
+    /// The instants of samples in the client's own digits where it planned them, as it would count them.
+    fn sample_times(&self, index: usize, computed: &[f64]) -> Vec<f64> {
+        let (start, duration) = (self.given_times[index], self.duration(index));
+        #[expect(clippy::cast_precision_loss, reason = "the limit of samples is far below 2^53")]
+        let planned = |at: &dyn Fn(f64) -> f64| (0..computed.len()).map(|i| start + at(i as f64)).collect();
+        match &self.given_samples {
+            Some(SamplesSpec::Times(times)) => times[..computed.len()].to_vec(),
+            #[expect(clippy::cast_precision_loss, reason = "the limit of samples is far below 2^53")]
+            Some(SamplesSpec::Count(count)) => {
+                let last = (count - 1) as f64;
+                planned(&|i| if i < last { duration * (i / last) } else { duration })
+            }
+            Some(SamplesSpec::Interval(interval)) => {
+                planned(&|i| (interval * i).min(duration.abs()) * duration.signum())
+            }
+            Some(SamplesSpec::None | SamplesSpec::EveryStep) | None => {
+                let scale = self.conventions.scale.time;
+                computed.iter().map(|time| time * scale).collect()
+            }
+        }
+    }
+
     fn duration(&self, index: usize) -> f64 {
         match &self.given_duration {
             DurationSpec::All(all) => *all,
@@ -205,10 +227,7 @@ impl Task {
         let scaled = |vectors: &[Vector3<f64>], factor: f64| {
             vectors.iter().map(|vector| (vector * factor).into()).collect::<Vec<[f64; 3]>>()
         };
-        let time = match &self.given_samples {
-            Some(SamplesSpec::Times(times)) => times[..samples.times.len()].to_vec(),
-            _ => samples.times.iter().map(|time| time * scale.time).collect(),
-        };
+        let time = self.sample_times(trajectory.index, &samples.times);
         Some(SamplesAnswer {
             time,
             position: scaled(&samples.positions, scale.length),

@@ -76,6 +76,12 @@ impl Operation for TrajectoriesRequest {
 fn refused(failure: Failure, task: &Task) -> Problem {
     match failure {
         Failure::Cancelled => Problem::overloaded("The computation was cancelled"),
+        Failure::UndefinedAxes { manoeuvre, .. } => {
+            let mut errors = Errors::default();
+            let (root, member) = (Path::ROOT, "manoeuvres");
+            errors.push(root.member(member).item(manoeuvre).member("axes"), failure.to_string());
+            errors.into()
+        }
         Failure::TooManySamples { limit } => {
             let mut errors = Errors::default();
             let sampled = task.request.parts().sampling != Sampling::None;
