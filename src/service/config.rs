@@ -12,6 +12,8 @@ use std::time::Duration;
 use clap::{Arg, ArgMatches, Command};
 use http::HeaderValue;
 
+/// Time for a computation that asks for none.
+const WALL_TIME_MS: u64 = 30_000;
 /// Prefix of every variable.
 const PREFIX: &str = "SYNODIA_";
 /// What an orchestrator sets by itself for a service of this name; no mistakes of the operator.
@@ -47,7 +49,8 @@ pub struct Limits {
     pub events: u64,
     /// `--max-sample-values`, `SYNODIA_MAX_SAMPLE_VALUES`: numbers in a buffered answer, 20,000,000.
     pub sample_values: u64,
-    /// `--wall-time-ms`, `SYNODIA_WALL_TIME_MS`: time for a computation that asks for none, 30 s.
+    /// `--wall-time-ms`, `SYNODIA_WALL_TIME_MS`: time for a computation that asks for none, 30 s or the most if that is
+    /// less.
     pub wall_time: Duration,
     /// `--max-wall-time-ms`, `SYNODIA_MAX_WALL_TIME_MS`: most time a request may ask for, 120 s.
     pub max_wall_time: Duration,
@@ -274,14 +277,16 @@ impl<'a> Source<'a> {
     }
 
     fn limits(&mut self) -> Limits {
+        let max_wall_time = self.milliseconds("max-wall-time-ms", 120_000, 1..=DAY_MS);
+        let usual = u64::try_from(max_wall_time.as_millis()).unwrap_or(WALL_TIME_MS).min(WALL_TIME_MS);
         let limits = Limits {
             body_bytes: self.size("max-body-bytes", 32 << 20, 1..=MANY),
             states: self.count("max-states", 100_000, 1..=MANY),
             steps: self.count("max-steps", 1_000_000, 1..=MANY),
             events: self.count("max-events", 100_000, 1..=MANY),
             sample_values: self.count("max-sample-values", 20_000_000, 1..=MANY),
-            wall_time: self.milliseconds("wall-time-ms", 30_000, 1..=DAY_MS),
-            max_wall_time: self.milliseconds("max-wall-time-ms", 120_000, 1..=DAY_MS),
+            wall_time: self.milliseconds("wall-time-ms", usual, 1..=DAY_MS),
+            max_wall_time,
         };
         if limits.wall_time > limits.max_wall_time {
             self.refuse("wall-time-ms", "must not exceed SYNODIA_MAX_WALL_TIME_MS (--max-wall-time-ms)");

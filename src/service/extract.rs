@@ -61,10 +61,8 @@ fn no_query(uri: &Uri) -> Result<(), Problem> {
 }
 
 fn media_type(headers: &HeaderMap) -> Result<(), Problem> {
-    let coded = headers
-        .get(header::CONTENT_ENCODING)
-        .filter(|coding| !coding.as_bytes().eq_ignore_ascii_case(b"identity"));
-    if coded.is_some() {
+    let mut codings = headers.get_all(header::CONTENT_ENCODING).iter();
+    if codings.any(|coding| !coding.as_bytes().eq_ignore_ascii_case(b"identity")) {
         let problem =
             unsupported("content-encoding", "must be absent or identity: bodies are taken uncompressed");
         return Err(problem.with_header(header::ACCEPT_ENCODING, HeaderValue::from_static("identity")));
@@ -72,6 +70,9 @@ fn media_type(headers: &HeaderMap) -> Result<(), Problem> {
     let Some(given) = headers.get(header::CONTENT_TYPE) else {
         return Err(unsupported("content-type", "is required: application/json"));
     };
+    if headers.get_all(header::CONTENT_TYPE).iter().count() > 1 {
+        return Err(unsupported("content-type", "must be given once"));
+    }
     if given == JSON {
         return Ok(());
     }

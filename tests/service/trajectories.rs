@@ -406,6 +406,12 @@ fn each_fault_has_its_pointer_and_all_come_at_once() {
         "events": [{ "when": { "apoapsis": "larger" }, "direction": "either" }] });
     let mut found = pointers(&server, &with(halo(), &many));
     found.sort();
+    let system = json!({ "system": { "mass_parameter": 2.0 }, "frame": { "axes": "inertial" },
+        "initial_states": [{ "position": [1.0, 0.0, 0.0], "momentum": [0.0, 1.0, 0.0] }] });
+    assert_eq!(
+        pointers(&server, &with(halo(), &system)),
+        ["/system/mass_parameter", "/initial_states/0/momentum"]
+    );
     let counts = json!({ "duration": [1.0, 2.0], "samples": { "times": [5.0, 4.0] },
         "manoeuvres": [{ "time": 99.0, "delta_v": [0.0, 0.0, 0.0], "for": [7] }] });
     assert_eq!(

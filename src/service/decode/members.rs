@@ -69,6 +69,12 @@ impl<T> Field<T> {
         }
     }
 
+    /// Whether the member is there and right.
+    #[must_use]
+    pub fn is_good(&self) -> bool {
+        matches!(self, Self::Given(_))
+    }
+
     /// Whether the member is not there.
     #[must_use]
     pub fn is_absent(&self) -> bool {

@@ -5,7 +5,7 @@ use std::borrow::Cow;
 
 use mechanics::elements::Elements;
 use mechanics::frame::Frame;
-use mechanics::quantity::{Coordinate, Epoch, OutOfRange, Quantity, Speed};
+use mechanics::quantity::{Coordinate, Epoch, MassParameter, OutOfRange, Quantity, Speed};
 use mechanics::state::State;
 use mechanics::system::System;
 use mechanics::units::{Scale, Units};
@@ -82,6 +82,17 @@ impl Conventions {
             units: UnitsEcho(self.units),
             frame: self.frame.into(),
         }
+    }
+
+    /// A stand-in for those of a request whose system is wrong, to look for its other faults with: in normalised units
+    /// they do not depend on the system.
+    #[must_use]
+    pub fn without_system(units: Field<UnitsSpec>, frame: Field<FrameSpec>) -> Option<Self> {
+        let any = System::from_mass_parameter(MassParameter::constant(0.1));
+        let UnitsSpec(units) = units.or(UnitsSpec::default())?;
+        let FrameSpec(frame) = frame.or(FrameSpec::default())?;
+        let normalized = units == Units::Normalized;
+        normalized.then_some(Self { system: any, units, scale: Scale::IDENTITY, frame })
     }
 
     /// The state in normalised units and the default frame, each component within its range.

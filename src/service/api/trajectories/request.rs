@@ -91,7 +91,8 @@ impl TrajectoriesRequest {
     /// Checks the members against each other and against the server's limits.
     pub(super) fn checked(self, limits: &Limits, errors: &mut Errors) -> Option<Task> {
         let granted = LimitsSpec::check(self.limits, limits, errors);
-        let conventions = Conventions::check(self.system, self.units, self.frame, errors);
+        let (known, units, frame) = (self.system.is_good(), self.units, self.frame);
+        let conventions = Conventions::check(self.system, units, frame, errors);
         let tolerance = self.tolerance.or_else(|| Scalar(Tolerance::constant(TOLERANCE)));
         let few = count_states(&self.initial_states, limits, errors)
             & at_most("events", &self.events, MOST_EVENTS, errors)
@@ -99,14 +100,17 @@ impl TrajectoriesRequest {
         if !few {
             return None;
         }
-        // Without system, units and frame no number can be given a meaning.
-        let conventions = conventions?;
+        // Without units and frame no number can be given a meaning; a system that is wrong matters to few.
+        let conventions = match conventions {
+            None if !known => Conventions::without_system(units, frame)?,
+            conventions => conventions?,
+        };
         let (states, given_times) = states(self.initial_states, &conventions, errors).unzip();
         let durations = durations(self.duration.as_ref(), &conventions, errors);
         let sampling = sampling(self.samples.as_ref(), &conventions, errors);
         let events = events(self.events, &conventions, errors);
         let manoeuvres = manoeuvres(self.manoeuvres, &conventions, errors);
-        let contact = contact(self.contact, &conventions, errors);
+        let contact = if known { contact(self.contact, &conventions, errors) } else { None };
         let matrix = self.state_transition_matrix.or(MatrixSpec::None);
         // Whatever is faulty is left out of the checks across members, so that these find the rest.
         let (events, names) = events.unwrap_or_default().into_iter().unzip();
