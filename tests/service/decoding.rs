@@ -227,7 +227,7 @@ fn numbers_out_of_range_are_told_in_the_units_of_the_request() {
     let conventions = Conventions::check(given, units, synodia::decode::Field::Absent, &mut errors).unwrap();
     let at = Path::ROOT.member("states");
     let states =
-        states.check(at, |state, places: &Places<'_>| conventions.state_in(state, places, &mut errors));
+        states.check(at, |state, places: &Places<'_>| conventions.state_given(state, places, &mut errors));
     assert!(states.is_none());
     let faults = faults(errors);
     assert_eq!(

@@ -95,14 +95,8 @@ impl Conventions {
         normalized.then_some(Self { system: any, units, scale: Scale::IDENTITY, frame })
     }
 
-    /// The state in normalised units and the default frame, each component within its range.
-    pub fn state_in(&self, given: StateSpec, places: &Places<'_>, errors: &mut Errors) -> Option<State> {
-        let (frame, state) = self.state_given(given, places, errors)?;
-        Some(frame.to_default(self.system.mass_parameter(), &state))
-    }
-
-    /// The state in normalised units and the frame that it was given in, so that no digit is lost near a primary: the
-    /// request's, or that of its elements.
+    /// The state in normalised units, each component within its range, and the frame that it was given in, so that no
+    /// digit is lost near a primary: the request's, or that of its elements.
     pub fn state_given(
         &self,
         given: StateSpec,

@@ -8,7 +8,7 @@ use nalgebra::{Matrix6, Vector3};
 
 use super::event::When;
 use super::matrix::Transition;
-use super::request::{MatrixOutput, Request, Sampling};
+use super::request::{Contact, MatrixOutput, Request, Sampling};
 use super::watch::{Hit, Stretch, Watch};
 use super::{Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Trajectory};
 use crate::arithmetic::sum::Compensated;
@@ -77,7 +77,7 @@ pub(super) struct Course<'a> {
 struct Scratch {
     roots: Vec<f64>,
     hits: Vec<Hit>,
-    /// Hits of all watches: the event, or none for a surface.
+    /// Hits of all watches, each with what it is a hit of.
     found: Vec<(Hit, Found)>,
 }
 
@@ -267,6 +267,9 @@ impl<'a> Course<'a> {
     /// The outcome of a start inside a primary.
     fn inside(&self) -> Option<Outcome> {
         let contact = self.request.parts().contact;
+        if contact == Contact::default() {
+            return None;
+        }
         let primaries = self.request.primaries();
         let velocity = Vector3::new(self.state[3].value, self.state[4].value, self.state[5].value);
         let position = Vector3::new(self.state[0].value, self.state[1].value, self.state[2].value);
