@@ -13,6 +13,7 @@ mod request;
 mod roots;
 mod watch;
 
+use std::ops::Range;
 use std::sync::atomic::{AtomicU64, Ordering};
 
 use nalgebra::{Matrix6, Vector3};
@@ -148,28 +149,70 @@ impl SampleBudget {
     }
 }
 
+/// Takes over what is computed, in ascending order of the trajectories' indices.
+pub trait Sink {
+    /// So many samples of one trajectory are handed over before it ends, so that its memory stays bounded; none to
+    /// get them all with the trajectory.
+    fn samples_at_once(&self) -> Option<usize>;
+
+    /// The next samples of a trajectory that is under way.
+    ///
+    /// # Errors
+    /// [`Failure`] to end the computation.
+    fn samples(&mut self, index: usize, samples: Samples) -> Result<(), Failure>;
+
+    /// A trajectory at its end, with the samples that have not been handed over yet.
+    ///
+    /// # Errors
+    /// [`Failure`] to end the computation.
+    fn trajectory(&mut self, trajectory: Trajectory) -> Result<(), Failure>;
+}
+
+impl Sink for Vec<Trajectory> {
+    fn samples_at_once(&self) -> Option<usize> {
+        None
+    }
+
+    fn samples(&mut self, _: usize, _: Samples) -> Result<(), Failure> {
+        Ok(())
+    }
+
+    fn trajectory(&mut self, trajectory: Trajectory) -> Result<(), Failure> {
+        self.push(trajectory);
+        Ok(())
+    }
+}
+
 /// All trajectories of a request, in its order.
 ///
 /// # Errors
 /// [`Failure`] where the computation was cancelled or outgrew its sample budget.
 pub fn solve(request: &Request, interrupt: &dyn Interrupt) -> Result<Vec<Trajectory>, Failure> {
     let budget = SampleBudget::new(request.limits().sample_values);
-    (0..request.count()).map(|index| propagate(request, index, &budget, interrupt)).collect()
+    let mut trajectories = Vec::with_capacity(request.count());
+    propagate(request, 0..request.count(), &budget, &mut trajectories, interrupt)?;
+    Ok(trajectories)
 }
 
-/// One trajectory of a request; its index must be below [`Request::count`].
+/// Some trajectories of a request, whose indices must be below [`Request::count`]. How a request is cut into ranges
+/// changes no bit of any of them.
 ///
 /// # Errors
-/// [`Failure`] where the computation was cancelled or outgrew the sample budget.
+/// [`Failure`] where the computation was cancelled or outgrew the sample budget, and what the sink answers.
 pub fn propagate(
     request: &Request,
-    index: usize,
+    range: Range<usize>,
     budget: &SampleBudget,
+    sink: &mut dyn Sink,
     interrupt: &dyn Interrupt,
-) -> Result<Trajectory, Failure> {
-    match interrupt.poll() {
-        Some(Stop::Cancelled) => Err(Failure::Cancelled),
-        Some(Stop::WallTime) => Ok(course::not_started(request, index)),
-        None => course::Course::new(request, index, budget, interrupt).run(),
+) -> Result<(), Failure> {
+    for index in range {
+        let trajectory = match interrupt.poll() {
+            Some(Stop::Cancelled) => return Err(Failure::Cancelled),
+            Some(Stop::WallTime) => course::not_started(request, index),
+            None => course::Course::new(request, index, budget, sink, interrupt).run()?,
+        };
+        sink.trajectory(trajectory)?;
     }
+    Ok(())
 }

@@ -10,7 +10,7 @@ use super::event::When;
 use super::matrix::Transition;
 use super::request::{Contact, MatrixOutput, Request, Sampling};
 use super::watch::{Hit, Stretch, Watch};
-use super::{Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Trajectory};
+use super::{Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Sink, Trajectory};
 use crate::arithmetic::sum::Compensated;
 use crate::interrupt::{Interrupt, Stop};
 use crate::potential::gradient;
@@ -49,6 +49,7 @@ pub(super) struct Course<'a> {
     request: &'a Request,
     index: usize,
     budget: &'a SampleBudget,
+    sink: &'a mut dyn Sink,
     interrupt: &'a dyn Interrupt,
     /// +1 forwards, −1 backwards.
     direction: f64,
@@ -92,6 +93,7 @@ impl<'a> Course<'a> {
         request: &'a Request,
         index: usize,
         budget: &'a SampleBudget,
+        sink: &'a mut dyn Sink,
         interrupt: &'a dyn Interrupt,
     ) -> Self {
         let parts = request.parts();
@@ -111,6 +113,7 @@ impl<'a> Course<'a> {
             request,
             index,
             budget,
+            sink,
             interrupt,
             direction: if duration < 0.0 { -1.0 } else { 1.0 },
             start: initial.time,

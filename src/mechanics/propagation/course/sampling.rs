@@ -73,6 +73,9 @@ impl Course<'_> {
     /// The state `at` a time after the start of the step under way, 0 for the place reached.
     pub(super) fn push_sample(&mut self, at: f64, time: Option<f64>) -> Result<(), Failure> {
         self.budget.take(self.request.values_per_sample())?;
+        if self.sink.samples_at_once() == Some(self.samples.times.len()) {
+            self.sink.samples(self.index, std::mem::take(&mut self.samples))?;
+        }
         let time = time.unwrap_or(self.time_here());
         let parts = self.request.parts();
         let change = if at == 0.0 { [0.0; 6] } else { taylor::flow(&self.series, at) };

@@ -55,9 +55,8 @@ impl Operation for TrajectoriesRequest {
         let parts = {
             let (task, budget) = (Arc::clone(&task), Arc::clone(&budget));
             context.parts(task.request.count(), PART, move |range, interrupt| {
-                range
-                    .map(|index| propagate(&task.request, index, &budget, interrupt))
-                    .collect::<Result<Vec<Trajectory>, Failure>>()
+                let mut trajectories = Vec::with_capacity(range.len());
+                propagate(&task.request, range, &budget, &mut trajectories, interrupt).map(|()| trajectories)
             })
         };
         let mut trajectories = Vec::with_capacity(task.request.count());
