@@ -4,7 +4,9 @@
 //! K. Danske Vidensk. Selsk. Mat.-Fys. Medd. 30, 18, for this problem). Order and step follow Jorba & Zou 2005,
 //! Exper. Math. 14, 99, with the order fixed.
 
+#[macro_use]
 mod dispatch;
+mod extended;
 mod recurrence;
 mod step;
 mod variational;
@@ -12,6 +14,10 @@ mod variational;
 use crate::arithmetic::{Quad, Real};
 
 pub use dispatch::{accelerated, expand, expand_variational, flow, flow_variational, jacobi_constant};
+pub use extended::{
+    ExtendedColumns, ExtendedSeries, expand_extended, expand_extended_variational, flow_extended,
+    flow_extended_variational,
+};
 pub use recurrence::Primaries;
 pub use step::{MAX_STEP, STEP_FLOOR, StepSize};
 pub use variational::Columns;

@@ -1,0 +1,167 @@
+//! The same series in double-double arithmetic, for orbits so sensitive that double precision is the error.
+//!
+//! Coefficient k belongs to the k-th power of the time in units of a *trial step*, a power of two near the radius of
+//! convergence: otherwise coefficients of this order overflow close to a primary, where the radius is 1e-9. The
+//! scaling is exact, so it changes no bit of what does not overflow.
+
+mod flow;
+mod recurrence;
+mod step;
+mod variational;
+
+use super::dispatch::accelerated;
+use super::{Primaries, Series, TERMS as ROUNDED_TERMS};
+use crate::arithmetic::{DoubleDouble, Quad};
+
+pub use variational::ExtendedColumns;
+
+/// Order of the velocity series, even. From 32 to 40 the cost is the same within a few per cent.
+pub const ORDER: usize = 34;
+
+/// Coefficients of the position series.
+pub const TERMS: usize = ORDER + 2;
+
+/// Four double-doubles side by side.
+type Wide = DoubleDouble<Quad<f64>>;
+
+/// A series of what belongs to the two primaries, the nearer one first.
+#[derive(Clone, Debug)]
+#[repr(C, align(64))]
+struct Pairs {
+    leading: [[f64; 2]; TERMS],
+    rest: [[f64; 2]; TERMS],
+}
+
+impl Pairs {
+    fn new() -> Self {
+        Self { leading: [[0.0; 2]; TERMS], rest: [[0.0; 2]; TERMS] }
+    }
+
+    #[inline(always)]
+    fn at(&self, k: usize) -> [DoubleDouble; 2] {
+        std::array::from_fn(|i| DoubleDouble::normal(self.leading[k][i], self.rest[k][i]))
+    }
+
+    #[inline(always)]
+    fn set(&mut self, k: usize, pair: [DoubleDouble; 2]) {
+        let halves = pair.map(DoubleDouble::halves);
+        self.leading[k] = halves.map(|[leading, _]| leading);
+        self.rest[k] = halves.map(|[_, rest]| rest);
+    }
+
+    /// Coefficients k and k + 1.
+    #[inline(always)]
+    fn with_next(&self, k: usize) -> Wide {
+        let join = |half: &[[f64; 2]; TERMS]| Quad::join(half[k], half[k + 1]);
+        Wide::normal(join(&self.leading), join(&self.rest))
+    }
+
+    /// Coefficient k, twice.
+    #[inline(always)]
+    fn twice(&self, k: usize) -> Wide {
+        Wide::normal(Quad::twice(self.leading[k]), Quad::twice(self.rest[k]))
+    }
+}
+
+/// The Taylor series about one instant; see [`Series`] for what it holds. Coefficient k is that of the k-th power of
+/// the time in trial steps.
+#[derive(Clone, Debug)]
+#[repr(C, align(64))]
+pub struct ExtendedSeries {
+    position: [Wide; TERMS],
+    half_square: Pairs,
+    force: Pairs,
+    total: [DoubleDouble; TERMS],
+    side: f64,
+    trial_step: f64,
+    jacobi: DoubleDouble,
+    log2_radius: f64,
+}
+
+impl ExtendedSeries {
+    /// Room for a series.
+    #[must_use]
+    pub fn new() -> Self {
+        Self {
+            position: [Wide::splat(DoubleDouble::default()); TERMS],
+            half_square: Pairs::new(),
+            force: Pairs::new(),
+            total: [DoubleDouble::default(); TERMS],
+            side: 0.0,
+            trial_step: 1.0,
+            jacobi: DoubleDouble::default(),
+            log2_radius: 0.0,
+        }
+    }
+
+    /// Whether no coefficient has overflowed: one that has spoils all later ones.
+    #[must_use]
+    pub fn is_finite(&self) -> bool {
+        self.position[TERMS - 2..].iter().all(|place| {
+            let Quad([x, y, z, _]) = place.to_double();
+            (x + y + z).is_finite()
+        })
+    }
+
+    /// How far the series may be carried.
+    #[must_use]
+    pub fn step(&self) -> f64 {
+        step::from_log2_radius(self.log2_radius)
+    }
+
+    /// The Jacobi constant 2Ω − v².
+    #[must_use]
+    pub fn jacobi(&self) -> DoubleDouble {
+        self.jacobi
+    }
+
+    /// The first coefficients in powers of the time, rounded: the series that the search for events works on. What it
+    /// leaves out is below the round-off within a step of this series.
+    pub fn round_to(&self, rounded: &mut Series<f64>) {
+        let per_time = 1.0 / self.trial_step;
+        let mut factor = 1.0;
+        for k in 0..ROUNDED_TERMS {
+            let scale = |value: f64| value * factor;
+            rounded.position[k] = Quad(self.position[k].to_double().0.map(scale));
+            rounded.half_square[k] = self.half_square.leading[k].map(scale);
+            rounded.force[k] = self.force.leading[k].map(scale);
+            rounded.total[k] = scale(self.total[k].to_f64());
+            factor *= per_time;
+        }
+        rounded.side = self.side;
+        rounded.jacobi = self.jacobi.to_f64();
+        rounded.log2_radius = self.log2_radius;
+    }
+}
+
+impl Default for ExtendedSeries {
+    fn default() -> Self {
+        Self::new()
+    }
+}
+
+accelerated! {
+    /// Expands the solution through `state` (x, y, z, vx, vy, vz) into `series`.
+    pub fn expand_extended(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut ExtendedSeries) {
+        recurrence::expand(primaries, state, series);
+    }
+
+    /// What position and velocity change by within `time` of the series' instant.
+    pub fn flow_extended(series: &ExtendedSeries, time: DoubleDouble) -> [DoubleDouble; 6] {
+        flow::change(series, time)
+    }
+
+    /// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
+    pub fn expand_extended_variational(
+        series: &ExtendedSeries, matrix: &[[DoubleDouble; 6]; 6], columns: &mut ExtendedColumns,
+    ) {
+        variational::expand(series, matrix, columns);
+    }
+
+    /// What the columns of the matrix change by within `time` of the series' instant.
+    pub fn flow_extended_variational(
+        series: &ExtendedSeries, columns: &ExtendedColumns, time: DoubleDouble,
+    ) -> [[DoubleDouble; 6]; 6] {
+        flow::matrix_change(series, columns, time)
+    }
+}

@@ -1,0 +1,143 @@
+//! The variational equations along a series; see [`super::super::variational`] for the formulas.
+
+use super::recurrence::{TWICE_INTEGRATED, number};
+use super::{ExtendedSeries, ORDER, Pairs, TERMS, Wide};
+use crate::arithmetic::{DoubleDouble, Quad, SumOfProducts};
+
+/// Six columns of the matrix and two lanes of nothing.
+type Row = [Wide; 2];
+
+#[inline(always)]
+fn row([a, b, c, d, e, f]: [DoubleDouble; 6]) -> Row {
+    let zero = DoubleDouble::default();
+    [Wide::of([a, b, c, d]), Wide::of([e, f, zero, zero])]
+}
+
+/// Taylor series of the six columns and of the gradient they share, in powers of the time in trial steps.
+#[derive(Clone, Debug)]
+#[repr(C, align(64))]
+pub struct ExtendedColumns {
+    /// x, y and z of the six columns.
+    pub(super) position: [[Row; 3]; TERMS],
+    /// 3 n/r² of the nearer, 3 f/r² of the farther primary.
+    steep: Pairs,
+    /// (q + p) d + side · p in x, (q + p) y, (q + p) z.
+    lever: [Wide; TERMS],
+    /// y, z, z and d of the trajectory.
+    shuffled: [Wide; TERMS],
+    /// xx, xy, xz, yy, yz, zz of the gradient.
+    gradient: [[DoubleDouble; 6]; TERMS],
+}
+
+impl ExtendedColumns {
+    /// Room for the series.
+    #[must_use]
+    pub fn new() -> Self {
+        let none = Wide::splat(DoubleDouble::default());
+        Self {
+            position: [[[none; 2]; 3]; TERMS],
+            steep: Pairs::new(),
+            lever: [none; TERMS],
+            shuffled: [none; TERMS],
+            gradient: [[DoubleDouble::default(); 6]; TERMS],
+        }
+    }
+}
+
+impl Default for ExtendedColumns {
+    fn default() -> Self {
+        Self::new()
+    }
+}
+
+/// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
+#[inline(always)]
+pub(super) fn expand(
+    series: &ExtendedSeries,
+    matrix: &[[DoubleDouble; 6]; 6],
+    columns: &mut ExtendedColumns,
+) {
+    gradient(series, columns);
+    let [x, y, z, vx, vy, vz] = matrix.map(row);
+    let trial_step = Quad::splat(series.trial_step);
+    columns.position[0] = [x, y, z];
+    columns.position[1] = [vx, vy, vz].map(|row| row.map(|half| half.scaled(trial_step)));
+    for k in 0..ORDER {
+        order(columns, k, series.trial_step);
+    }
+}
+
+#[inline(always)]
+fn gradient(s: &ExtendedSeries, c: &mut ExtendedColumns) {
+    let inverse = s.half_square.at(0).map(|half_square| DoubleDouble::from(1.0) / half_square);
+    for k in 0..ORDER {
+        let place = s.position[k];
+        c.shuffled[k] = Wide::of([place.lane(1), place.lane(2), place.lane(2), place.lane(0)]);
+    }
+    for k in 0..ORDER {
+        // 2h · q = 3 n, so h_0 q_k = 3/2 n_k − Σ h_j q_{k−j}; two terms of the sum at a time, the last one by itself.
+        let mut sum = SumOfProducts::none();
+        for j in 1..=k {
+            sum = sum.and(s.half_square.twice(j), c.steep.twice(k - j));
+        }
+        let sum = sum.total();
+        let force = s.force.at(k);
+        c.steep.set(
+            k,
+            std::array::from_fn(|which| (force[which].times(1.5) - sum.lane(which)) * inverse[which]),
+        );
+
+        let steep = c.steep.at(k);
+        let mut lever = SumOfProducts::none();
+        for j in 0..=k {
+            let [near, far] = c.steep.at(j);
+            lever = lever.and(Wide::splat(near + far), s.position[k - j]);
+        }
+        let zero = DoubleDouble::default();
+        c.lever[k] = lever.total() + Wide::of([steep[1].scaled(s.side), zero, zero, zero]);
+
+        let mut along_x = SumOfProducts::none();
+        let mut others = SumOfProducts::none();
+        for j in 0..=k {
+            let lever = c.lever[j];
+            along_x = along_x.and(Wide::splat(lever.lane(0)), s.position[k - j]);
+            let factors = [lever.lane(1), lever.lane(1), lever.lane(2), c.steep.at(j)[1]];
+            others = others.and(Wide::of(factors), c.shuffled[k - j]);
+        }
+        let (along_x, others) = (along_x.total(), others.total());
+        let total = s.total[k];
+        let diagonal = if k == 0 { DoubleDouble::from(1.0) - total } else { -total };
+        let offset = others.lane(3).scaled(s.side) + steep[1];
+        c.gradient[k] = [
+            (along_x.lane(0) + offset) + diagonal,
+            along_x.lane(1),
+            along_x.lane(2),
+            others.lane(0) + diagonal,
+            others.lane(1),
+            others.lane(2) - total,
+        ];
+    }
+}
+
+/// From the columns' coefficients up to k + 1, those of order k + 2.
+#[inline(always)]
+fn order(c: &mut ExtendedColumns, k: usize, trial_step: f64) {
+    let (before, after) = c.position.split_at_mut(k + 2);
+    let (rates, next) = (&before[k + 1], &mut after[0]);
+    let integrated = Wide::splat(TWICE_INTEGRATED[k].scaled(trial_step * trial_step));
+    let turn = Quad::splat(2.0 * number(k + 1) / trial_step);
+    for half in 0..2 {
+        let mut sums = [SumOfProducts::none(); 3];
+        for j in 0..=k {
+            let [xx, xy, xz, yy, yz, zz] = c.gradient[j].map(Wide::splat);
+            let [x, y, z] = before[k - j].map(|row| row[half]);
+            sums[0] = sums[0].and(xx, x).and(xy, y).and(xz, z);
+            sums[1] = sums[1].and(xy, x).and(yy, y).and(yz, z);
+            sums[2] = sums[2].and(xz, x).and(yz, y).and(zz, z);
+        }
+        let [x, y, z] = sums.map(SumOfProducts::total);
+        next[0][half] = (x + rates[1][half].times(turn)) * integrated;
+        next[1][half] = (y - rates[0][half].times(turn)) * integrated;
+        next[2][half] = z * integrated;
+    }
+}
