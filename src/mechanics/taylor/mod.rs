@@ -6,7 +6,7 @@
 
 #[macro_use]
 mod dispatch;
-mod extended;
+pub mod extended;
 mod recurrence;
 mod step;
 mod variational;
@@ -14,10 +14,6 @@ mod variational;
 use crate::arithmetic::{Quad, Real};
 
 pub use dispatch::{accelerated, expand, expand_variational, flow, flow_variational, jacobi_constant};
-pub use extended::{
-    ExtendedColumns, ExtendedSeries, expand_extended, expand_extended_variational, flow_extended,
-    flow_extended_variational,
-};
 pub use recurrence::Primaries;
 pub use step::{MAX_STEP, STEP_FLOOR, StepSize};
 pub use variational::Columns;

@@ -9,7 +9,7 @@ pub use products::SumOfProducts;
 use super::{Quad, sum::Compensated};
 
 /// What the halves of a double-double are made of: one double, or several side by side.
-pub trait Lanes:
+pub trait Half:
     Copy + Add<Output = Self> + Sub<Output = Self> + Mul<Output = Self> + Neg<Output = Self>
 {
     /// `value` in every lane.
@@ -20,7 +20,7 @@ pub trait Lanes:
     fn fused(self, factor: Self, addend: Self) -> Self;
 }
 
-impl Lanes for f64 {
+impl Half for f64 {
     #[inline(always)]
     fn splat(value: f64) -> Self {
         value
@@ -32,7 +32,7 @@ impl Lanes for f64 {
     }
 }
 
-impl Lanes for Quad<f64> {
+impl Half for Quad<f64> {
     #[inline(always)]
     fn splat(value: f64) -> Self {
         Self::splat(value)
@@ -46,7 +46,7 @@ impl Lanes for Quad<f64> {
 
 /// The exact sum of two, rounded and the rest.
 #[inline(always)]
-fn two_sum<V: Lanes>(a: V, b: V) -> [V; 2] {
+fn two_sum<V: Half>(a: V, b: V) -> [V; 2] {
     let sum = a + b;
     let of_b = sum - a;
     [sum, (a - (sum - of_b)) + (b - of_b)]
@@ -54,7 +54,7 @@ fn two_sum<V: Lanes>(a: V, b: V) -> [V; 2] {
 
 /// The exact product of two, rounded and the rest.
 #[inline(always)]
-fn two_product<V: Lanes>(a: V, b: V) -> [V; 2] {
+fn two_product<V: Half>(a: V, b: V) -> [V; 2] {
     let product = a * b;
     [product, a.fused(b, -product)]
 }
@@ -74,7 +74,7 @@ pub struct DoubleDouble<V = f64> {
     lo: V,
 }
 
-impl<V: Lanes> DoubleDouble<V> {
+impl<V: Half> DoubleDouble<V> {
     /// `value` in every lane.
     #[must_use]
     #[inline(always)]
@@ -230,7 +230,7 @@ impl From<DoubleDouble> for Compensated {
     }
 }
 
-impl<V: Lanes> Neg for DoubleDouble<V> {
+impl<V: Half> Neg for DoubleDouble<V> {
     type Output = Self;
 
     #[inline(always)]
@@ -239,7 +239,7 @@ impl<V: Lanes> Neg for DoubleDouble<V> {
     }
 }
 
-impl<V: Lanes> Add for DoubleDouble<V> {
+impl<V: Half> Add for DoubleDouble<V> {
     type Output = Self;
 
     #[inline(always)]
@@ -250,7 +250,7 @@ impl<V: Lanes> Add for DoubleDouble<V> {
     }
 }
 
-impl<V: Lanes> Mul for DoubleDouble<V> {
+impl<V: Half> Mul for DoubleDouble<V> {
     type Output = Self;
 
     #[inline(always)]
@@ -274,7 +274,7 @@ impl Div for DoubleDouble {
     }
 }
 
-impl<V: Lanes> Sub for DoubleDouble<V> {
+impl<V: Half> Sub for DoubleDouble<V> {
     type Output = Self;
 
     #[inline(always)]

@@ -1,6 +1,6 @@
 //! Sums of products.
 
-use super::{DoubleDouble, Lanes, two_product, two_sum};
+use super::{DoubleDouble, Half, two_product, two_sum};
 
 /// A sum of products of double-doubles that is made a double-double only at its end: the leading halves are summed
 /// with their rounding errors, everything smaller in plain doubles (Ogita, Rump & Oishi 2005, SIAM J. Sci. Comput.
@@ -12,7 +12,7 @@ pub struct SumOfProducts<V> {
     rest: V,
 }
 
-impl<V: Lanes> SumOfProducts<V> {
+impl<V: Half> SumOfProducts<V> {
     /// The sum of none.
     #[must_use]
     #[inline(always)]

@@ -3,8 +3,8 @@
 //! Powers of the time first, then sums of products: Horner's rule would wait for each product and sum in turn.
 
 use super::recurrence::number;
-use super::{ExtendedColumns, ExtendedSeries, TERMS, Wide};
-use crate::arithmetic::{DoubleDouble, Lanes, Quad, SumOfProducts};
+use super::{Columns, Series, TERMS, Wide};
+use crate::arithmetic::{DoubleDouble, Half, Quad, SumOfProducts};
 
 /// Powers of a time in trial steps, and the derivatives of the powers.
 struct Powers {
@@ -34,7 +34,7 @@ impl Powers {
 
 /// The sum of all orders from `first` on, from the highest.
 #[inline(always)]
-fn sum<V: Lanes>(
+fn sum<V: Half>(
     first: usize,
     coefficient: impl Fn(usize) -> DoubleDouble<V>,
     powers: &[DoubleDouble; TERMS],
@@ -51,7 +51,7 @@ fn sum<V: Lanes>(
 
 /// What position and velocity change by within `time`.
 #[inline(always)]
-pub(super) fn change(series: &ExtendedSeries, time: DoubleDouble) -> [DoubleDouble; 6] {
+pub(super) fn change(series: &Series, time: DoubleDouble) -> [DoubleDouble; 6] {
     let powers = Powers::new(time, series.trial_step);
     let place = sum(1, |k| series.position[k], &powers.place);
     let rate = sum(2, |k| series.position[k], &powers.rate);
@@ -61,8 +61,8 @@ pub(super) fn change(series: &ExtendedSeries, time: DoubleDouble) -> [DoubleDoub
 /// What the columns of the matrix change by within `time`.
 #[inline(always)]
 pub(super) fn matrix_change(
-    series: &ExtendedSeries,
-    columns: &ExtendedColumns,
+    series: &Series,
+    columns: &Columns,
     time: DoubleDouble,
 ) -> [[DoubleDouble; 6]; 6] {
     let powers = Powers::new(time, series.trial_step);

@@ -5,21 +5,23 @@
 //! scaling is exact, so it changes no bit of what does not overflow.
 
 mod flow;
+mod motion;
 mod recurrence;
 mod step;
 mod variational;
 
 use super::dispatch::accelerated;
-use super::{Primaries, Series, TERMS as ROUNDED_TERMS};
+use super::{Primaries, Series as RoundedSeries, TERMS as ROUNDED_TERMS};
 use crate::arithmetic::{DoubleDouble, Quad};
 
-pub use variational::ExtendedColumns;
+pub use motion::Motion;
+pub use variational::Columns;
 
-/// Order of the velocity series, even. From 32 to 40 the cost is the same within a few per cent.
-pub const ORDER: usize = 34;
+/// Order of the velocity series, even. From 32 to 38 the cost is the same within a few per cent.
+const ORDER: usize = 36;
 
 /// Coefficients of the position series.
-pub const TERMS: usize = ORDER + 2;
+const TERMS: usize = ORDER + 2;
 
 /// Four double-doubles side by side.
 type Wide = DoubleDouble<Quad<f64>>;
@@ -63,11 +65,11 @@ impl Pairs {
     }
 }
 
-/// The Taylor series about one instant; see [`Series`] for what it holds. Coefficient k is that of the k-th power of
+/// The Taylor series about one instant; see [`super::Series`] for what it holds. Coefficient k is that of the k-th power of
 /// the time in trial steps.
 #[derive(Clone, Debug)]
 #[repr(C, align(64))]
-pub struct ExtendedSeries {
+pub struct Series {
     position: [Wide; TERMS],
     half_square: Pairs,
     force: Pairs,
@@ -78,7 +80,7 @@ pub struct ExtendedSeries {
     log2_radius: f64,
 }
 
-impl ExtendedSeries {
+impl Series {
     /// Room for a series.
     #[must_use]
     pub fn new() -> Self {
@@ -117,7 +119,7 @@ impl ExtendedSeries {
 
     /// The first coefficients in powers of the time, rounded: the series that the search for events works on. What it
     /// leaves out is below the round-off within a step of this series.
-    pub fn round_to(&self, rounded: &mut Series<f64>) {
+    pub fn round_to(&self, rounded: &mut RoundedSeries<f64>) {
         let per_time = 1.0 / self.trial_step;
         let mut factor = 1.0;
         for k in 0..ROUNDED_TERMS {
@@ -134,7 +136,7 @@ impl ExtendedSeries {
     }
 }
 
-impl Default for ExtendedSeries {
+impl Default for Series {
     fn default() -> Self {
         Self::new()
     }
@@ -142,25 +144,25 @@ impl Default for ExtendedSeries {
 
 accelerated! {
     /// Expands the solution through `state` (x, y, z, vx, vy, vz) into `series`.
-    pub fn expand_extended(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut ExtendedSeries) {
+    pub fn expand(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut Series) {
         recurrence::expand(primaries, state, series);
     }
 
     /// What position and velocity change by within `time` of the series' instant.
-    pub fn flow_extended(series: &ExtendedSeries, time: DoubleDouble) -> [DoubleDouble; 6] {
+    pub fn flow(series: &Series, time: DoubleDouble) -> [DoubleDouble; 6] {
         flow::change(series, time)
     }
 
     /// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
-    pub fn expand_extended_variational(
-        series: &ExtendedSeries, matrix: &[[DoubleDouble; 6]; 6], columns: &mut ExtendedColumns,
+    pub fn expand_variational(
+        series: &Series, matrix: &[[DoubleDouble; 6]; 6], columns: &mut Columns,
     ) {
         variational::expand(series, matrix, columns);
     }
 
     /// What the columns of the matrix change by within `time` of the series' instant.
-    pub fn flow_extended_variational(
-        series: &ExtendedSeries, columns: &ExtendedColumns, time: DoubleDouble,
+    pub fn flow_variational(
+        series: &Series, columns: &Columns, time: DoubleDouble,
     ) -> [[DoubleDouble; 6]; 6] {
         flow::matrix_change(series, columns, time)
     }

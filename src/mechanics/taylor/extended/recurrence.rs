@@ -1,7 +1,7 @@
 //! The recurrences of [`super::super::recurrence`], in the same order, with sums of products that keep what their
 //! rounding loses.
 
-use super::{ExtendedSeries, ORDER, Pairs, TERMS, Wide, step};
+use super::{ORDER, Pairs, Series, TERMS, Wide, step};
 use crate::arithmetic::{DoubleDouble, Quad, SumOfProducts};
 use crate::taylor::Primaries;
 
@@ -47,7 +47,7 @@ struct Leading {
 
 /// Expands the solution through (x, y, z, vx, vy, vz) into `series`.
 #[inline(always)]
-pub(super) fn expand(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut ExtendedSeries) {
+pub(super) fn expand(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut Series) {
     let leading = start(primaries, state, series);
     for k in (0..ORDER).step_by(2) {
         pair(&leading, series, k);
@@ -57,7 +57,7 @@ pub(super) fn expand(primaries: &Primaries, state: &[DoubleDouble; 6], series: &
 
 /// Order 0 of everything.
 #[inline(always)]
-fn start(primaries: &Primaries, state: &[DoubleDouble; 6], s: &mut ExtendedSeries) -> Leading {
+fn start(primaries: &Primaries, state: &[DoubleDouble; 6], s: &mut Series) -> Leading {
     let [x, y, z, vx, vy, vz] = *state;
     let zero = DoubleDouble::default();
     let share_smaller = DoubleDouble::from(primaries.mass_parameter());
@@ -98,7 +98,7 @@ fn start(primaries: &Primaries, state: &[DoubleDouble; 6], s: &mut ExtendedSerie
 
 /// From the position's coefficients up to `k` + 1, those of order `k` + 2 and `k` + 3.
 #[inline(always)]
-fn pair(leading: &Leading, s: &mut ExtendedSeries, k: usize) {
+fn pair(leading: &Leading, s: &mut Series, k: usize) {
     let half_squares = half_squares(&s.position, k);
     let [settled_even, settled_odd] = settled_products(&s.total, &s.position, k);
 

@@ -1,7 +1,7 @@
 //! Trial step and step size.
 
 use super::recurrence::number;
-use super::{ExtendedSeries, ORDER};
+use super::{ORDER, Series};
 use crate::arithmetic::{Quad, Real};
 use crate::taylor::MAX_STEP;
 
@@ -12,7 +12,7 @@ const ESTIMATED_FROM: [usize; 2] = [ORDER - 1, ORDER];
 const SMALLEST_COEFFICIENT: f64 = 1e-300;
 
 /// Base-2 logarithm of the relative local error per step.
-const LOG2_TOLERANCE: f64 = -104.0;
+const LOG2_TOLERANCE: f64 = -102.0;
 
 /// The shortest trial step: far below every step.
 const SHORTEST_TRIAL: f64 = f64::from_bits(((1023 - 100) as u64) << 52);
@@ -29,7 +29,7 @@ pub(super) fn trial(distance: f64, speed: f64, rate: f64) -> f64 {
 
 /// log₂ of the radius of convergence, as for a series in double precision.
 #[inline(always)]
-pub(super) fn log2_radius(s: &ExtendedSeries) -> f64 {
+pub(super) fn log2_radius(s: &Series) -> f64 {
     let size = |k: usize| {
         let Quad([x, y, z, _]) = s.position[k].to_double();
         Real::max(Real::max(Real::abs(x), Real::abs(y)), Real::abs(z))

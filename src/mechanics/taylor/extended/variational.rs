@@ -1,7 +1,7 @@
 //! The variational equations along a series; see [`super::super::variational`] for the formulas.
 
 use super::recurrence::{TWICE_INTEGRATED, number};
-use super::{ExtendedSeries, ORDER, Pairs, TERMS, Wide};
+use super::{ORDER, Pairs, Series, TERMS, Wide};
 use crate::arithmetic::{DoubleDouble, Quad, SumOfProducts};
 
 /// Six columns of the matrix and two lanes of nothing.
@@ -16,7 +16,7 @@ fn row([a, b, c, d, e, f]: [DoubleDouble; 6]) -> Row {
 /// Taylor series of the six columns and of the gradient they share, in powers of the time in trial steps.
 #[derive(Clone, Debug)]
 #[repr(C, align(64))]
-pub struct ExtendedColumns {
+pub struct Columns {
     /// x, y and z of the six columns.
     pub(super) position: [[Row; 3]; TERMS],
     /// 3 n/r² of the nearer, 3 f/r² of the farther primary.
@@ -29,7 +29,7 @@ pub struct ExtendedColumns {
     gradient: [[DoubleDouble; 6]; TERMS],
 }
 
-impl ExtendedColumns {
+impl Columns {
     /// Room for the series.
     #[must_use]
     pub fn new() -> Self {
@@ -44,7 +44,7 @@ impl ExtendedColumns {
     }
 }
 
-impl Default for ExtendedColumns {
+impl Default for Columns {
     fn default() -> Self {
         Self::new()
     }
@@ -52,11 +52,7 @@ impl Default for ExtendedColumns {
 
 /// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
 #[inline(always)]
-pub(super) fn expand(
-    series: &ExtendedSeries,
-    matrix: &[[DoubleDouble; 6]; 6],
-    columns: &mut ExtendedColumns,
-) {
+pub(super) fn expand(series: &Series, matrix: &[[DoubleDouble; 6]; 6], columns: &mut Columns) {
     gradient(series, columns);
     let [x, y, z, vx, vy, vz] = matrix.map(row);
     let trial_step = Quad::splat(series.trial_step);
@@ -68,7 +64,7 @@ pub(super) fn expand(
 }
 
 #[inline(always)]
-fn gradient(s: &ExtendedSeries, c: &mut ExtendedColumns) {
+fn gradient(s: &Series, c: &mut Columns) {
     let inverse = s.half_square.at(0).map(|half_square| DoubleDouble::from(1.0) / half_square);
     for k in 0..ORDER {
         let place = s.position[k];
@@ -121,7 +117,7 @@ fn gradient(s: &ExtendedSeries, c: &mut ExtendedColumns) {
 
 /// From the columns' coefficients up to k + 1, those of order k + 2.
 #[inline(always)]
-fn order(c: &mut ExtendedColumns, k: usize, trial_step: f64) {
+fn order(c: &mut Columns, k: usize, trial_step: f64) {
     let (before, after) = c.position.split_at_mut(k + 2);
     let (rates, next) = (&before[k + 1], &mut after[0]);
     let integrated = Wide::splat(TWICE_INTEGRATED[k].scaled(trial_step * trial_step));
