@@ -2,7 +2,8 @@
 
 use std::f64::consts::SQRT_2;
 
-use mechanics::arithmetic::DoubleDouble;
+use mechanics::arithmetic::{DoubleDouble, Quad, SumOfProducts};
+use proptest::prelude::*;
 
 /// Values of mpmath at 50 digits, each as its nearest double and that of the rest.
 #[test]
@@ -34,4 +35,65 @@ fn sums_and_products_of_doubles_are_exact() {
     assert_eq!(rest, DoubleDouble::from(epsilon * epsilon));
     assert_eq!(DoubleDouble::default().sqrt(), DoubleDouble::default());
     assert!(DoubleDouble::sum(1.0, -tiny) < DoubleDouble::from(1.0));
+}
+
+/// An integer of up to 62 bits, exactly.
+#[expect(clippy::cast_precision_loss, clippy::cast_possible_truncation, reason = "the rest makes up for it")]
+fn from_integer(value: i64) -> DoubleDouble {
+    let high = value as f64;
+    DoubleDouble::sum(high, (i128::from(value) - high as i128) as f64)
+}
+
+/// The nearest integer to a number of up to 126 bits.
+#[expect(clippy::cast_possible_truncation, reason = "the numbers are so chosen")]
+fn to_integer(value: DoubleDouble) -> i128 {
+    let [high, low] = value.halves();
+    high as i128 + low.round() as i128
+}
+
+fn wide() -> std::ops::Range<i64> {
+    -(1 << 60)..1 << 60
+}
+
+proptest! {
+    /// Against integers, which are exact.
+    #[test]
+    fn double_double_agrees_with_integers(a in wide(), b in wide()) {
+        let exact = i128::from(a) * i128::from(b);
+        let (x, y) = (from_integer(a), from_integer(b));
+        prop_assert!((to_integer(x * y) - exact).abs() <= exact.abs() >> 102);
+        prop_assert_eq!(to_integer(x + y), i128::from(a) + i128::from(b));
+        prop_assert_eq!(to_integer(x - y), i128::from(a) - i128::from(b));
+        let halves = Quad::splat(0.5);
+        let lanes = (DoubleDouble::of([x, y, x, y]) * DoubleDouble::of([y, y, x, x])).scaled(halves);
+        prop_assert_eq!(lanes.lane(0), (x * y).scaled(0.5));
+        prop_assert_eq!(lanes.lane(1), y.squared().scaled(0.5));
+    }
+
+    #[test]
+    fn sums_of_products_agree_with_integers(factors in prop::collection::vec((wide(), wide()), 1..8)) {
+        let exact: i128 = factors.iter().map(|(a, b)| i128::from(*a) * i128::from(*b)).sum();
+        let size: i128 = factors.iter().map(|(a, b)| (i128::from(*a) * i128::from(*b)).abs()).sum();
+        let mut sum = SumOfProducts::none();
+        for (a, b) in &factors {
+            sum = sum.and(from_integer(*a), from_integer(*b));
+        }
+        prop_assert!((to_integer(sum.total()) - exact).abs() <= (size >> 100) + 1);
+    }
+
+    #[test]
+    fn quotients_and_roots_are_undone_by_products(a in 1..1_i64 << 60, b in 1..1_i64 << 60) {
+        let (x, y) = (from_integer(a), from_integer(b));
+        let limit = 2.0_f64.powi(-101) * x.to_f64();
+        prop_assert!((x / y * y - x).abs().to_f64() <= limit);
+        prop_assert!((x.sqrt().squared() - x).abs().to_f64() <= limit);
+    }
+}
+
+#[test]
+fn reciprocals_of_small_integers() {
+    for n in 1..2000_u32 {
+        let found = DoubleDouble::reciprocal(n as usize) * f64::from(n) - 1.0;
+        assert!(found.abs().to_f64() < 2.0_f64.powi(-104), "{n}");
+    }
 }

@@ -7,6 +7,7 @@
 mod arithmetic;
 mod elements;
 mod equilibria;
+mod extended;
 mod frame;
 mod hill;
 mod potential;

@@ -5,7 +5,7 @@
 Collinear points: the force on the x axis, bisected (no quintic). Eigenvalues: of the 6x6 matrix of the
 linearised equations, by mpmath's QR algorithm (no closed form). Jacobi constants: the plain formula. Regions: the
 ascent integrated by scipy's DOP853 until it is deep in a primary's well or far away. Working precision of mpmath
-is high enough for every cancellation; 40 digits are printed. Inputs are the exact values of the doubles printed.
+is high enough for every cancellation; 40 digits are printed. Fly-bys: Gragg's midpoint rule, extrapolated (Bulirsch & Stoer). Inputs are the exact values of the doubles printed.
 """
 
 import random
@@ -135,7 +135,66 @@ def regions():
     (HERE / "regions.txt").write_text("\n".join(rows) + "\n")
 
 
+def rates(mu, state):
+    x, y, z, vx, vy, vz = state
+    n = (1 - mu) / sqrt((x + mu) ** 2 + y**2 + z**2) ** 3
+    f = mu / sqrt((x - 1 + mu) ** 2 + y**2 + z**2) ** 3
+    return [vx, vy, vz, x + 2 * vy - n * (x + mu) - f * (x - 1 + mu), y - 2 * vx - (n + f) * y, -(n + f) * z]
+
+
+def midpoint(mu, start, length, parts):
+    h = length / parts
+    before, here = start, [a + h * b for a, b in zip(start, rates(mu, start))]
+    for _ in range(parts - 1):
+        before, here = here, [a + 2 * h * b for a, b in zip(before, rates(mu, here))]
+    return [(a + b + h * c) / 2 for a, b, c in zip(before, here, rates(mu, here))]
+
+
+def extrapolated(mu, start, length, tolerance, columns=18):
+    """The state a step on; None where the columns do not converge."""
+    table = []
+    for column in range(columns):
+        row = [midpoint(mu, start, length, 2 * (column + 1))]
+        for k in range(1, column + 1):
+            ratio = (mpf(column + 1) / (column + 1 - k)) ** 2 - 1
+            row.append([a + (a - b) / ratio for a, b in zip(row[-1], table[k - 1])])
+        if table and max(abs(a - b) for a, b in zip(row[-1], row[-2])) < tolerance:
+            return row[-1]
+        table = row
+    return None
+
+
+def propagated(mu, state, duration):
+    """Also the nearest distance to the smaller primary at the ends of the steps."""
+    time, length, nearest = mpf(0), duration / 64, mpf(1)
+    while time < duration:
+        length = min(length, duration - time)
+        after = extrapolated(mu, state, length, mpf(10) ** -44)
+        if after is None:
+            length /= 2
+            continue
+        state, time = after, time + length
+        nearest = min(nearest, sqrt((state[0] - 1 + mu) ** 2 + state[1] ** 2 + state[2] ** 2))
+        length *= mpf(3) / 2
+    return state, nearest
+
+
+def fly_bys():
+    """A fall towards the smaller primary from rest at 0.01 but for an angular momentum, and back again."""
+    rows = ["# mu x y z vx vy vz t | x y z vx vy vz at t, nearest distance to the smaller primary"]
+    mp.dps = 60
+    mu, t = 0.01215058560962404, 0.02
+    for nearest in (1e-5, 1e-6, 1e-7):
+        across = float(sqrt(2 * mpf(mu) * nearest) / mpf(0.01) / sqrt(2))
+        start = [1 - mu + 0.01, 0.0, 0.0, 0.0, across - 0.01, across]
+        end, reached = propagated(mpf(mu), [mpf(c) for c in start], mpf(t))
+        inputs = [repr(c) for c in (mu, *start, t)]
+        rows.append(" ".join([*inputs, *(digits(c) for c in end), nstr(reached, 3)]))
+    (HERE / "fly_bys.txt").write_text("\n".join(rows) + "\n")
+
+
 if __name__ == "__main__":
+    fly_bys()
     equilibria()
     states()
     regions()

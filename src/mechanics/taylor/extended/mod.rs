@@ -167,3 +167,38 @@ accelerated! {
         flow::matrix_change(series, columns, time)
     }
 }
+
+#[cfg(test)]
+mod tests {
+    use super::{Columns, DoubleDouble, Primaries, Series, flow, recurrence, variational};
+
+    /// Without target features `mul_add` is the software's; the results are the same to the bit.
+    #[test]
+    fn portable_and_accelerated_paths_have_the_same_bits() {
+        let primaries = Primaries::new(0.0121);
+        let mut state = [0.83, 0.05, -0.03, 0.02, 0.31, -0.1].map(DoubleDouble::from);
+        let matrix = std::array::from_fn(|i| {
+            std::array::from_fn(|j| DoubleDouble::from(if i == j { 1.0 } else { 0.25 }))
+        });
+        let (mut fast, mut plain) = (Series::new(), Series::new());
+        let (mut fast_columns, mut plain_columns) = (Columns::new(), Columns::new());
+        for _ in 0..20 {
+            super::expand(&primaries, &state, &mut fast);
+            recurrence::expand(&primaries, &state, &mut plain);
+            assert_eq!(format!("{fast:?}"), format!("{plain:?}"));
+
+            super::expand_variational(&fast, &matrix, &mut fast_columns);
+            variational::expand(&plain, &matrix, &mut plain_columns);
+            assert_eq!(format!("{fast_columns:?}"), format!("{plain_columns:?}"));
+
+            let time = DoubleDouble::reciprocal(17);
+            let moved = flow(&fast, time);
+            assert_eq!(moved, flow::change(&plain, time));
+            let matrices = super::flow_variational(&fast, &fast_columns, time);
+            assert_eq!(matrices, flow::matrix_change(&plain, &plain_columns, time));
+            for (component, moved) in state.iter_mut().zip(moved) {
+                *component = *component + moved;
+            }
+        }
+    }
+}

@@ -1,0 +1,163 @@
+//! Motion in double-double arithmetic, before anything is rounded.
+
+use mechanics::arithmetic::DoubleDouble;
+use mechanics::taylor::extended::Motion;
+use mechanics::taylor::{Primaries, STEP_FLOOR};
+
+use crate::reference::{number, rows};
+
+/// Final states and matrices; the table says where they are from.
+const TRUTH: &str = include_str!("reference/trajectories.txt");
+/// Final states after close fly-bys. `make.py` made them and says how.
+const FLY_BYS: &str = include_str!("reference/fly_bys.txt");
+
+const MU: f64 = 0.01215058560962404;
+const HALO: [f64; 6] = [1.1720459535998, 0.0, -0.0862, 0.0, -0.1880035431733172, 0.0];
+const HALO_PERIOD: f64 = 3.3517255182390353;
+const RECTILINEAR: [f64; 6] = [1.022026179865368, 0.0, -0.1821, 0.0, -0.10326652171473427, 0.0];
+/// Hairer, Nørsett & Wanner, *Solving Ordinary Differential Equations I*, §II.0.
+const ARENSTORF_MU: f64 = 0.012277471;
+const ARENSTORF: [f64; 6] = [0.994, 0.0, 0.0, 0.0, -2.00158510637908252240537862224, 0.0];
+const ARENSTORF_PERIOD: f64 = 17.0652165601579625588917206249;
+
+/// A printed number with all the digits that double-double has.
+fn precise(printed: &str) -> DoubleDouble {
+    let (mantissa, exponent) = printed.split_once('e').unwrap_or((printed, "0"));
+    let (sign, mantissa) = mantissa.strip_prefix('-').map_or((1.0, mantissa), |rest| (-1.0, rest));
+    let (whole, fraction) = mantissa.split_once('.').unwrap_or((mantissa, ""));
+    let mut value = DoubleDouble::default();
+    for digit in whole.chars().chain(fraction.chars()).filter_map(|c| c.to_digit(10)) {
+        value = value * 10.0 + f64::from(digit);
+    }
+    let exponent: i32 = exponent.parse().expect("an exponent");
+    let places = exponent - i32::try_from(fraction.len()).expect("a short number");
+    for _ in 0..places.abs() {
+        value = if places < 0 { value / 10.0 } else { value * 10.0 };
+    }
+    value * sign
+}
+
+/// The six numbers of a row of the table.
+fn truth(case: &str, which: &str) -> [DoubleDouble; 6] {
+    let row = rows(TRUTH).find(|row| row[0] == case && row[1] == which).expect("a row of the table");
+    std::array::from_fn(|i| precise(row[i + 2]))
+}
+
+/// The end of a motion, and its number of steps.
+fn propagated(mut motion: Motion, duration: f64) -> (Motion, usize) {
+    let mut left = DoubleDouble::from(duration);
+    for steps in 1..100_000 {
+        motion.expand();
+        motion.expand_matrix();
+        let step = motion.series().step();
+        assert!(motion.series().is_finite() && step > STEP_FLOOR);
+        if step >= left.abs().to_f64() {
+            motion.advance(left);
+            return (motion, steps);
+        }
+        let step = DoubleDouble::from(step.copysign(duration));
+        motion.advance(step);
+        left = left - step;
+    }
+    unreachable!("the tests' orbits take fewer steps");
+}
+
+fn motion(mu: f64, state: [f64; 6]) -> Motion {
+    Motion::new(Primaries::new(mu), state.map(DoubleDouble::from), false)
+}
+
+/// Largest difference of the positions' or the velocities' components.
+fn apart(found: &[DoubleDouble], expected: &[DoubleDouble]) -> f64 {
+    found.iter().zip(expected).map(|(a, b)| (*a - *b).abs().to_f64()).fold(0.0, f64::max)
+}
+
+#[test]
+fn final_states_of_many_digits() {
+    // The table's 46 digits come from an integration with about 100, which a second one confirms to 31. The bounds are
+    // what 106 bits leave where the orbit amplifies the first rounding by up to 1e8.
+    for (case, mu, state, duration, bounds) in [
+        ("halo_period", MU, HALO, HALO_PERIOD, [1e-29, 1e-29]),
+        ("arenstorf", ARENSTORF_MU, ARENSTORF, ARENSTORF_PERIOD, [1e-27, 1e-25]),
+        ("nrho_30", MU, RECTILINEAR, 30.0, [1e-22, 1e-22]),
+    ] {
+        let (end, _) = propagated(motion(mu, state), duration);
+        let truth = truth(case, "final");
+        let errors = [apart(&end.state()[..3], &truth[..3]), apart(&end.state()[3..], &truth[3..])];
+        assert!(errors[0] <= bounds[0] && errors[1] <= bounds[1], "{case}: {errors:?}");
+    }
+}
+
+#[test]
+fn effort() {
+    // Steps, not seconds: a slow-down shows without a clock.
+    assert_eq!(propagated(motion(MU, HALO), HALO_PERIOD).1, 27);
+    assert_eq!(propagated(motion(ARENSTORF_MU, ARENSTORF), ARENSTORF_PERIOD).1, 185);
+}
+
+#[test]
+fn matrices_of_many_digits() {
+    for (case, state, duration) in [("stm_halo", HALO, HALO_PERIOD), ("stm_nrho", RECTILINEAR, 1.511)] {
+        let start = Motion::new(Primaries::new(MU), state.map(DoubleDouble::from), true);
+        let (end, _) = propagated(start, duration);
+        let matrix = end.matrix().expect("asked for");
+        let truth: [_; 6] = std::array::from_fn(|i| truth(case, &format!("m{i}")));
+        let largest = truth.iter().flatten().map(|e| e.abs().to_f64()).fold(0.0, f64::max);
+        for (row, expected) in matrix.iter().zip(&truth) {
+            let error = apart(row, expected) / largest;
+            assert!(error < 1e-26, "{case}: {error:e}");
+        }
+    }
+}
+
+#[test]
+fn there_and_back() {
+    let (end, _) = propagated(motion(MU, HALO), HALO_PERIOD);
+    let (start, _) = propagated(end, -HALO_PERIOD);
+    assert!(apart(start.state(), &HALO.map(DoubleDouble::from)) < 1e-27);
+}
+
+/// At 1e-5, 1e-6 and 1e-7 of the smaller primary's centre.
+#[test]
+fn fly_bys_stay_finite_and_accurate() {
+    for row in rows(FLY_BYS) {
+        let start = std::array::from_fn(|i| number(row[i + 1]));
+        let (end, _) = propagated(motion(number(row[0]), start), number(row[7]));
+        let truth: [_; 6] = std::array::from_fn(|i| precise(row[i + 8]));
+        let errors = [apart(&end.state()[..3], &truth[..3]), apart(&end.state()[3..], &truth[3..])];
+        // What 1e-32 of the distance between the primaries grows to: it turns the fly-by by 1e-32 of its own size.
+        assert!(errors[0] < 1e-20 && errors[1] < 1e-18, "{errors:?}");
+    }
+}
+
+#[test]
+fn dense_output_is_a_shorter_step() {
+    let mut motion = motion(MU, HALO);
+    motion.expand();
+    let step = motion.series().step();
+    for share in [0.0, 0.25, 0.7, 1.0] {
+        let at = DoubleDouble::from(share * step);
+        let within = motion.state_at(at);
+        let mut shorter = motion.clone();
+        shorter.advance(at);
+        assert_eq!(shorter.state(), &within);
+    }
+}
+
+#[test]
+fn the_rounded_series_is_that_of_double_precision() {
+    use mechanics::arithmetic::sum::Compensated;
+    let mut motion = motion(MU, RECTILINEAR);
+    motion.expand();
+    let (mut rounded, mut double) = Default::default();
+    motion.series().round_to(&mut rounded);
+    mechanics::taylor::expand(&Primaries::new(MU), &RECTILINEAR.map(Compensated::new), &mut double);
+    for time in [0.01, -0.02] {
+        let found = mechanics::taylor::flow(&rounded, time);
+        let expected = mechanics::taylor::flow(&double, time);
+        for (found, expected) in found.iter().zip(expected) {
+            assert!((found - expected).abs() <= 1e-15, "{found:e} {expected:e}");
+        }
+    }
+    assert!((rounded.jacobi - double.jacobi).abs() < 1e-14);
+    assert!((rounded.log2_radius - double.log2_radius).abs() < 0.5);
+}
