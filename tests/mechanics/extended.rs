@@ -4,6 +4,7 @@ use mechanics::arithmetic::DoubleDouble;
 use mechanics::taylor::extended::Motion;
 use mechanics::taylor::{Primaries, STEP_FLOOR};
 
+use crate::propagation::{HALO, HALO_PERIOD, MU};
 use crate::reference::{number, rows};
 
 /// Final states and matrices; the table says where they are from.
@@ -11,17 +12,14 @@ const TRUTH: &str = include_str!("reference/trajectories.txt");
 /// Final states after close fly-bys. `make.py` made them and says how.
 const FLY_BYS: &str = include_str!("reference/fly_bys.txt");
 
-const MU: f64 = 0.01215058560962404;
-const HALO: [f64; 6] = [1.1720459535998, 0.0, -0.0862, 0.0, -0.1880035431733172, 0.0];
-const HALO_PERIOD: f64 = 3.3517255182390353;
-const RECTILINEAR: [f64; 6] = [1.022026179865368, 0.0, -0.1821, 0.0, -0.10326652171473427, 0.0];
+pub(crate) const RECTILINEAR: [f64; 6] = [1.022026179865368, 0.0, -0.1821, 0.0, -0.10326652171473427, 0.0];
 /// Hairer, Nørsett & Wanner, *Solving Ordinary Differential Equations I*, §II.0.
-const ARENSTORF_MU: f64 = 0.012277471;
-const ARENSTORF: [f64; 6] = [0.994, 0.0, 0.0, 0.0, -2.00158510637908252240537862224, 0.0];
-const ARENSTORF_PERIOD: f64 = 17.0652165601579625588917206249;
+pub(crate) const ARENSTORF_MU: f64 = 0.012277471;
+pub(crate) const ARENSTORF: [f64; 6] = [0.994, 0.0, 0.0, 0.0, -2.00158510637908252240537862224, 0.0];
+pub(crate) const ARENSTORF_PERIOD: f64 = 17.0652165601579625588917206249;
 
 /// A printed number with all the digits that double-double has.
-fn precise(printed: &str) -> DoubleDouble {
+pub(crate) fn precise(printed: &str) -> DoubleDouble {
     let (mantissa, exponent) = printed.split_once('e').unwrap_or((printed, "0"));
     let (sign, mantissa) = mantissa.strip_prefix('-').map_or((1.0, mantissa), |rest| (-1.0, rest));
     let (whole, fraction) = mantissa.split_once('.').unwrap_or((mantissa, ""));
@@ -38,13 +36,13 @@ fn precise(printed: &str) -> DoubleDouble {
 }
 
 /// The six numbers of a row of the table.
-fn truth(case: &str, which: &str) -> [DoubleDouble; 6] {
+pub(crate) fn truth(case: &str, which: &str) -> [DoubleDouble; 6] {
     let row = rows(TRUTH).find(|row| row[0] == case && row[1] == which).expect("a row of the table");
     std::array::from_fn(|i| precise(row[i + 2]))
 }
 
 /// The end of a motion, and its number of steps.
-fn propagated(mut motion: Motion, duration: f64) -> (Motion, usize) {
+pub(crate) fn propagated(mut motion: Motion, duration: f64) -> (Motion, usize) {
     let mut left = DoubleDouble::from(duration);
     for steps in 1..100_000 {
         motion.expand();
@@ -62,7 +60,7 @@ fn propagated(mut motion: Motion, duration: f64) -> (Motion, usize) {
     unreachable!("the tests' orbits take fewer steps");
 }
 
-fn motion(mu: f64, state: [f64; 6]) -> Motion {
+pub(crate) fn motion(mu: f64, state: [f64; 6]) -> Motion {
     Motion::new(Primaries::new(mu), state.map(DoubleDouble::from), false)
 }
 

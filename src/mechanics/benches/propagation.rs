@@ -8,7 +8,7 @@ use mechanics::frame::Frame;
 use mechanics::interrupt::Never;
 use mechanics::propagation::event::{Direction, Event, Plane, When};
 use mechanics::propagation::{
-    Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling, Trajectory, solve,
+    Arithmetic, Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling, Trajectory, solve,
 };
 use mechanics::quantity::{Duration, MassParameter, Quantity, Tolerance};
 use mechanics::state::State;
@@ -33,6 +33,8 @@ fn parts(mu: f64, state: [f64; 6], duration: f64) -> RequestParts {
         events: Vec::new(),
         manoeuvres: Vec::new(),
         contact: Contact::default(),
+        arithmetic: Arithmetic::Double,
+        audit: false,
         limits: Limits { steps: 1_000_000, events: 100_000, sample_values: 20_000_000 },
     }
 }

@@ -107,6 +107,23 @@ pub enum Invalid {
         /// Numbers granted.
         limit: u64,
     },
+    /// An audit of what is already computed in the audit's arithmetic.
+    #[error(
+        "computes in double_double what was computed in double; there is nothing finer to audit double_double with"
+    )]
+    AuditOfDoubleDouble,
+    /// An audit that takes more steps than granted.
+    #[error(
+        "trajectory {trajectory} and its audit take the work of at least {asked} steps; at most {limit} are allowed"
+    )]
+    AuditSteps {
+        /// The first such trajectory.
+        trajectory: usize,
+        /// Steps that it takes at least, those in double-double arithmetic weighted.
+        asked: u64,
+        /// Steps granted.
+        limit: u64,
+    },
 }
 
 impl Invalid {
@@ -118,6 +135,7 @@ impl Invalid {
                 | Self::TimeOutside { .. }
                 | Self::ManoeuvreOutside { .. }
                 | Self::ManoeuvreBackwards { .. }
+                | Self::AuditSteps { .. }
         )
     }
 }

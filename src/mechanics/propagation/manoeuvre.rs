@@ -2,7 +2,8 @@
 
 use nalgebra::{Matrix3, Matrix6, Vector3};
 
-use crate::frame::Frame;
+use crate::arithmetic::DoubleDouble;
+use crate::frame::{Axes, Frame};
 use crate::state::State;
 
 /// An impulse at an instant.
@@ -45,6 +46,50 @@ impl Manoeuvre {
             }
         }
     }
+}
+
+type Precise = [DoubleDouble; 3];
+
+impl Manoeuvre {
+    /// The velocity that is added to a state, both of the default frame, in double-double arithmetic; none where the
+    /// state leaves an axis of the burn undefined. `origin` is the x of the request's frame. A change along axes at rest
+    /// is turned into rotating ones in double precision: these very components are what it means.
+    pub(super) fn precise_impulse(
+        &self,
+        frame: Frame,
+        origin: DoubleDouble,
+        state: &[DoubleDouble; 6],
+    ) -> Option<Precise> {
+        if self.axes == BurnAxes::Frame {
+            let change = frame.direction_to_default(self.time, &self.delta_v);
+            return Some([change.x, change.y, change.z].map(DoubleDouble::from));
+        }
+        let [x, y, z, vx, vy, vz] = *state;
+        let r = [x - origin, y, z];
+        // Along the velocity as the request's frame sees it, in the rotating axes.
+        let v = if frame.axes == Axes::Inertial { [vx - r[1], vy + r[0], vz] } else { [vx, vy, vz] };
+        let normal = cross(&r, &v);
+        let mut change = Precise::default();
+        for (component, direction) in
+            [(self.delta_v.x, v), (self.delta_v.y, normal), (self.delta_v.z, cross(&v, &normal))]
+        {
+            if component == 0.0 {
+                continue;
+            }
+            let [a, b, c] = direction.map(DoubleDouble::squared);
+            let length = (a + b + c).sqrt();
+            if length == DoubleDouble::default() {
+                return None;
+            }
+            let factor = DoubleDouble::from(component) / length;
+            change = std::array::from_fn(|i| change[i] + direction[i] * factor);
+        }
+        Some(change)
+    }
+}
+
+fn cross(a: &Precise, b: &Precise) -> Precise {
+    [a[1] * b[2] - a[2] * b[1], a[2] * b[0] - a[0] * b[2], a[0] * b[1] - a[1] * b[0]]
 }
 
 /// The change of velocity with the components `along` v, r × v and v × (r × v), and its derivatives with respect

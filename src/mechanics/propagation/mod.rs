@@ -4,6 +4,7 @@
 //! the Jacobi constant stays a random walk of the unit round-off. Samples and events are evaluated from the
 //! Taylor polynomial of the step they fall into: they cost no step and change none.
 
+mod audit;
 mod course;
 pub mod event;
 mod invalid;
@@ -24,7 +25,9 @@ use crate::state::State;
 
 pub use invalid::Invalid;
 pub use manoeuvre::{BurnAxes, Manoeuvre};
-pub use request::{Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling};
+pub use request::{
+    Arithmetic, Contact, Durations, EXTENDED_WEIGHT, Limits, MatrixOutput, Request, RequestParts, Sampling,
+};
 
 /// Why a trajectory ended.
 #[derive(Clone, Copy, Debug, Eq, PartialEq)]
@@ -82,6 +85,24 @@ pub struct Evidence {
     pub determinant_defect: Option<f64>,
     /// Largest element of `|MᵀJM − J|` of that matrix, the largest of the legs.
     pub symplectic_defect: Option<f64>,
+    /// The true error of the last state, where asked for.
+    pub audit: Option<Audit>,
+}
+
+/// The difference of a trajectory from the same one in double-double arithmetic: from the same bits, with the same
+/// manoeuvres, at the very time that it ended.
+///
+/// What is compared is the last state as it is answered, in rotating axes about the frame's origin. What turning it
+/// into inertial axes rounds, and the turning of inertial initial states and impulses into rotating axes, is not part
+/// of the error: both computations take the same.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub struct Audit {
+    /// [`Outcome::Complete`], or why the time that the trajectory ended at was not reached.
+    pub outcome: Outcome,
+    /// Euclidean norm of the error of the position in the request's frame, where it was reached.
+    pub position_error: Option<f64>,
+    /// The same of the velocity.
+    pub velocity_error: Option<f64>,
 }
 
 /// A trajectory in the request's frame.

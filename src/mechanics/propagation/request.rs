@@ -8,7 +8,8 @@ use crate::frame::{Frame, Origin};
 use crate::quantity::{Distance, Duration, MassParameter, Quantity, Tolerance};
 use crate::state::State;
 use crate::system::Primary;
-use crate::taylor::{Primaries, StepSize};
+use crate::taylor::extended::EXTENDED_TOLERANCE;
+use crate::taylor::{MAX_STEP, Primaries, StepSize};
 
 /// Numbers of a sample: time, position and velocity.
 const STATE_VALUES: u64 = 7;
@@ -47,6 +48,20 @@ pub enum MatrixOutput {
     /// That of the final state and of each sample.
     Samples,
 }
+
+/// The arithmetic that trajectories are computed in.
+#[derive(Clone, Copy, Debug, Default, Eq, PartialEq)]
+pub enum Arithmetic {
+    /// Double precision.
+    #[default]
+    Double,
+    /// About 31 digits; the answer is rounded. The tolerance is then [`EXTENDED_TOLERANCE`].
+    DoubleDouble,
+}
+
+/// What a step in double-double arithmetic counts among the steps granted: it takes as long as so many in double
+/// precision (measured: 30 to 35).
+pub const EXTENDED_WEIGHT: u64 = 32;
 
 /// The durations of the trajectories.
 #[derive(Clone, Debug, PartialEq)]
@@ -100,6 +115,10 @@ pub struct RequestParts {
     pub manoeuvres: Vec<Manoeuvre>,
     /// Surfaces.
     pub contact: Contact,
+    /// What they are computed in.
+    pub arithmetic: Arithmetic,
+    /// Whether each is computed again in double-double arithmetic, to measure its true error.
+    pub audit: bool,
     /// Bounds.
     pub limits: Limits,
 }
@@ -134,6 +153,7 @@ impl Request {
         request.check_states(&mut problems);
         request.check_sampling(spanned, &mut problems);
         request.check_manoeuvres(&mut problems);
+        request.check_audit(spanned, &mut problems);
         for list in request.parts.manoeuvres.iter_mut().filter_map(|m| m.trajectories.as_mut()) {
             list.sort_unstable();
         }
@@ -165,6 +185,20 @@ impl Request {
 
     pub(super) fn step_size(&self) -> StepSize {
         self.step_size
+    }
+
+    /// The relative local error per step that is kept to.
+    #[must_use]
+    pub fn tolerance(&self) -> f64 {
+        match self.parts.arithmetic {
+            Arithmetic::Double => self.parts.tolerance.get(),
+            Arithmetic::DoubleDouble => EXTENDED_TOLERANCE,
+        }
+    }
+
+    /// The steps in double-double arithmetic that are granted after so many in double precision.
+    pub(super) fn extended_steps(&self, taken: u64) -> u64 {
+        self.parts.limits.steps.saturating_sub(taken) / EXTENDED_WEIGHT
     }
 
     /// The signed duration of a trajectory.
@@ -339,6 +373,36 @@ impl Request {
             {
                 problems.push(Invalid::ManoeuvreBackwards { index, trajectory });
             }
+        }
+    }
+
+    /// An audit is refused that cannot be done within the steps granted, as far as that is known: no step is longer than
+    /// [`MAX_STEP`], and nothing may end a trajectory early.
+    fn check_audit(&self, spanned: bool, problems: &mut Vec<Invalid>) {
+        let parts = &self.parts;
+        if !parts.audit {
+            return;
+        }
+        if parts.arithmetic == Arithmetic::DoubleDouble {
+            problems.push(Invalid::AuditOfDoubleDouble);
+            return;
+        }
+        if !spanned
+            || parts.contact != Contact::default()
+            || parts.events.iter().any(|event| event.stop_after.is_some())
+        {
+            return;
+        }
+        let limit = parts.limits.steps;
+        #[expect(
+            clippy::cast_possible_truncation,
+            clippy::cast_sign_loss,
+            reason = "not negative, and a number too large saturates and is refused"
+        )]
+        let steps = |t: usize| (self.duration(t).abs() / MAX_STEP).ceil() as u64;
+        let asked = |t: usize| steps(t).saturating_mul(EXTENDED_WEIGHT).saturating_add(steps(t));
+        if let Some(trajectory) = (0..self.count()).find(|t| asked(*t) > limit) {
+            problems.push(Invalid::AuditSteps { trajectory, asked: asked(trajectory), limit });
         }
     }
 

@@ -1,5 +1,6 @@
 //! Propagation: accuracy, events, manoeuvres, contact, samples, matrices, interruption.
 
+mod audit;
 mod contact;
 mod events;
 mod golden;
@@ -13,7 +14,7 @@ mod samples;
 use mechanics::frame::{Axes, Frame, Origin, XAxis};
 use mechanics::interrupt::Never;
 use mechanics::propagation::{
-    Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling, Trajectory, solve,
+    Arithmetic, Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling, Trajectory, solve,
 };
 use mechanics::quantity::{Duration, MassParameter, Quantity, Tolerance};
 use mechanics::state::State;
@@ -37,6 +38,8 @@ pub(crate) fn parts(mass_parameter: f64, state: [f64; 6], duration: f64) -> Requ
         events: Vec::new(),
         manoeuvres: Vec::new(),
         contact: Contact::default(),
+        arithmetic: Arithmetic::Double,
+        audit: false,
         limits: Limits { steps: 1_000_000, events: 100_000, sample_values: 20_000_000 },
     }
 }

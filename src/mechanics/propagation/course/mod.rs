@@ -6,11 +6,12 @@ use std::ops::ControlFlow;
 
 use nalgebra::{Matrix6, Vector3};
 
+use super::audit::End;
 use super::event::When;
 use super::matrix::Transition;
 use super::request::{Contact, MatrixOutput, Request, Sampling};
 use super::watch::{Hit, Stretch, Watch};
-use super::{Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Sink, Trajectory};
+use super::{Audit, Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Sink, Trajectory};
 use crate::arithmetic::sum::Compensated;
 use crate::interrupt::{Interrupt, Stop};
 use crate::potential::gradient;
@@ -37,7 +38,10 @@ pub(super) fn not_started(request: &Request, index: usize) -> Trajectory {
         samples: Samples::default(),
         events: Vec::new(),
         matrix: None,
-        evidence: Evidence::default(),
+        evidence: Evidence {
+            audit: parts.audit.then(|| Audit::unfinished(Outcome::NotStarted)),
+            ..Evidence::default()
+        },
     }
 }
 
@@ -70,6 +74,8 @@ pub(super) struct Course<'a> {
     samples: Samples,
     events: Vec<Occurrence>,
     stopped_by: Option<usize>,
+    /// Manoeuvres applied.
+    applied: usize,
     evidence: Evidence,
 }
 
@@ -131,6 +137,7 @@ impl<'a> Course<'a> {
             samples: Samples::default(),
             events: Vec::new(),
             stopped_by: None,
+            applied: 0,
             evidence: Evidence::default(),
         }
     }
@@ -141,6 +148,15 @@ impl<'a> Course<'a> {
             ControlFlow::Continue(()) => Outcome::Complete,
         };
         self.end_leg();
+        if self.request.parts().audit {
+            let end = End {
+                state: self.state,
+                elapsed: self.elapsed,
+                manoeuvres: self.applied,
+                steps: self.evidence.steps,
+            };
+            self.evidence.audit = Some(Audit::of(self.request, self.index, &end, self.interrupt)?);
+        }
         let last = self.seen(self.time_here(), &[0.0; 6]);
         let matrix = self.transition.as_mut().map(|transition| {
             let (determinant, symplectic) = transition.defects();
@@ -174,6 +190,7 @@ impl<'a> Course<'a> {
                 && at.minus(self.elapsed) * self.direction <= 0.0
             {
                 self.apply(*manoeuvre)?;
+                self.applied += 1;
                 rest = later;
             }
             let end = Compensated::new(self.duration);
@@ -389,12 +406,17 @@ impl<'a> Course<'a> {
 /// A state of the default frame after a change, in the request's frame, with all the digits that it has about that
 /// frame's origin.
 fn seen(request: &Request, state: &[Compensated; 6], time: f64, change: &[f64; 6]) -> State {
-    let mut components: [f64; 6] = std::array::from_fn(|i| state[i].plus(change[i]).value);
-    let origin = request.origin_x();
-    components[0] = (state[0].value - origin.value) + ((state[0].rest - origin.rest) + change[0]);
+    let components = about(request.origin_x(), state, change);
     let parts = request.parts();
     let co_rotating = State::new(time, components);
     parts.frame.co_rotating().convert(parts.frame, parts.mass_parameter, &co_rotating)
+}
+
+/// The components of a state of the default frame after a change, rounded, its x counted from `origin`.
+pub(super) fn about(origin: Compensated, state: &[Compensated; 6], change: &[f64; 6]) -> [f64; 6] {
+    let mut components: [f64; 6] = std::array::from_fn(|i| state[i].plus(change[i]).value);
+    components[0] = (state[0].value - origin.value) + ((state[0].rest - origin.rest) + change[0]);
+    components
 }
 
 /// A matrix of the default frame between two instants in the request's frame.

@@ -15,6 +15,7 @@ use super::{Primaries, Series as RoundedSeries, TERMS as ROUNDED_TERMS};
 use crate::arithmetic::{DoubleDouble, Quad};
 
 pub use motion::Motion;
+pub use step::EXTENDED_TOLERANCE;
 pub use variational::Columns;
 
 /// Order of the velocity series, even. From 32 to 38 the cost is the same within a few per cent.

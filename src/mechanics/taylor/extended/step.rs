@@ -11,11 +11,16 @@ const ESTIMATED_FROM: [usize; 2] = [ORDER - 1, ORDER];
 /// Keeps the logarithm finite where a coefficient vanishes.
 const SMALLEST_COEFFICIENT: f64 = 1e-300;
 
-/// Base-2 logarithm of the relative local error per step.
+/// Relative local error per step. Down to 2^-98 the error of the result grows with it, below 2^-102 it is the
+/// round-off's.
+pub const EXTENDED_TOLERANCE: f64 = f64::from_bits((BIAS - 102) << FRACTION_BITS);
 const LOG2_TOLERANCE: f64 = -102.0;
 
+const BIAS: u64 = 1023;
+const FRACTION_BITS: u32 = 52;
+
 /// The shortest trial step: far below every step.
-const SHORTEST_TRIAL: f64 = f64::from_bits(((1023 - 100) as u64) << 52);
+const SHORTEST_TRIAL: f64 = f64::from_bits((BIAS - 100) << FRACTION_BITS);
 
 /// A power of two near the radius of convergence, from the distance to the nearer primary, the speed and the square
 /// root of both primaries' forces over the distance.
@@ -24,7 +29,7 @@ pub(super) fn trial(distance: f64, speed: f64, rate: f64) -> f64 {
     let time = Real::min(Real::min(distance / speed, 1.0 / rate), 1.0);
     let time = if time > SHORTEST_TRIAL { time } else { SHORTEST_TRIAL };
     // The exponent without the fraction.
-    f64::from_bits(time.to_bits() & (0x7ff << 52))
+    f64::from_bits(time.to_bits() & (0x7ff << FRACTION_BITS))
 }
 
 /// log₂ of the radius of convergence, as for a series in double precision.

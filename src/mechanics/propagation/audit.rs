@@ -1,0 +1,133 @@
+//! The true error of a trajectory: its difference from the same one in double-double arithmetic.
+
+use nalgebra::Vector3;
+
+use super::{Audit, Failure, Outcome, Request};
+use crate::arithmetic::{DoubleDouble, sum::Compensated};
+use crate::frame::Axes;
+use crate::interrupt::{Interrupt, Stop};
+use crate::taylor::STEP_FLOOR;
+use crate::taylor::extended::Motion;
+
+/// Steps between two polls: a tenth of a millisecond.
+pub(super) const STEPS_PER_POLL: u64 = 16;
+
+/// Where a trajectory ended.
+pub(super) struct End {
+    /// In the default frame, as it was integrated.
+    pub state: [Compensated; 6],
+    /// Signed time since the start.
+    pub elapsed: Compensated,
+    /// Manoeuvres that were applied.
+    pub manoeuvres: usize,
+    /// Steps taken.
+    pub steps: u64,
+}
+
+impl Audit {
+    /// One that could not be finished.
+    pub(super) fn unfinished(outcome: Outcome) -> Self {
+        Self { outcome, position_error: None, velocity_error: None }
+    }
+
+    /// Of the trajectory of an initial state, wherever and for whatever reason it ended.
+    pub(super) fn of(
+        request: &Request,
+        index: usize,
+        end: &End,
+        interrupt: &dyn Interrupt,
+    ) -> Result<Self, Failure> {
+        let direction = if request.duration(index) < 0.0 { -1.0 } else { 1.0 };
+        let start = request.start_of(index).map(DoubleDouble::from);
+        let mut course = Course {
+            motion: Motion::new(*request.primaries(), start, false),
+            elapsed: DoubleDouble::default(),
+            direction,
+            steps: 0,
+            most_steps: request.extended_steps(end.steps),
+            interrupt,
+        };
+        let frame = request.parts().frame;
+        for (at, manoeuvre) in request.manoeuvres_of(index).into_iter().take(end.manoeuvres) {
+            if let Some(outcome) = course.run_to(at.into())? {
+                return Ok(Self::unfinished(outcome));
+            }
+            let change = request.parts().manoeuvres[manoeuvre]
+                .precise_impulse(frame, request.origin_x().into(), course.motion.state())
+                .ok_or(Failure::UndefinedAxes { manoeuvre, trajectory: index })?;
+            course.motion.kick(&change.map(|component| component.scaled(direction)));
+        }
+        if let Some(outcome) = course.run_to(end.elapsed.into())? {
+            return Ok(Self::unfinished(outcome));
+        }
+        Ok(Self::difference(request, &end.state, course.motion.state()))
+    }
+
+    /// The error of a state of the default frame as the request's frame shows it, about that frame's origin and rounded.
+    fn difference(request: &Request, state: &[Compensated; 6], truth: &[DoubleDouble; 6]) -> Self {
+        let origin = request.origin_x();
+        let rounded = super::course::about(origin, state, &[0.0; 6]);
+        let error: [f64; 6] = std::array::from_fn(|i| {
+            let shifted = if i == 0 { truth[0] - DoubleDouble::from(origin) } else { truth[i] };
+            (DoubleDouble::from(rounded[i]) - shifted).to_f64()
+        });
+        let position = Vector3::new(error[0], error[1], error[2]);
+        let mut velocity = Vector3::new(error[3], error[4], error[5]);
+        if request.parts().frame.axes == Axes::Inertial {
+            velocity += Vector3::new(-position.y, position.x, 0.0);
+        }
+        Self {
+            outcome: Outcome::Complete,
+            position_error: Some(position.norm()),
+            velocity_error: Some(velocity.norm()),
+        }
+    }
+}
+
+/// The recomputation under way.
+struct Course<'a> {
+    motion: Motion,
+    /// Signed time since the start.
+    elapsed: DoubleDouble,
+    direction: f64,
+    steps: u64,
+    most_steps: u64,
+    interrupt: &'a dyn Interrupt,
+}
+
+impl Course<'_> {
+    /// Steps up to a time since the start; gives why it did not get there, if it did not.
+    fn run_to(&mut self, target: DoubleDouble) -> Result<Option<Outcome>, Failure> {
+        loop {
+            let left = target - self.elapsed;
+            if left.to_f64() * self.direction <= 0.0 {
+                return Ok(None);
+            }
+            if self.steps.is_multiple_of(STEPS_PER_POLL) {
+                match self.interrupt.poll() {
+                    Some(Stop::Cancelled) => return Err(Failure::Cancelled),
+                    Some(Stop::WallTime) => return Ok(Some(Outcome::WallTimeLimit)),
+                    None => {}
+                }
+            }
+            if self.steps == self.most_steps {
+                return Ok(Some(Outcome::StepLimit));
+            }
+            self.motion.expand();
+            self.steps += 1;
+            let step = self.motion.series().step();
+            let last = step >= left.abs().to_f64();
+            if !(self.motion.series().is_finite() && (last || step >= STEP_FLOOR)) {
+                return Ok(Some(Outcome::StepFloor));
+            }
+            if last {
+                self.motion.advance(left);
+                self.elapsed = target;
+                return Ok(None);
+            }
+            let step = DoubleDouble::from(step * self.direction);
+            self.motion.advance(step);
+            self.elapsed = self.elapsed + step;
+        }
+    }
+}
