@@ -394,14 +394,15 @@ fn each_fault_has_its_pointer_and_all_come_at_once() {
             "/initial_states/0",
         ),
         (json!({ "initial_states": [] }), "/initial_states"),
-        (json!({ "arithmetic": "double_double" }), "/arithmetic"),
-        (json!({ "audit": true }), "/audit"),
+        (json!({ "arithmetic": "quadruple" }), "/arithmetic"),
+        (json!({ "audit": "true" }), "/audit"),
+        (json!({ "arithmetic": "double_double", "audit": true }), "/audit"),
         (json!({ "tolerence": 1e-12 }), "/tolerence"),
     ];
     for (members, pointer) in &cases {
         assert_eq!(pointers(&server, &with(halo(), members)), [*pointer], "{members}");
     }
-    let many = json!({ "tolerance": 1.0, "samples": { "interval": 9.0 }, "audit": true,
+    let many = json!({ "tolerance": 1.0, "samples": { "interval": 9.0 }, "audit": 1,
         "manoeuvres": [{ "time": 99.0, "delta_v": [0.0, 0.0, 0.0] }],
         "events": [{ "when": { "apoapsis": "larger" }, "direction": "either" }] });
     let mut found = pointers(&server, &with(halo(), &many));
@@ -422,6 +423,50 @@ fn each_fault_has_its_pointer_and_all_come_at_once() {
         found,
         ["/audit", "/events/0/direction", "/manoeuvres/0/time", "/samples/interval", "/tolerance"]
     );
+}
+
+#[test]
+fn an_audit_measures_the_true_error() {
+    let server = Server::start();
+    let audit = |members: &Value| {
+        let answer = solved(&server, &with(with(halo(), &json!({ "audit": true })), members));
+        answer["trajectories"][0]["evidence"]["audit"].clone()
+    };
+    let good = audit(&json!({}));
+    assert_eq!((&good["arithmetic"], &good["outcome"]), (&json!("double_double"), &json!("complete")));
+    let error = good["position_error"].as_f64().unwrap();
+    assert!(error > 0.0 && error < 5e-14);
+
+    // Against the 46-digit final state of `tests/mechanics/reference/trajectories.txt`.
+    let loose = with(halo(), &json!({ "audit": true, "tolerance": 1e-6 }));
+    let trajectory = &solved(&server, &loose)["trajectories"][0];
+    let truth = json!([1.172_045_953_599_626_3, 4.483_386_743_635_753e-14, -0.086_199_999_999_972_41]);
+    let (found, expected) =
+        (&trajectory["evidence"]["audit"]["position_error"], apart(&trajectory["final"]["position"], &truth));
+    assert!((found.as_f64().unwrap() / expected - 1.0).abs() < 1e-4, "{found} {expected}");
+
+    // A step of the audit takes as long as 32 in double precision and counts as many.
+    let cut = audit(&json!({ "limits": { "steps": 100 } }));
+    assert_eq!(
+        cut,
+        json!({ "arithmetic": "double_double", "outcome": "step_limit", "position_error": null, "velocity_error": null })
+    );
+    assert_eq!(solved(&server, &halo())["trajectories"][0]["evidence"]["audit"], Value::Null);
+}
+
+#[test]
+fn an_audit_beyond_the_limits_is_refused_before_any_work() {
+    let server = Server::start();
+    let long = with(halo(), &json!({ "audit": true, "duration": 1e6 }));
+    let problem = server.post(PATH, &long).problem("work-limit");
+    assert_eq!(problem["errors"][0]["pointer"], "/audit");
+
+    let state = &halo()["initial_states"][0];
+    for extended in [json!({ "audit": true }), json!({ "arithmetic": "double_double" })] {
+        let many = with(with(halo(), &json!({ "initial_states": vec![state; 4000] })), &extended);
+        let problem = server.post(PATH, &many).problem("work-limit");
+        assert_eq!(problem["errors"][0]["pointer"], "/initial_states");
+    }
 }
 
 #[test]

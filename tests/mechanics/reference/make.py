@@ -5,7 +5,8 @@
 Collinear points: the force on the x axis, bisected (no quintic). Eigenvalues: of the 6x6 matrix of the
 linearised equations, by mpmath's QR algorithm (no closed form). Jacobi constants: the plain formula. Regions: the
 ascent integrated by scipy's DOP853 until it is deep in a primary's well or far away. Working precision of mpmath
-is high enough for every cancellation; 40 digits are printed. Fly-bys: Gragg's midpoint rule, extrapolated (Bulirsch & Stoer). Inputs are the exact values of the doubles printed.
+is high enough for every cancellation; 40 digits are printed. Trajectories:
+Gragg's midpoint rule, extrapolated (Bulirsch & Stoer). Inputs are the exact values of the doubles printed.
 """
 
 import random
@@ -179,22 +180,25 @@ def propagated(mu, state, duration):
     return state, nearest
 
 
-def fly_bys():
-    """A fall towards the smaller primary from rest at 0.01 but for an angular momentum, and back again."""
-    rows = ["# mu x y z vx vy vz t | x y z vx vy vz at t, nearest distance to the smaller primary"]
+def extrapolations():
+    """A regular orbit about the larger primary; falls towards the smaller one from 0.01 with little angular momentum,
+    past it and back again."""
+    rows = ["# case mu x y z vx vy vz t | x y z vx vy vz at t, nearest distance to the smaller primary on the way"]
     mp.dps = 60
-    mu, t = 0.01215058560962404, 0.02
+    mu = 0.01215058560962404
+    cases = [("regular", [0.31, 0.0, 0.05, 0.0, 1.52, 0.1], 1.117)]
     for nearest in (1e-5, 1e-6, 1e-7):
         across = float(sqrt(2 * mpf(mu) * nearest) / mpf(0.01) / sqrt(2))
-        start = [1 - mu + 0.01, 0.0, 0.0, 0.0, across - 0.01, across]
+        cases.append(("fly_by", [1 - mu + 0.01, 0.0, 0.0, 0.0, across - 0.01, across], 0.02))
+    for case, start, t in cases:
         end, reached = propagated(mpf(mu), [mpf(c) for c in start], mpf(t))
         inputs = [repr(c) for c in (mu, *start, t)]
-        rows.append(" ".join([*inputs, *(digits(c) for c in end), nstr(reached, 3)]))
-    (HERE / "fly_bys.txt").write_text("\n".join(rows) + "\n")
+        rows.append(" ".join([case, *inputs, *(digits(c) for c in end), nstr(reached, 3)]))
+    (HERE / "extrapolations.txt").write_text("\n".join(rows) + "\n")
 
 
 if __name__ == "__main__":
-    fly_bys()
+    extrapolations()
     equilibria()
     states()
     regions()

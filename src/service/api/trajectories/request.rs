@@ -3,7 +3,8 @@
 use std::time::Duration as WallTime;
 
 use mechanics::propagation::{
-    BurnAxes, Contact, Invalid, Limits as Granted, Manoeuvre, MatrixOutput, Request, RequestParts,
+    Arithmetic, BurnAxes, Contact, EXTENDED_WEIGHT, Invalid, Limits as Granted, Manoeuvre, MatrixOutput,
+    Request, RequestParts,
 };
 use mechanics::quantity::{Distance, Epoch, Quantity, Speed, Tolerance};
 use mechanics::state::State;
@@ -41,6 +42,11 @@ choices! {
     }
 }
 
+choices! {
+    /// Double precision, or double-double: about 31 digits on the way, and the answer rounded.
+    pub(super) enum ArithmeticSpec = Arithmetic { Double = "double", DoubleDouble = "double_double" }
+}
+
 request! {
     /// An impulsive change of velocity.
     pub(super) struct ManoeuvreSpec {
@@ -58,7 +64,6 @@ request! {
 request! {
     /// Trajectories of one or many states.
     #[example("example.json")]
-    #[not_offered("arithmetic", "audit")]
     pub(super) struct TrajectoriesRequest {
         /// The primaries.
         required system: SystemSpec,
@@ -70,7 +75,7 @@ request! {
         required initial_states: StatesSpec,
         /// How long the trajectories run, a time; negative runs backwards. A list gives one for each state.
         required duration: DurationSpec,
-        /// Relative local error per step; 1e-15 if absent.
+        /// Relative local error per step in double precision; 1e-15 if absent. In double-double it is always 2^-102.
         optional tolerance: Scalar<Tolerance>,
         /// Where the trajectories are sampled; `none` if absent.
         optional samples: SamplesSpec,
@@ -82,6 +87,12 @@ request! {
         optional manoeuvres: Vec<ManoeuvreSpec>,
         /// Whether the surfaces of primaries with a known radius end a trajectory; `stop` if absent.
         optional contact: ContactSpec,
+        /// What the trajectories are computed in; `double` if absent. With `double_double` each state counts as 32 of
+        /// the states, and each step as 32 of the steps that are granted: it takes as long.
+        optional arithmetic: ArithmeticSpec,
+        /// Whether each trajectory is computed again in double-double from the same bits and manoeuvres to the same time,
+        /// to measure its true error; not if absent. States and the steps of the audit count as with `double_double`.
+        optional audit: bool,
         /// How much the computation may take.
         optional limits: LimitsSpec,
     }
@@ -94,7 +105,10 @@ impl TrajectoriesRequest {
         let (known, units, frame) = (self.system.is_good(), self.units, self.frame);
         let conventions = Conventions::check(self.system, units, frame, errors);
         let tolerance = self.tolerance.or_else(|| Scalar(Tolerance::constant(TOLERANCE)));
-        let few = count_states(&self.initial_states, limits, errors)
+        let arithmetic = self.arithmetic.or(ArithmeticSpec::Double).map_or(Arithmetic::Double, Into::into);
+        let audit = self.audit.or(false).unwrap_or(false);
+        let extended = audit || arithmetic == Arithmetic::DoubleDouble;
+        let few = count_states(&self.initial_states, extended, limits, errors)
             & at_most("events", &self.events, MOST_EVENTS, errors)
             & at_most("manoeuvres", &self.manoeuvres, MOST_MANOEUVRES, errors);
         if !few {
@@ -125,6 +139,8 @@ impl TrajectoriesRequest {
             events,
             manoeuvres: manoeuvres.unwrap_or_default(),
             contact: contact.unwrap_or_default(),
+            arithmetic,
+            audit,
             limits: Granted {
                 steps: granted.map_or(limits.steps, |granted| granted.steps),
                 events: usize::try_from(limits.events).unwrap_or(usize::MAX),
@@ -158,13 +174,18 @@ impl Task {
     }
 }
 
-fn count_states(states: &Field<StatesSpec>, limits: &Limits, errors: &mut Errors) -> bool {
+fn count_states(states: &Field<StatesSpec>, extended: bool, limits: &Limits, errors: &mut Errors) -> bool {
     let Field::Given(states) = states else { return true };
+    let (most, what) = if extended {
+        ((limits.states / EXTENDED_WEIGHT).max(1), "states in double_double or with an audit")
+    } else {
+        (limits.states, "states")
+    };
     let count = states.states.len() as u64;
-    if count > limits.states {
-        errors.beyond(Path::ROOT.member("initial_states"), "states", limits.states, count);
+    if count > most {
+        errors.beyond(Path::ROOT.member("initial_states"), what, most, count);
     }
-    count <= limits.states
+    count <= most
 }
 
 fn at_most<T>(name: &str, list: &Field<Vec<T>>, most: usize, errors: &mut Errors) -> bool {
@@ -290,6 +311,10 @@ fn report(fault: &Invalid, errors: &mut Errors) {
         }
         Invalid::ManoeuvreBackwards { index, .. } => {
             errors.push(manoeuvres.item(*index).member("axes"), fault.to_string());
+        }
+        Invalid::AuditOfDoubleDouble => errors.push(root.member("audit"), fault.to_string()),
+        Invalid::AuditSteps { asked, limit, .. } => {
+            errors.beyond(root.member("audit"), "steps", *limit, *asked);
         }
         Invalid::SampleValues { asked, limit } => {
             errors.beyond(samples, "sample values", *limit, u64::try_from(*asked).unwrap_or(u64::MAX));

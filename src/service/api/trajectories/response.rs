@@ -3,7 +3,7 @@
 use std::collections::BTreeMap;
 use std::sync::Arc;
 
-use mechanics::propagation::{Evidence, Outcome, Sampling, Trajectory};
+use mechanics::propagation::{Audit, Evidence, Outcome, Sampling, Trajectory};
 use mechanics::units::Scale;
 use nalgebra::{Matrix6, Vector3};
 use serde::{Serialize, Serializer};
@@ -31,7 +31,7 @@ pub(super) struct TrajectoriesAnswer<'a> {
     units: UnitsEcho,
     /// The frame of all states and matrices.
     frame: FrameEcho,
-    /// Relative local error per step.
+    /// Relative local error per step, that of the arithmetic in double-double.
     tolerance: f64,
     /// The primaries whose surfaces end a trajectory.
     contact_bodies: Vec<&'static str>,
@@ -121,6 +121,23 @@ struct EvidenceAnswer {
     determinant_defect: Option<f64>,
     /// Largest element of `|M^T J M - J|` of that matrix, the largest of the legs; null without a matrix.
     symplectic_defect: Option<f64>,
+    /// The true error of the final state; null if not asked for.
+    audit: Option<AuditAnswer>,
+}
+
+/// The difference of the final state from that of the same trajectory in double-double arithmetic.
+#[derive(Serialize, ToSchema)]
+#[schema(as = Audit)]
+struct AuditAnswer {
+    /// `double_double`.
+    arithmetic: &'static str,
+    /// `complete`, or why the time of the final state was not reached: `step_limit`, `step_floor`, `wall_time_limit` or
+    /// `not_started`.
+    outcome: &'static str,
+    /// Euclidean norm of the error of the final position; null unless complete.
+    position_error: Option<f64>,
+    /// Euclidean norm of the error of the final velocity; null unless complete.
+    velocity_error: Option<f64>,
 }
 
 /// The trajectories, put into the client's units one at a time as they are written.
@@ -146,7 +163,7 @@ impl Serialize for Solution {
             system: (&conventions.system).into(),
             units: UnitsEcho(conventions.units),
             frame: conventions.frame.into(),
-            tolerance: mechanics::quantity::Quantity::get(parts.tolerance),
+            tolerance: self.task.request.tolerance(),
             contact_bodies: bodies.into_iter().filter_map(|(name, radius)| radius.map(|_| name)).collect(),
             outcome: outcome_name(self.outcome),
             outcomes,
@@ -249,6 +266,12 @@ fn evidence(scale: &Scale, evidence: &Evidence) -> EvidenceAnswer {
         jacobi_drift: evidence.jacobi_drift * scale.energy(),
         determinant_defect: evidence.determinant_defect,
         symplectic_defect: evidence.symplectic_defect,
+        audit: evidence.audit.map(|Audit { outcome, position_error, velocity_error }| AuditAnswer {
+            arithmetic: "double_double",
+            outcome: outcome_name(outcome),
+            position_error: position_error.map(|error| error * scale.length),
+            velocity_error: velocity_error.map(|error| error * scale.velocity),
+        }),
     }
 }
 
