@@ -2,7 +2,7 @@
 
 use std::f64::consts::SQRT_2;
 
-use mechanics::arithmetic::{DoubleDouble, Quad, SumOfProducts};
+use mechanics::arithmetic::{DoubleDouble, Matrix, Quad, SumOfProducts};
 use proptest::prelude::*;
 
 /// Values of mpmath at 50 digits, each as its nearest double and that of the rest.
@@ -96,4 +96,17 @@ fn reciprocals_of_small_integers() {
         let found = DoubleDouble::reciprocal(n as usize) * f64::from(n) - 1.0;
         assert!(found.abs().to_f64() < 2.0_f64.powi(-104), "{n}");
     }
+}
+
+#[test]
+fn determinant_of_a_hilbert_matrix() {
+    // The determinant of the matrix of 1/(i + j − 1), N = 5, is 1/266716800000 (Hilbert 1894, Acta Mathematica 18:155).
+    let hilbert = Matrix::<5>::from_fn(|i, j| DoubleDouble::reciprocal(i + j + 1));
+    let relative = hilbert.determinant() * 266_716_800_000.0 - 1.0;
+    assert!(relative.abs().to_f64() < 1e-24, "{relative:?}");
+    let mut swapped = hilbert;
+    swapped.0.swap(0, 3);
+    assert!((swapped.determinant() / hilbert.determinant() + 1.0).abs().to_f64() < 1e-24);
+    let product = hilbert.transposed().times(&Matrix::identity());
+    assert_eq!(product, hilbert);
 }

@@ -100,7 +100,7 @@ fn matrices_of_many_digits() {
         let matrix = end.matrix().expect("asked for");
         let truth: [_; 6] = std::array::from_fn(|i| truth(case, &format!("m{i}")));
         let largest = truth.iter().flatten().map(|e| e.abs().to_f64()).fold(0.0, f64::max);
-        for (row, expected) in matrix.iter().zip(&truth) {
+        for (row, expected) in matrix.0.iter().zip(&truth) {
             let error = apart(row, expected) / largest;
             assert!(error < 1e-26, "{case}: {error:e}");
         }

@@ -9,7 +9,7 @@ pub mod sum;
 
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
-pub use double_double::{DoubleDouble, Half, SumOfProducts};
+pub use double_double::{DoubleDouble, Half, Matrix, SumOfProducts};
 pub use quad::Quad;
 
 /// The operations the Taylor recurrences need.

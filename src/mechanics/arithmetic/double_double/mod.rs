@@ -1,9 +1,11 @@
 //! Unevaluated sums of two doubles: about 106 bits.
 
+mod matrix;
 mod products;
 
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
+pub use matrix::Matrix;
 pub use products::SumOfProducts;
 
 use super::{Quad, sum::Compensated};

@@ -1,7 +1,7 @@
 //! One trajectory's integration, step by step.
 
 use super::{Columns, Series, expand, expand_variational, flow, flow_variational};
-use crate::arithmetic::DoubleDouble;
+use crate::arithmetic::{DoubleDouble, Matrix};
 use crate::taylor::Primaries;
 
 /// A state under way in double-double arithmetic, with d(state)/d(state at the start) if wanted.
@@ -18,27 +18,19 @@ pub struct Motion {
 
 #[derive(Clone, Debug)]
 struct Transition {
-    matrix: [[DoubleDouble; 6]; 6],
+    matrix: Matrix<6>,
     columns: Columns,
 }
 
 impl Transition {
     fn new() -> Self {
-        Self { matrix: identity(), columns: Columns::new() }
+        Self { matrix: Matrix::identity(), columns: Columns::new() }
     }
 
-    fn at(&self, series: &Series, time: DoubleDouble) -> [[DoubleDouble; 6]; 6] {
+    fn at(&self, series: &Series, time: DoubleDouble) -> Matrix<6> {
         let change = flow_variational(series, &self.columns, time);
-        std::array::from_fn(|row| {
-            std::array::from_fn(|column| self.matrix[row][column] + change[row][column])
-        })
+        Matrix::from_fn(|row, column| self.matrix.0[row][column] + change[row][column])
     }
-}
-
-fn identity() -> [[DoubleDouble; 6]; 6] {
-    std::array::from_fn(|row| {
-        std::array::from_fn(|column| DoubleDouble::from(if row == column { 1.0 } else { 0.0 }))
-    })
 }
 
 impl Motion {
@@ -70,7 +62,7 @@ impl Motion {
     pub fn expand_matrix(&mut self) {
         if let Some(transition) = &mut self.transition {
             let Transition { matrix, columns } = &mut **transition;
-            expand_variational(&self.series, matrix, columns);
+            expand_variational(&self.series, &matrix.0, columns);
         }
     }
 
@@ -83,13 +75,13 @@ impl Motion {
 
     /// d(state)/d(state at the start) for the state reached, rows x, y, z, vx, vy, vz, where wanted.
     #[must_use]
-    pub fn matrix(&self) -> Option<&[[DoubleDouble; 6]; 6]> {
+    pub fn matrix(&self) -> Option<&Matrix<6>> {
         self.transition.as_ref().map(|transition| &transition.matrix)
     }
 
     /// The same `at` a time after the start of the step.
     #[must_use]
-    pub fn matrix_at(&self, at: DoubleDouble) -> Option<[[DoubleDouble; 6]; 6]> {
+    pub fn matrix_at(&self, at: DoubleDouble) -> Option<Matrix<6>> {
         self.transition.as_ref().map(|transition| transition.at(&self.series, at))
     }
 
@@ -111,7 +103,7 @@ impl Motion {
     /// Makes the place reached the start that the matrix refers to.
     pub fn restart_matrix(&mut self) {
         if let Some(transition) = &mut self.transition {
-            transition.matrix = identity();
+            transition.matrix = Matrix::identity();
         }
     }
 }
