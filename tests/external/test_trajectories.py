@@ -49,6 +49,28 @@ def test_short_arc_against_forty_digits(service, case):
     assert max(error) <= 1e-15 * amplification * max(1, max(map(abs, map(float, exact))))
 
 
+def norms(found, exact):
+    """Of the errors of position and velocity."""
+    with mpmath.workdps(40):
+        errors = [mpmath.mpf(mine) - theirs for mine, theirs in zip(found, exact)]
+        return [float(mpmath.norm(errors[:3])), float(mpmath.norm(errors[3:]))]
+
+
+@pytest.mark.parametrize("case", CASES)
+def test_double_double_and_audit_against_forty_digits(service, case):
+    mu, state, duration = CASES[case]
+    arc = 0.05 * duration
+    exact = model.exact_flow(mu, state, arc)
+    fine = model.vector(propagate(service, mu, state, arc, arithmetic="double_double")["final"])
+    assert all(abs(mine - theirs) <= np.spacing(abs(mine)) for mine, theirs in zip(fine, exact))
+    # At a loose tolerance the error is far above the last digit of the mpmath integration.
+    trajectory = propagate(service, mu, state, arc, audit=True, tolerance=1e-9)
+    audit = trajectory["evidence"]["audit"]
+    found = [audit["position_error"], audit["velocity_error"]]
+    assert audit["outcome"] == "complete"
+    assert np.allclose(found, norms(model.vector(trajectory["final"]), exact), rtol=1e-6, atol=1e-30)
+
+
 @pytest.mark.parametrize("case", CASES)
 def test_state_transition_matrix(service, case):
     mu, state, duration = CASES[case]
