@@ -6,8 +6,7 @@ use super::{Audit, Failure, Outcome, Request};
 use crate::arithmetic::{DoubleDouble, sum::Compensated};
 use crate::frame::Axes;
 use crate::interrupt::{Interrupt, Stop};
-use crate::taylor::STEP_FLOOR;
-use crate::taylor::extended::Motion;
+use crate::taylor::extended::{Halt, Motion};
 
 /// Steps between two polls: a tenth of a millisecond.
 pub(super) const STEPS_PER_POLL: u64 = 16;
@@ -39,28 +38,26 @@ impl Audit {
     ) -> Result<Self, Failure> {
         let direction = if request.duration(index) < 0.0 { -1.0 } else { 1.0 };
         let start = request.start_of(index).map(DoubleDouble::from);
-        let mut course = Course {
-            motion: Motion::new(*request.primaries(), start, false),
-            elapsed: DoubleDouble::default(),
+        let mut recomputation = Recomputation {
+            motion: Motion::new(*request.primaries(), start),
             direction,
-            steps: 0,
             most_steps: request.extended_steps(end.steps),
             interrupt,
         };
         let frame = request.parts().frame;
         for (at, manoeuvre) in request.manoeuvres_of(index).into_iter().take(end.manoeuvres) {
-            if let Some(outcome) = course.run_to(at.into())? {
+            if let Some(outcome) = recomputation.run_to(at.into())? {
                 return Ok(Self::unfinished(outcome));
             }
             let change = request.parts().manoeuvres[manoeuvre]
-                .precise_impulse(frame, request.origin_x().into(), course.motion.state())
+                .precise_impulse(frame, request.origin_x().into(), &recomputation.motion.state)
                 .ok_or(Failure::UndefinedAxes { manoeuvre, trajectory: index })?;
-            course.motion.kick(&change.map(|component| component.scaled(direction)));
+            recomputation.motion.kick(&change.map(|component| component.scaled(direction)));
         }
-        if let Some(outcome) = course.run_to(end.elapsed.into())? {
+        if let Some(outcome) = recomputation.run_to(end.elapsed.into())? {
             return Ok(Self::unfinished(outcome));
         }
-        Ok(Self::difference(request, &end.state, course.motion.state()))
+        Ok(Self::difference(request, &end.state, &recomputation.motion.state))
     }
 
     /// The error of a state of the default frame as the request's frame shows it, about that frame's origin and rounded.
@@ -85,49 +82,36 @@ impl Audit {
 }
 
 /// The recomputation under way.
-struct Course<'a> {
+struct Recomputation<'a> {
     motion: Motion,
-    /// Signed time since the start.
-    elapsed: DoubleDouble,
     direction: f64,
-    steps: u64,
     most_steps: u64,
     interrupt: &'a dyn Interrupt,
 }
 
-impl Course<'_> {
+impl Recomputation<'_> {
     /// Steps up to a time since the start; gives why it did not get there, if it did not.
     fn run_to(&mut self, target: DoubleDouble) -> Result<Option<Outcome>, Failure> {
+        if (target - self.motion.elapsed).to_f64() * self.direction <= 0.0 {
+            return Ok(None);
+        }
         loop {
-            let left = target - self.elapsed;
-            if left.to_f64() * self.direction <= 0.0 {
-                return Ok(None);
+            match self.interrupt.poll() {
+                Some(Stop::Cancelled) => return Err(Failure::Cancelled),
+                Some(Stop::WallTime) => return Ok(Some(Outcome::WallTimeLimit)),
+                None => {}
             }
-            if self.steps.is_multiple_of(STEPS_PER_POLL) {
-                match self.interrupt.poll() {
-                    Some(Stop::Cancelled) => return Err(Failure::Cancelled),
-                    Some(Stop::WallTime) => return Ok(Some(Outcome::WallTimeLimit)),
-                    None => {}
+            let most = (self.most_steps - self.motion.steps).min(STEPS_PER_POLL);
+            match self.motion.run(target, self.direction, most, false) {
+                Halt::Steps if self.motion.steps == self.most_steps => return Ok(Some(Outcome::StepLimit)),
+                Halt::Steps => {}
+                Halt::Floor => return Ok(Some(Outcome::StepFloor)),
+                Halt::Step { .. } => {
+                    self.motion.step();
+                    self.motion.elapsed = target;
+                    return Ok(None);
                 }
             }
-            if self.steps == self.most_steps {
-                return Ok(Some(Outcome::StepLimit));
-            }
-            self.motion.expand();
-            self.steps += 1;
-            let step = self.motion.series().step();
-            let last = step >= left.abs().to_f64();
-            if !(self.motion.series().is_finite() && (last || step >= STEP_FLOOR)) {
-                return Ok(Some(Outcome::StepFloor));
-            }
-            if last {
-                self.motion.advance(left);
-                self.elapsed = target;
-                return Ok(None);
-            }
-            let step = DoubleDouble::from(step * self.direction);
-            self.motion.advance(step);
-            self.elapsed = self.elapsed + step;
         }
     }
 }

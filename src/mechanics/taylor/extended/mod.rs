@@ -14,7 +14,7 @@ use super::dispatch::accelerated;
 use super::{Primaries, Series as RoundedSeries, TERMS as ROUNDED_TERMS};
 use crate::arithmetic::{DoubleDouble, Quad};
 
-pub use motion::Motion;
+pub use motion::{Halt, Motion};
 pub use step::EXTENDED_TOLERANCE;
 pub use variational::Columns;
 

@@ -1,69 +1,82 @@
-//! One trajectory's integration, step by step.
+//! One trajectory's place, and its steps.
 
-use super::{Columns, Series, expand, expand_variational, flow, flow_variational};
-use crate::arithmetic::{DoubleDouble, Matrix};
-use crate::taylor::Primaries;
+use super::{Series, expand, flow};
+use crate::arithmetic::DoubleDouble;
+use crate::taylor::{Primaries, STEP_FLOOR};
 
-/// A state under way in double-double arithmetic, with d(state)/d(state at the start) if wanted.
-///
-/// A step is [`expand`](Self::expand), then [`advance`](Self::advance) by at most [`step`](Self::step); in between the
-/// state is known at any time within it.
+/// The place that an integration has reached, and the series about it.
 #[derive(Clone, Debug)]
 pub struct Motion {
     primaries: Primaries,
-    state: [DoubleDouble; 6],
-    series: Box<Series>,
-    transition: Option<Box<Transition>>,
+    /// x, y, z, vx, vy, vz in the default frame.
+    pub state: [DoubleDouble; 6],
+    /// Signed time since the start.
+    pub elapsed: DoubleDouble,
+    /// Jacobi constant at the start of the leg; none before its first step.
+    pub reference: Option<DoubleDouble>,
+    /// Largest departure from it.
+    pub drift: f64,
+    /// Steps taken.
+    pub steps: u64,
+    /// The series about the last place it was expanded at.
+    pub series: Box<Series>,
+    /// Signed length of the step that the series is expanded for.
+    length: DoubleDouble,
 }
 
-#[derive(Clone, Debug)]
-struct Transition {
-    matrix: Matrix<6>,
-    columns: Columns,
-}
-
-impl Transition {
-    fn new() -> Self {
-        Self { matrix: Matrix::identity(), columns: Columns::new() }
-    }
-
-    fn at(&self, series: &Series, time: DoubleDouble) -> Matrix<6> {
-        let change = flow_variational(series, &self.columns, time);
-        Matrix::from_fn(|row, column| self.matrix.0[row][column] + change[row][column])
-    }
+/// Why an integration pauses.
+#[derive(Clone, Copy, Debug, PartialEq)]
+pub enum Halt {
+    /// The steps granted are taken.
+    Steps,
+    /// The series is expanded for a step of this signed length, the last one before the target or one that is watched.
+    Step {
+        /// Its length.
+        length: f64,
+        /// Whether it ends at the target.
+        last: bool,
+    },
+    /// The step would be too short.
+    Floor,
 }
 
 impl Motion {
-    /// From (x, y, z, vx, vy, vz) in the default frame.
+    /// At the start.
     #[must_use]
-    pub fn new(primaries: Primaries, state: [DoubleDouble; 6], with_matrix: bool) -> Self {
-        let transition = with_matrix.then(|| Box::new(Transition::new()));
-        Self { primaries, state, series: Box::default(), transition }
-    }
-
-    /// The state reached.
-    #[must_use]
-    pub fn state(&self) -> &[DoubleDouble; 6] {
-        &self.state
-    }
-
-    /// The series of the step under way.
-    #[must_use]
-    pub fn series(&self) -> &Series {
-        &self.series
-    }
-
-    /// Prepares a step from the state reached.
-    pub fn expand(&mut self) {
-        expand(&self.primaries, &self.state, &mut self.series);
-    }
-
-    /// Prepares the matrix for the step that is already prepared.
-    pub fn expand_matrix(&mut self) {
-        if let Some(transition) = &mut self.transition {
-            let Transition { matrix, columns } = &mut **transition;
-            expand_variational(&self.series, &matrix.0, columns);
+    pub fn new(primaries: Primaries, state: [DoubleDouble; 6]) -> Self {
+        Self {
+            primaries,
+            state,
+            elapsed: DoubleDouble::default(),
+            reference: None,
+            drift: 0.0,
+            steps: 0,
+            series: Box::default(),
+            length: DoubleDouble::default(),
         }
+    }
+
+    /// Takes steps from here, in the `direction` ±1, as long as they end before `target`, at most `most`. Where
+    /// `watched` it stops at each step.
+    pub fn run(&mut self, target: DoubleDouble, direction: f64, most: u64, watched: bool) -> Halt {
+        for _ in 0..most {
+            expand(&self.primaries, &self.state, &mut self.series);
+            let remaining = target - self.elapsed;
+            let step = self.series.step();
+            let last = step >= remaining.abs().to_f64();
+            // Written so that a step that is no number counts as too small.
+            if !(self.series.is_finite() && (last || step >= STEP_FLOOR)) {
+                return Halt::Floor;
+            }
+            self.measure(self.series.jacobi());
+            self.steps += 1;
+            self.length = if last { remaining } else { DoubleDouble::from(step * direction) };
+            if last || watched {
+                return Halt::Step { length: self.length.to_f64(), last };
+            }
+            self.step();
+        }
+        Halt::Steps
     }
 
     /// The state `at` a time after the start of the step.
@@ -73,24 +86,21 @@ impl Motion {
         std::array::from_fn(|i| self.state[i] + change[i])
     }
 
-    /// d(state)/d(state at the start) for the state reached, rows x, y, z, vx, vy, vz, where wanted.
-    #[must_use]
-    pub fn matrix(&self) -> Option<&Matrix<6>> {
-        self.transition.as_ref().map(|transition| &transition.matrix)
+    /// Moves on by `time` within the step.
+    pub fn advance(&mut self, time: DoubleDouble) {
+        self.state = self.state_at(time);
+        self.elapsed = self.elapsed + time;
     }
 
-    /// The same `at` a time after the start of the step.
-    #[must_use]
-    pub fn matrix_at(&self, at: DoubleDouble) -> Option<Matrix<6>> {
-        self.transition.as_ref().map(|transition| transition.at(&self.series, at))
+    /// Moves on to the end of the step.
+    pub fn step(&mut self) {
+        self.advance(self.length);
     }
 
-    /// Goes on to `at` a time after the start of the step.
-    pub fn advance(&mut self, at: DoubleDouble) {
-        self.state = self.state_at(at);
-        if let Some(transition) = &mut self.transition {
-            transition.matrix = transition.at(&self.series, at);
-        }
+    /// The length of the step, whose rounded value a [`Halt`] tells.
+    #[must_use]
+    pub fn length(&self) -> DoubleDouble {
+        self.length
     }
 
     /// Adds to the velocity.
@@ -100,10 +110,10 @@ impl Motion {
         }
     }
 
-    /// Makes the place reached the start that the matrix refers to.
-    pub fn restart_matrix(&mut self) {
-        if let Some(transition) = &mut self.transition {
-            transition.matrix = Matrix::identity();
-        }
+    /// Takes the Jacobi constant of a place on the leg into account.
+    pub fn measure(&mut self, jacobi: DoubleDouble) {
+        let reference = *self.reference.get_or_insert(jacobi);
+        let departure = (jacobi - reference).abs().to_f64();
+        self.drift = if departure > self.drift { departure } else { self.drift };
     }
 }
