@@ -3,12 +3,12 @@
 use nalgebra::{Matrix3, Matrix6};
 
 use crate::arithmetic::sum::Compensated;
-use crate::taylor::{self, Columns, Series};
+use crate::taylor::{self, Columns, Path, Series};
 
 /// The matrix of the leg under way, and of all before it.
 pub(super) struct Transition {
-    columns: Box<Columns<f64>>,
-    leg: [[Compensated; 6]; 6],
+    /// Of the leg under way, at the last place reached.
+    pub leg: [[Compensated; 6]; 6],
     before: Matrix6<f64>,
     determinant_defect: f64,
     symplectic_defect: f64,
@@ -17,7 +17,6 @@ pub(super) struct Transition {
 impl Transition {
     pub(super) fn new() -> Self {
         Self {
-            columns: Box::default(),
             leg: identity(),
             before: Matrix6::identity(),
             determinant_defect: 0.0,
@@ -26,21 +25,21 @@ impl Transition {
     }
 
     /// Prepares a step along `series`.
-    pub(super) fn expand(&mut self, series: &Series<f64>) {
-        taylor::expand_variational(series, &self.leg.map(|row| row.map(|c| c.value)), &mut self.columns);
+    pub(super) fn expand(&self, path: Path, series: &Series, columns: &mut Columns) {
+        taylor::expand_variational(path, series, &self.leg.map(|row| row.map(|c| c.value)), columns);
     }
 
     /// The leg's matrix `at` a time after the start of the step.
-    fn leg_at(&self, at: f64) -> [[Compensated; 6]; 6] {
-        let change = taylor::flow_variational(&self.columns, at);
+    fn leg_at(&self, path: Path, columns: &Columns, at: f64) -> [[Compensated; 6]; 6] {
+        let change = taylor::flow_variational(path, columns, at);
         std::array::from_fn(|row| {
             std::array::from_fn(|column| self.leg[row][column].plus(change[row][column]))
         })
     }
 
     /// d(state)/d(initial state) `at` a time after the start of the step.
-    pub(super) fn at(&self, at: f64) -> Matrix6<f64> {
-        rounded(&self.leg_at(at)) * self.before
+    pub(super) fn at(&self, path: Path, columns: &Columns, at: f64) -> Matrix6<f64> {
+        rounded(&self.leg_at(path, columns, at)) * self.before
     }
 
     /// d(state)/d(initial state) at the last place reached.
@@ -48,8 +47,8 @@ impl Transition {
         rounded(&self.leg) * self.before
     }
 
-    pub(super) fn advance(&mut self, at: f64) {
-        self.leg = self.leg_at(at);
+    pub(super) fn advance(&mut self, path: Path, columns: &Columns, at: f64) {
+        self.leg = self.leg_at(path, columns, at);
     }
 
     /// Ends a leg, measuring it; the next one begins after a jump.

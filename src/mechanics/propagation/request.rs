@@ -8,7 +8,7 @@ use crate::frame::{Frame, Origin};
 use crate::quantity::{Distance, Duration, MassParameter, Quantity, Tolerance};
 use crate::state::State;
 use crate::system::Primary;
-use crate::taylor::{Primaries, StepSize};
+use crate::taylor::{Path, Primaries, StepSize};
 
 /// Numbers of a sample: time, position and velocity.
 const STATE_VALUES: u64 = 7;
@@ -110,6 +110,7 @@ pub struct Request {
     parts: RequestParts,
     primaries: Primaries,
     step_size: StepSize,
+    path: Path,
 }
 
 impl Request {
@@ -130,7 +131,7 @@ impl Request {
         }
         let spanned = problems.is_empty();
         let step_size = StepSize::new(parts.tolerance.get());
-        let mut request = Self { parts, primaries, step_size };
+        let mut request = Self { parts, primaries, step_size, path: Path::fastest() };
         request.check_states(&mut problems);
         request.check_sampling(spanned, &mut problems);
         request.check_manoeuvres(&mut problems);
@@ -157,6 +158,21 @@ impl Request {
     #[must_use]
     pub fn limits(&self) -> Limits {
         self.parts.limits
+    }
+
+    /// The same request, computed on a certain path. The results are the same bits.
+    #[must_use]
+    pub fn on(mut self, path: Path) -> Self {
+        self.path = path;
+        self
+    }
+
+    pub(super) fn with_matrix(&self) -> bool {
+        self.parts.matrix != MatrixOutput::None
+    }
+
+    pub(super) fn path(&self) -> Path {
+        self.path
     }
 
     pub(super) fn primaries(&self) -> &Primaries {

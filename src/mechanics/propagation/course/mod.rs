@@ -1,4 +1,5 @@
-//! One trajectory, step by step.
+//! One trajectory's bookkeeping: legs, events, samples, and what is measured. The integration itself is elsewhere,
+//! alone ([`super::alone`]) or among others ([`super::swarm`]).
 
 mod sampling;
 
@@ -17,10 +18,8 @@ use crate::potential::gradient;
 use crate::quantity::{Distance, Quantity};
 use crate::state::State;
 use crate::system::Primary;
-use crate::taylor::{self, STEP_FLOOR, Series};
+use crate::taylor::{self, Columns, Place, Series};
 
-/// Steps between two polls: a tenth of a millisecond with a matrix, less without.
-const STEPS_PER_POLL: u64 = 64;
 /// A start this near to a surface is on it: coordinates of the order of 1 are rounded to about this.
 const SURFACE: f64 = 8.0 * f64::EPSILON;
 /// Numbers of an event in the answer: which, its time, position and velocity.
@@ -42,35 +41,37 @@ pub(super) fn not_started(request: &Request, index: usize) -> Trajectory {
 }
 
 /// Why the integration stops here, or does not go on at all.
-type Flow = Result<ControlFlow<Outcome>, Failure>;
+pub(super) type Flow = Result<ControlFlow<Outcome>, Failure>;
+
+/// Where samples go that a trajectory does not keep.
+pub(super) struct Outlet<'a>(pub Option<&'a mut dyn Sink>);
 
 /// A trajectory under way.
 pub(super) struct Course<'a> {
-    request: &'a Request,
-    index: usize,
+    pub request: &'a Request,
+    pub index: usize,
     budget: &'a SampleBudget,
-    sink: &'a mut dyn Sink,
     interrupt: &'a dyn Interrupt,
     /// +1 forwards, −1 backwards.
-    direction: f64,
+    pub direction: f64,
     start: f64,
     duration: f64,
-    state: [Compensated; 6],
-    /// Signed time since the start.
-    elapsed: Compensated,
-    series: Box<Series<f64>>,
-    transition: Option<Transition>,
+    /// Where it is, and how long it has taken to get there.
+    pub motion: Place,
+    /// Signed time since the start at which the leg under way ends.
+    pub target: Compensated,
+    pub transition: Option<Transition>,
+    manoeuvres: Vec<(Compensated, usize)>,
+    /// Manoeuvres that have been met.
+    met: usize,
     watches: Vec<Watch>,
     counts: Vec<u64>,
     surfaces: Vec<(Primary, Watch)>,
     scratch: Scratch,
-    /// Jacobi constant at the start of the leg.
-    leg_jacobi: Option<f64>,
     next_sample: u64,
     samples: Samples,
     events: Vec<Occurrence>,
     stopped_by: Option<usize>,
-    evidence: Evidence,
 }
 
 /// What is used anew in each step.
@@ -88,16 +89,23 @@ enum Found {
     Surface(Primary),
 }
 
+/// A step about to be taken.
+#[derive(Clone, Copy)]
+pub(super) struct Step {
+    /// Its signed length.
+    pub length: f64,
+    /// Whether it ends at the end of the leg.
+    pub last: bool,
+}
+
 impl<'a> Course<'a> {
     pub(super) fn new(
         request: &'a Request,
         index: usize,
         budget: &'a SampleBudget,
-        sink: &'a mut dyn Sink,
         interrupt: &'a dyn Interrupt,
     ) -> Self {
         let parts = request.parts();
-        let initial = &parts.states[index];
         let duration = request.duration(index);
         let origin = request.origin_x();
         let watches: Vec<_> =
@@ -113,129 +121,93 @@ impl<'a> Course<'a> {
             request,
             index,
             budget,
-            sink,
             interrupt,
             direction: if duration < 0.0 { -1.0 } else { 1.0 },
-            start: initial.time,
+            start: parts.states[index].time,
             duration,
-            state: request.start_of(index),
-            elapsed: Compensated::default(),
-            series: Box::default(),
+            motion: Place::new(request.start_of(index)),
+            target: Compensated::default(),
             transition: (parts.matrix != MatrixOutput::None).then(Transition::new),
+            manoeuvres: request.manoeuvres_of(index),
+            met: 0,
             counts: vec![0; watches.len()],
             watches,
             surfaces,
             scratch: Scratch::default(),
-            leg_jacobi: None,
             next_sample: 0,
             samples: Samples::default(),
             events: Vec::new(),
             stopped_by: None,
-            evidence: Evidence::default(),
         }
     }
 
-    pub(super) fn run(mut self) -> Result<Trajectory, Failure> {
-        let outcome = match self.legs()? {
-            ControlFlow::Break(outcome) => outcome,
-            ControlFlow::Continue(()) => Outcome::Complete,
-        };
-        self.end_leg();
-        let last = self.seen(self.time_here(), &[0.0; 6]);
-        let matrix = self.transition.as_mut().map(|transition| {
-            let (determinant, symplectic) = transition.defects();
-            self.evidence.determinant_defect = Some(determinant);
-            self.evidence.symplectic_defect = Some(symplectic);
-            transition.here()
-        });
-        Ok(Trajectory {
-            index: self.index,
-            outcome,
-            last,
-            stopped_by: self.stopped_by,
-            samples: self.samples,
-            events: self.events,
-            matrix: matrix.map(|m| in_frame(self.request, &m, self.start, last.time)),
-            evidence: self.evidence,
-        })
+    /// Whether each step has to be looked at: for events, surfaces or samples.
+    pub(super) fn is_watched(&self) -> bool {
+        !self.watches.is_empty()
+            || !self.surfaces.is_empty()
+            || self.request.parts().sampling != Sampling::None
     }
 
-    /// The legs between manoeuvres.
-    fn legs(&mut self) -> Flow {
+    /// What happens at the start, before any step.
+    pub(super) fn open(&mut self, outlet: &mut Outlet) -> Flow {
         if let Some(outcome) = self.inside() {
-            self.sample_here(false)?;
+            self.sample_here(false, outlet)?;
             return Ok(ControlFlow::Break(outcome));
         }
-        let manoeuvres = self.request.manoeuvres_of(self.index);
-        let mut rest = manoeuvres.as_slice();
-        loop {
-            // All manoeuvres of one instant, then the samples of that very instant, on their far side.
-            while let Some(((at, manoeuvre), later)) = rest.split_first()
-                && at.minus(self.elapsed) * self.direction <= 0.0
-            {
-                self.apply(*manoeuvre)?;
-                rest = later;
-            }
-            let end = Compensated::new(self.duration);
-            let finished = end.minus(self.elapsed) * self.direction <= 0.0;
-            self.sample_here(finished)?;
-            if finished {
-                return Ok(ControlFlow::Continue(()));
-            }
-            let target = rest.first().map_or(end, |(at, _)| *at);
-            if let ControlFlow::Break(outcome) = self.leg(target)? {
-                return Ok(ControlFlow::Break(outcome));
-            }
-            self.elapsed = target;
-        }
+        self.next_leg(outlet)
     }
 
-    /// Steps up to `target`, or to where the trajectory ends before.
-    fn leg(&mut self, target: Compensated) -> Flow {
-        let limits = self.request.limits();
-        loop {
-            if self.evidence.steps % STEPS_PER_POLL == STEPS_PER_POLL - 1
-                && let ControlFlow::Break(outcome) = self.poll()?
-            {
-                return Ok(ControlFlow::Break(outcome));
-            }
-            if self.evidence.steps == limits.steps {
-                return Ok(ControlFlow::Break(Outcome::StepLimit));
-            }
-            taylor::expand(self.request.primaries(), &self.state, &mut self.series);
-            let remaining = target.minus(self.elapsed);
-            let step = self.request.step_size().from_log2_radius(self.series.log2_radius);
-            let last = step >= remaining.abs();
-            // Written so that a step that is no number counts as too small.
-            if !(self.series.is_finite() && (last || step >= STEP_FLOOR)) {
-                return Ok(ControlFlow::Break(Outcome::StepFloor));
-            }
-            self.measure(self.series.jacobi);
-            self.evidence.steps += 1;
-            if let Some(transition) = &mut self.transition {
-                transition.expand(&self.series);
-            }
-            let length = if last { remaining } else { step * self.direction };
-            let known = self.events.len();
-            let at_end = last && target == Compensated::new(self.duration);
-            let stop = self.watch(length, at_end);
-            self.budget.take(VALUES_PER_EVENT * (self.events.len() - known) as u64)?;
-            let end = stop.map_or(length, |(at, _)| at);
-            self.sample_within(end, last && stop.is_none())?;
-            self.advance(end);
-            if let Some((_, outcome)) = stop {
-                return Ok(ControlFlow::Break(outcome));
-            }
-            if last {
-                return Ok(ControlFlow::Continue(()));
-            }
-            if self.request.parts().sampling == Sampling::EveryStep {
-                self.push_sample(0.0, None)?;
-            }
+    /// What happens between two legs; the next one's end is then the target.
+    pub(super) fn next_leg(&mut self, outlet: &mut Outlet) -> Flow {
+        // All manoeuvres of one instant, then the samples of that very instant, on their far side.
+        while let Some(&(at, manoeuvre)) = self.manoeuvres.get(self.met)
+            && at.minus(self.motion.elapsed) * self.direction <= 0.0
+        {
+            self.apply(manoeuvre)?;
+            self.met += 1;
         }
+        let end = Compensated::new(self.duration);
+        let finished = end.minus(self.motion.elapsed) * self.direction <= 0.0;
+        self.sample_here(finished, outlet)?;
+        if finished {
+            return Ok(ControlFlow::Break(Outcome::Complete));
+        }
+        self.target = self.manoeuvres.get(self.met).map_or(end, |(at, _)| *at);
+        Ok(ControlFlow::Continue(()))
     }
 
-    fn poll(&self) -> Flow {
+    /// Records the events and samples of a step along `series`; gives how far it goes, and why the trajectory ends there if
+    /// it does.
+    pub(super) fn observe(
+        &mut self,
+        series: &Series,
+        step: Step,
+        columns: Option<&Columns>,
+        outlet: &mut Outlet,
+    ) -> Result<(f64, Option<Outcome>), Failure> {
+        let known = self.events.len();
+        let at_end = step.last && self.target == Compensated::new(self.duration);
+        let stop = self.watch(series, step.length, at_end);
+        self.budget.take(VALUES_PER_EVENT * (self.events.len() - known) as u64)?;
+        let end = stop.map_or(step.length, |(at, _)| at);
+        self.sample_within(series, columns, end, step.last && stop.is_none(), outlet)?;
+        Ok((end, stop.map(|(_, outcome)| outcome)))
+    }
+
+    /// What happens at the end of a step that goes on.
+    pub(super) fn arrive(&mut self, last: bool, outlet: &mut Outlet) -> Flow {
+        if last {
+            self.motion.elapsed = self.target;
+            return self.next_leg(outlet);
+        }
+        if self.request.parts().sampling == Sampling::EveryStep {
+            self.push_sample(None, None, 0.0, None, outlet)?;
+        }
+        Ok(ControlFlow::Continue(()))
+    }
+
+    /// A reason to end here, if there is one.
+    pub(super) fn poll(&self) -> Flow {
         match self.interrupt.poll() {
             Some(Stop::Cancelled) => Err(Failure::Cancelled),
             Some(Stop::WallTime) => Ok(ControlFlow::Break(Outcome::WallTimeLimit)),
@@ -243,28 +215,41 @@ impl<'a> Course<'a> {
         }
     }
 
-    /// Takes the Jacobi constant of a place on the leg into account.
-    fn measure(&mut self, jacobi: f64) {
-        let reference = *self.leg_jacobi.get_or_insert(jacobi);
-        self.evidence.jacobi_drift = self.evidence.jacobi_drift.max((jacobi - reference).abs());
+    /// The trajectory, which ends here.
+    pub(super) fn close(mut self, outcome: Outcome) -> Trajectory {
+        self.end_leg();
+        let last = self.seen(self.time_here(), &[0.0; 6]);
+        let mut evidence = Evidence {
+            steps: self.motion.steps,
+            jacobi_drift: self.motion.drift,
+            determinant_defect: None,
+            symplectic_defect: None,
+        };
+        let matrix = self.transition.as_mut().map(|transition| {
+            let (determinant, symplectic) = transition.defects();
+            evidence.determinant_defect = Some(determinant);
+            evidence.symplectic_defect = Some(symplectic);
+            transition.here()
+        });
+        Trajectory {
+            index: self.index,
+            outcome,
+            last,
+            stopped_by: self.stopped_by,
+            samples: self.samples,
+            events: self.events,
+            matrix: matrix.map(|m| in_frame(self.request, &m, self.start, last.time)),
+            evidence,
+        }
     }
 
     fn end_leg(&mut self) {
-        if self.leg_jacobi.is_some() {
-            self.measure(taylor::jacobi_constant(self.request.primaries(), &self.state));
+        if self.motion.reference.is_some() {
+            let jacobi =
+                taylor::jacobi_constant(self.request.path(), self.request.primaries(), &self.motion.state);
+            self.motion.measure(jacobi);
+            self.motion.reference = None;
         }
-        self.leg_jacobi = None;
-    }
-
-    fn advance(&mut self, length: f64) {
-        let change = taylor::flow(&self.series, length);
-        for (component, change) in self.state.iter_mut().zip(change) {
-            *component = component.plus(change);
-        }
-        if let Some(transition) = &mut self.transition {
-            transition.advance(length);
-        }
-        self.elapsed = self.elapsed.plus(length);
     }
 
     /// The outcome of a start inside a primary.
@@ -274,12 +259,12 @@ impl<'a> Course<'a> {
             return None;
         }
         let primaries = self.request.primaries();
-        let velocity = Vector3::new(self.state[3].value, self.state[4].value, self.state[5].value);
-        let position = Vector3::new(self.state[0].value, self.state[1].value, self.state[2].value);
+        let velocity = Vector3::new(self.motion.state[3].value, self.motion.state[4].value, self.motion.state[5].value);
+        let position = Vector3::new(self.motion.state[0].value, self.motion.state[1].value, self.motion.state[2].value);
         let coriolis = 2.0 * Vector3::new(velocity.y, -velocity.x, 0.0);
         let acceleration = gradient(self.request.parts().mass_parameter, &position) + coriolis;
         let below = |radius: Option<Distance>, centre: Compensated| {
-            let away = Vector3::new(self.state[0].minus(centre), self.state[1].value, self.state[2].value);
+            let away = Vector3::new(self.motion.state[0].minus(centre), self.motion.state[1].value, self.motion.state[2].value);
             let rate = away.dot(&velocity) * self.direction;
             let inwards =
                 rate < 0.0 || (rate == 0.0 && away.dot(&acceleration) + velocity.norm_squared() < 0.0);
@@ -306,7 +291,7 @@ impl<'a> Course<'a> {
         let (change, jump) = manoeuvre
             .impulse(parts.frame, &before)
             .ok_or(Failure::UndefinedAxes { manoeuvre: index, trajectory: self.index })?;
-        for (component, change) in self.state[3..].iter_mut().zip(change.iter()) {
+        for (component, change) in self.motion.state[3..].iter_mut().zip(change.iter()) {
             *component = component.plus(change * self.direction);
         }
         if let Some(transition) = &mut self.transition {
@@ -316,16 +301,18 @@ impl<'a> Course<'a> {
     }
 
     /// Records the events of a step; gives where and why the trajectory ends in it, if it does.
-    fn watch(&mut self, length: f64, at_end: bool) -> Option<(f64, Outcome)> {
+    fn watch(&mut self, series: &Series, length: f64, at_end: bool) -> Option<(f64, Outcome)> {
         if self.watches.is_empty() && self.surfaces.is_empty() {
             return None;
         }
+        let elapsed = self.motion.elapsed;
         let stretch = Stretch::new(
-            &self.series,
-            &self.state,
-            self.start + self.elapsed.value,
+            self.request.path(),
+            series,
+            &self.motion.state,
+            self.start + elapsed.value,
             length,
-            self.elapsed.value,
+            elapsed.value,
         );
         let Scratch { roots, hits, found } = &mut self.scratch;
         found.clear();
@@ -353,9 +340,9 @@ impl<'a> Course<'a> {
                 Found::Surface(_) => {}
                 Found::Event(entry) => {
                     let event = &parts.events[entry];
-                    let time = self.start + (self.elapsed.value + (self.elapsed.rest + hit.at));
-                    let change = taylor::flow(&self.series, hit.at);
-                    let state = seen(self.request, &self.state, time, &change);
+                    let time = self.start + (elapsed.value + (elapsed.rest + hit.at));
+                    let change = taylor::flow(self.request.path(), series, hit.at);
+                    let state = seen(self.request, &self.motion.state, time, &change);
                     let admitted = event.direction.admits(hit.rate)
                         && event.only.is_none_or(|only| only.admits(&state.position));
                     if !admitted {
@@ -377,12 +364,12 @@ impl<'a> Course<'a> {
     }
 
     fn time_here(&self) -> f64 {
-        self.start + (self.elapsed.value + self.elapsed.rest)
+        self.start + (self.motion.elapsed.value + self.motion.elapsed.rest)
     }
 
     /// The state after a change, in the request's frame.
     fn seen(&self, time: f64, change: &[f64; 6]) -> State {
-        seen(self.request, &self.state, time, change)
+        seen(self.request, &self.motion.state, time, change)
     }
 }
 
