@@ -11,8 +11,8 @@ MODULES = ("heyoka_taylor", "numba_dop853", "scipy_ode")
 # A repeat lasts at least so long, s, and the calls over no time this many times.
 FLOOR = 0.025
 EMPTY_CALLS = 5000
-# Where a measurement lasts longer than this, s, the stack is left as it is.
-LONG = 3.0
+# Where a measurement lasts longer than this, s, it is of scalar code, which does not mind where its stack begins.
+LONG = 0.5
 DEPTHS = 6
 # Added to the name of a case: the same trajectories, many at once.
 LANES = "_lanes"
