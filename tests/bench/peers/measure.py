@@ -14,8 +14,13 @@ EMPTY_CALLS = 5000
 # Where a measurement lasts longer than this, s, it is of scalar code, which does not mind where its stack begins.
 LONG = 0.5
 DEPTHS = 6
-# Added to the name of a case: the same trajectories, many at once.
-LANES = "_lanes"
+# Added to the name of a case: the same trajectory many at once, and in more digits.
+LANES, DOUBLE_DOUBLE = "_lanes", "_double_double"
+
+
+def is_case(name):
+    """Whether it is raced by itself, and is no variant of another."""
+    return not name.endswith((LANES, DOUBLE_DOUBLE))
 
 
 def log(*words):
@@ -103,7 +108,7 @@ def race(program, name, paths, peers, repeats):
     case = program.case(name)
     ours = {
         (variant, path): Ours(program, case, variant, path)
-        for variant in (name, name + LANES)
+        for variant in (name, name + LANES, name + DOUBLE_DOUBLE)
         if variant in program.names()
         for path in paths
     }

@@ -1,6 +1,6 @@
 """Who is faster: ratios at no larger error, and the tables made of them."""
 
-from .measure import LANES
+from .measure import DOUBLE_DOUBLE, LANES
 
 # Rounding alone leaves every double-precision code anywhere below this, by luck of the steps.
 LUCK = {"nrho_30": 1e-7}
@@ -11,6 +11,8 @@ AIMS = {
     "matrix": {"avx512": 3.5, "avx2": 2.5},
     "lanes": {"avx512": 5.5, "avx2": 2.7},
 }
+# The most that double-double arithmetic may cost, in times of the double run.
+DOUBLE_DOUBLE_AIM = 150.0
 # The peer of a narrow path has no wider lanes than it.
 WIDER = {"avx2": "batch of 8"}
 SCIPY, SCIPY_CASE, SCIPY_AIM = "scipy DOP853", "halo_period", 700.0
@@ -43,6 +45,8 @@ def ratios(cases):
     for name, case in cases.items():
         luck = LUCK.get(name, 0.0)
         for variant, by_path in case["ours"].items():
+            if variant.endswith(DOUBLE_DOUBLE):
+                continue
             kind = "lanes" if variant.endswith(LANES) else case["kind"]
             for path, ours in by_path.items():
                 row = {"case": variant, "path": path, "seconds": ours["seconds"], "error": ours["error"]}
@@ -57,6 +61,16 @@ def ratios(cases):
                 rows.append(row | {"aim": aim})
                 if variant == SCIPY_CASE and SCIPY in less:
                     rows.append(row | compare(ours, SCIPY, less) | {"aim": SCIPY_AIM, "fastest": None})
+    return rows
+
+
+def costs(cases):
+    """What double-double arithmetic costs, in times of the double run by the same path."""
+    rows = []
+    for name, case in cases.items():
+        for path, fine in case["ours"].get(name + DOUBLE_DOUBLE, {}).items():
+            factor = fine["seconds"] / case["ours"][name][path]["seconds"]
+            rows.append({"case": name, "path": path, "factor": factor, "aim": DOUBLE_DOUBLE_AIM} | fine)
     return rows
 
 
@@ -87,6 +101,9 @@ def markdown(result):
         if fastest and fastest["peer"] != row.get("peer"):
             there = cell(fastest["peer_seconds"], fastest["peer_error"])
             lines += ["", f"Faster and more accurate on {row['case']} ({row['path']}): {fastest['peer']}, {there}."]
+    for row in result["double_double"]:
+        text = f"{LABELS[row['case']]} ({row['path']}): {cell(row['seconds'], row['error'])}"
+        lines += ["", f"In double-double arithmetic, {text}, {row['factor']:.3g} times the double run."]
     return "\n".join(lines)
 
 
