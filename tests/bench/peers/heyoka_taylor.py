@@ -12,10 +12,10 @@ from .problem import Job
 hy.set_nthreads(1)
 
 
-def system(mu, columns=0):
-    """The equations, followed by so many columns of the variational equations."""
+def system(mu, columns=0, one=1.0):
+    """The equations, followed by so many columns of the variational equations; in the arithmetic of mu and `one`."""
     x, y, z, u, v, w = hy.make_vars("x", "y", "z", "vx", "vy", "vz")
-    one_minus_mu = 1.0 - mu
+    one_minus_mu = one - mu
     d1, d2 = x + mu, x - one_minus_mu
     q1 = hy.sum([d1**2.0, y**2.0, z**2.0])
     q2 = hy.sum([d2**2.0, y**2.0, z**2.0])
