@@ -1,8 +1,9 @@
 //! Motion in double-double arithmetic, before anything is rounded.
 
+use mechanics::arithmetic::sum::Compensated;
 use mechanics::arithmetic::{DoubleDouble, Matrix};
-use mechanics::taylor::Primaries;
-use mechanics::taylor::extended::{self, Columns, Halt, Motion};
+use mechanics::taylor::extended::{self, Columns, Motion};
+use mechanics::taylor::{Halt, Path, Primaries, Stride};
 use proptest::prelude::*;
 
 use crate::propagation::{HALO, HALO_PERIOD, MU};
@@ -45,14 +46,24 @@ pub(crate) fn truth(case: &str, which: &str) -> [DoubleDouble; 6] {
 /// A motion after a time.
 pub(crate) fn propagated(mut motion: Motion, duration: f64) -> Motion {
     let target = motion.elapsed + DoubleDouble::from(duration);
-    let halt = motion.run(target, 1.0_f64.copysign(duration), 100_000, false);
+    let halt = motion.run(&Stride {
+        target: target.into(),
+        direction: 1.0_f64.copysign(duration),
+        most: 100_000,
+        watched: false,
+    });
     assert!(matches!(halt, Halt::Step { last: true, .. }), "{halt:?}");
     motion.step();
     motion
 }
 
+/// One step towards a time.
+fn one_step(target: f64) -> Stride {
+    Stride { target: Compensated::new(target), direction: 1.0, most: 1, watched: true }
+}
+
 pub(crate) fn motion(mu: f64, state: [f64; 6]) -> Motion {
-    Motion::new(Primaries::new(mu), state.map(DoubleDouble::from))
+    Motion::new(Path::fastest(), Primaries::new(mu), state.map(DoubleDouble::from))
 }
 
 proptest! {
@@ -69,7 +80,7 @@ proptest! {
         let mut finished = false;
         let mut largest: f64 = 0.0;
         while !finished {
-            let halt = motion.run(DoubleDouble::from(3.0), 1.0, 1, true);
+            let halt = motion.run(&one_step(3.0));
             let Halt::Step { last, .. } = halt else { panic!("{halt:?}") };
             motion.step();
             let [x, y, .., vx, vy, vz] = motion.state.map(DoubleDouble::to_f64);
@@ -113,13 +124,13 @@ fn matrices_of_many_digits() {
     for (case, state, duration) in [("stm_halo", HALO, HALO_PERIOD), ("stm_nrho", RECTILINEAR, 1.511)] {
         let mut motion = motion(MU, state);
         let mut matrix = Matrix::<6>::identity();
-        let mut columns = Columns::new();
+        let (path, mut columns) = (Path::fastest(), Columns::new());
         let mut finished = false;
         while !finished {
-            let halt = motion.run(DoubleDouble::from(duration), 1.0, 1, true);
+            let halt = motion.run(&one_step(duration));
             let Halt::Step { last, .. } = halt else { panic!("{halt:?}") };
-            extended::expand_variational(&motion.series, &matrix.0, &mut columns);
-            let change = extended::flow_variational(&motion.series, &columns, motion.length());
+            extended::expand_variational(path, &motion.series, &matrix.0, &mut columns);
+            let change = extended::flow_variational(path, &motion.series, &columns, motion.length());
             matrix = Matrix::from_fn(|i, j| matrix.0[i][j] + change[i][j]);
             motion.step();
             finished = last;
@@ -168,7 +179,7 @@ fn fly_bys_stay_finite_and_accurate() {
 #[test]
 fn dense_output_is_a_shorter_step() {
     let mut motion = motion(MU, HALO);
-    let halt = motion.run(DoubleDouble::from(1.0), 1.0, 1, true);
+    let halt = motion.run(&one_step(1.0));
     let Halt::Step { length: step, last: false } = halt else { panic!("{halt:?}") };
     for share in [0.0, 0.25, 0.7, 1.0] {
         let at = DoubleDouble::from(share * step);
@@ -181,15 +192,15 @@ fn dense_output_is_a_shorter_step() {
 
 #[test]
 fn the_rounded_series_is_that_of_double_precision() {
-    use mechanics::arithmetic::sum::Compensated;
     let mut motion = motion(MU, RECTILINEAR);
-    motion.run(DoubleDouble::from(1.0), 1.0, 1, true);
+    motion.run(&one_step(1.0));
+    let path = Path::fastest();
     let (mut rounded, mut double) = Default::default();
     motion.series.round_to(&mut rounded);
-    mechanics::taylor::expand(&Primaries::new(MU), &RECTILINEAR.map(Compensated::new), &mut double);
+    mechanics::taylor::expand(path, &Primaries::new(MU), &RECTILINEAR.map(Compensated::new), &mut double);
     for time in [0.01, -0.02] {
-        let found = mechanics::taylor::flow(&rounded, time);
-        let expected = mechanics::taylor::flow(&double, time);
+        let found = mechanics::taylor::flow(path, &rounded, time);
+        let expected = mechanics::taylor::flow(path, &double, time);
         for (found, expected) in found.iter().zip(expected) {
             assert!((found - expected).abs() <= 1e-15, "{found:e} {expected:e}");
         }

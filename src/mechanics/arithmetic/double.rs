@@ -3,15 +3,15 @@
 use super::Real;
 
 /// Bits of a double's fraction.
-const FRACTION_BITS: u32 = 52;
+pub(super) const FRACTION_BITS: u32 = 52;
 /// A double's exponent bias.
-const BIAS: i64 = 1023;
+pub(super) const BIAS: i64 = 1023;
 /// 2/ln 2 over 1, 3, 5, 7: log₂ of (1 + t)/(1 − t) in odd powers of t, whose next term is below 1e-7 for
 /// |t| ≤ 3 − 2√2.
-const LOG2_ODD: [f64; 4] =
+pub(super) const LOG2_ODD: [f64; 4] =
     [2.885_390_081_777_926_8, 0.961_796_693_925_975_6, 0.577_078_016_355_585_4, 0.412_198_583_111_132_4];
 /// (ln 2)^k/k!: the Taylor coefficients of 2^f, cut where |f| ≤ 1/2 leaves 3e-6.
-const EXP2: [f64; 6] = [
+pub(super) const EXP2: [f64; 6] = [
     1.0,
     std::f64::consts::LN_2,
     0.240_226_506_959_100_7,
@@ -19,6 +19,10 @@ const EXP2: [f64; 6] = [
     0.009_618_129_107_628_477,
     0.001_333_355_814_642_844_2,
 ];
+/// 1.5 × 2^52: adding and subtracting it rounds to the nearest integer.
+pub(super) const ROUNDER: f64 = 6_755_399_441_055_744.0;
+/// Brings a mantissa into [√½, √2): the difference of the bit patterns of 1 and √½.
+pub(super) const TO_ONE: u64 = 1.0_f64.to_bits() - std::f64::consts::FRAC_1_SQRT_2.to_bits();
 
 impl Real for f64 {
     #[inline(always)]
@@ -29,6 +33,11 @@ impl Real for f64 {
     #[inline(always)]
     fn mul_add(self, factor: Self, addend: Self) -> Self {
         Self::mul_add(self, factor, addend)
+    }
+
+    #[inline(always)]
+    fn neg_mul_add(self, factor: Self, addend: Self) -> Self {
+        Self::mul_add(-self, factor, addend)
     }
 
     #[inline(always)]
@@ -59,8 +68,6 @@ impl Real for f64 {
     #[inline(always)]
     #[expect(clippy::cast_possible_wrap, clippy::cast_precision_loss, reason = "an exponent has 11 bits")]
     fn log2_coarse(self) -> Self {
-        // The mantissa is brought into [√½, √2) by adding the difference of the bit patterns of 1 and √½.
-        const TO_ONE: u64 = 1.0_f64.to_bits() - std::f64::consts::FRAC_1_SQRT_2.to_bits();
         let shifted = self.to_bits().wrapping_add(TO_ONE);
         let exponent = (shifted >> FRACTION_BITS) as i64 - BIAS;
         let mantissa =
@@ -75,8 +82,6 @@ impl Real for f64 {
     #[inline(always)]
     #[expect(clippy::cast_possible_truncation, reason = "the power is within ±1000")]
     fn exp2_coarse(self) -> Self {
-        // Adding and subtracting 1.5 × 2^52 rounds to the nearest integer.
-        const ROUNDER: f64 = 6_755_399_441_055_744.0;
         let whole = (self + ROUNDER) - ROUNDER;
         let f = self - whole;
         let [a, b, c, d, e, g] = EXP2;

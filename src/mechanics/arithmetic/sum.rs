@@ -32,6 +32,15 @@ impl Compensated {
         Self::sum(self.value, self.rest + increment)
     }
 
+    /// This minus `other`: [`minus`](Self::minus), and what that loses.
+    #[must_use]
+    #[inline(always)]
+    pub fn difference(self, other: Self) -> Self {
+        let value = self.minus(other);
+        let leading = Self::sum(self.value, -other.value);
+        Self { value, rest: (leading.value - value) + (leading.rest + (self.rest - other.rest)) }
+    }
+
     /// This minus `other`, rounded once or twice.
     #[must_use]
     #[inline(always)]

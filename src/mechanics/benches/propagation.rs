@@ -1,86 +1,90 @@
-//! One trajectory, its matrix, its events: each answer is asserted inside the loop.
+//! Each way of propagating, with its answer asserted inside the loop.
+
+#[path = "../../../tests/mechanics/reference/cases.rs"]
+#[expect(dead_code, reason = "the tests use more of it")]
+mod cases;
+#[path = "../../../tests/mechanics/reference/truth.rs"]
+mod truth;
 
 use std::hint::black_box;
 use std::num::NonZeroU64;
 
+use cases::{HALO, HALO_PERIOD, MU, REGULAR, REGULAR_PERIOD, case, parts};
 use criterion::{Criterion, criterion_group, criterion_main};
-use mechanics::frame::Frame;
 use mechanics::interrupt::Never;
 use mechanics::propagation::event::{Direction, Event, Plane, When};
-use mechanics::propagation::{
-    Arithmetic, Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling, Trajectory, solve,
-};
-use mechanics::quantity::{Duration, MassParameter, Quantity, Tolerance};
-use mechanics::state::State;
+use mechanics::propagation::{Request, RequestParts, Sampling, Trajectory, solve};
+use truth::{ensemble_error, matrix_error, position_error};
 
-const MU: f64 = 0.01215058560962404;
-const HALO: [f64; 6] = [1.1720459535998, 0.0, -0.0862, 0.0, -0.1880035431733172, 0.0];
-const HALO_PERIOD: f64 = 3.3517255182390353;
-/// Hairer, Nørsett & Wanner, *Solving Ordinary Differential Equations I*, §II.0.
-const ARENSTORF_MU: f64 = 0.012277471;
-const ARENSTORF: [f64; 6] = [0.994, 0.0, 0.0, 0.0, -2.00158510637908252240537862224, 0.0];
-const ARENSTORF_PERIOD: f64 = 17.0652165601579625588917206249;
-
-fn parts(mu: f64, state: [f64; 6], duration: f64) -> RequestParts {
-    RequestParts {
-        mass_parameter: MassParameter::new(mu).expect("in range"),
-        frame: Frame::default(),
-        states: vec![State::new(0.0, state)],
-        durations: Durations::All(Duration::new(duration).expect("in range")),
-        tolerance: Tolerance::new(1e-15).expect("in range"),
-        sampling: Sampling::None,
-        matrix: MatrixOutput::None,
-        events: Vec::new(),
-        manoeuvres: Vec::new(),
-        contact: Contact::default(),
-        arithmetic: Arithmetic::Double,
-        audit: false,
-        limits: Limits { steps: 1_000_000, events: 100_000, sample_values: 20_000_000 },
-    }
-}
-
-fn first(request: &Request) -> Trajectory {
-    solve(black_box(request), &Never).expect("not cancelled").remove(0)
-}
-
-fn closes(request: &Request, within: f64) {
-    let start = request.parts().states[0].position;
-    let end = black_box(first(request)).last.position;
-    assert!((end - start).norm() < within);
-}
-
-fn trajectories(criterion: &mut Criterion) {
-    let halo = Request::new(parts(MU, HALO, HALO_PERIOD)).expect("valid");
-    criterion.bench_function("halo_period", |b| b.iter(|| closes(&halo, 1e-12)));
-
-    let arenstorf = Request::new(parts(ARENSTORF_MU, ARENSTORF, ARENSTORF_PERIOD)).expect("valid");
-    criterion.bench_function("arenstorf", |b| b.iter(|| closes(&arenstorf, 1e-12)));
-
-    let mut with_matrix = parts(MU, HALO, HALO_PERIOD);
-    with_matrix.matrix = MatrixOutput::Final;
-    let with_matrix = Request::new(with_matrix).expect("valid");
-    criterion.bench_function("stm_halo", |b| {
-        b.iter(|| {
-            let matrix = first(&with_matrix).matrix.expect("asked for");
-            assert!((matrix.trace() - HALO_TRACE).abs() < 1e-8);
+/// Solves the request again and again, and checks each answer.
+fn bench(criterion: &mut Criterion, name: &str, parts: RequestParts, check: impl Fn(&[Trajectory]) -> bool) {
+    let request = Request::new(parts).expect("valid");
+    criterion.bench_function(name, |bencher| {
+        bencher.iter(|| {
+            let all = black_box(solve(black_box(&request), &Never).expect("not cancelled"));
+            assert!(check(&all), "{name}");
         });
     });
+}
 
-    let mut with_event = parts(MU, HALO, HALO_PERIOD);
-    with_event.events = vec![Event {
+/// One of the cases that accuracy is stated for.
+fn bench_case(criterion: &mut Criterion, name: &str, check: impl Fn(&[Trajectory]) -> bool) {
+    bench(criterion, name, case(name).expect("a case"), check);
+}
+
+fn one_trajectory(criterion: &mut Criterion) {
+    for (name, bound) in [("halo_period", 5e-14), ("nrho_30", 1e-7), ("arenstorf", 1e-12)] {
+        bench_case(criterion, name, |all| position_error(name, &all[0].last) <= bound);
+    }
+
+    let crossing = Event {
         when: When::Plane(Plane::across(1, 0.0)),
         direction: Direction::Increasing,
         only: None,
         stop_after: NonZeroU64::new(2),
-    }];
-    let with_event = Request::new(with_event).expect("valid");
-    criterion.bench_function("halo_period_with_an_event", |b| {
-        b.iter(|| assert!((first(&with_event).events[0].state.time - 0.5 * HALO_PERIOD).abs() < 1e-12));
+    };
+    let with_event = RequestParts { events: vec![crossing], ..parts(MU, HALO, HALO_PERIOD) };
+    bench(criterion, "halo_period_with_an_event", with_event, |all| {
+        (all[0].events[0].state.time - 0.5 * HALO_PERIOD).abs() < 1e-12
+    });
+
+    // Of an odd number the middle one is half a period from the start, across the plane of symmetry.
+    let sampled = RequestParts { sampling: Sampling::Count(1001), ..parts(MU, HALO, HALO_PERIOD) };
+    bench(criterion, "halo_period_with_1001_samples", sampled, |all| {
+        let samples = &all[0].samples;
+        samples.positions.len() == 1001
+            && samples.positions[500].y.abs() < 1e-12
+            && samples.velocities[500].x.abs() < 1e-11
     });
 }
 
-/// Trace of the halo's monodromy matrix, from the 333-bit matrix in `tests/mechanics/reference/halo_matrix.txt`.
-const HALO_TRACE: f64 = 693.6197609139388;
+fn matrices(criterion: &mut Criterion) {
+    for (name, bound) in [("stm_halo", 1e-13), ("stm_nrho", 3e-13)] {
+        let good = |t: &Trajectory| matrix_error(name, &t.matrix.expect("asked for")) <= bound;
+        bench_case(criterion, name, |all| good(&all[0]));
+        bench_case(criterion, &format!("{name}_lanes"), |all| good(&all[0]) && good(&all[all.len() - 1]));
+    }
+}
 
-criterion_group!(benches, trajectories);
-criterion_main!(benches);
+fn ensemble(criterion: &mut Criterion) {
+    bench_case(criterion, "ensemble_10k", |all| ensemble_error(all) <= 2e-13);
+}
+
+/// A random walk of the round-off grows with the root of the number of revolutions, a systematic error with the number.
+fn drift(criterion: &mut Criterion) {
+    for (name, revolutions, bound) in
+        [("revolutions_1000", 1000.0, 1e-13), ("revolutions_10000", 10000.0, 3.2e-13)]
+    {
+        let request = parts(MU, REGULAR, revolutions * REGULAR_PERIOD);
+        bench(criterion, name, request, |all| all[0].evidence.jacobi_drift <= bound);
+    }
+}
+
+criterion_group!(short, one_trajectory, matrices);
+criterion_group! {
+    name = long;
+    // As few samples as criterion allows.
+    config = Criterion::default().sample_size(10);
+    targets = ensemble, drift
+}
+criterion_main!(short, long);

@@ -6,21 +6,18 @@ use super::{Audit, Failure, Outcome, Request};
 use crate::arithmetic::{DoubleDouble, sum::Compensated};
 use crate::frame::Axes;
 use crate::interrupt::{Interrupt, Stop};
-use crate::taylor::extended::{Halt, Motion};
+use crate::taylor::extended::Motion;
+use crate::taylor::{Halt, Place, Stride};
 
 /// Steps between two polls: a tenth of a millisecond.
 pub(super) const STEPS_PER_POLL: u64 = 16;
 
 /// Where a trajectory ended.
-pub(super) struct End {
+pub(super) struct End<'a> {
     /// In the default frame, as it was integrated.
-    pub state: [Compensated; 6],
-    /// Signed time since the start.
-    pub elapsed: Compensated,
+    pub place: &'a Place,
     /// Manoeuvres that were applied.
     pub manoeuvres: usize,
-    /// Steps taken.
-    pub steps: u64,
 }
 
 impl Audit {
@@ -33,20 +30,20 @@ impl Audit {
     pub(super) fn of(
         request: &Request,
         index: usize,
-        end: &End,
+        end: &End<'_>,
         interrupt: &dyn Interrupt,
     ) -> Result<Self, Failure> {
         let direction = if request.duration(index) < 0.0 { -1.0 } else { 1.0 };
         let start = request.start_of(index).map(DoubleDouble::from);
         let mut recomputation = Recomputation {
-            motion: Motion::new(*request.primaries(), start),
+            motion: Motion::new(request.path(), *request.primaries(), start),
             direction,
-            most_steps: request.extended_steps(end.steps),
+            most_steps: request.extended_steps(end.place.steps),
             interrupt,
         };
         let frame = request.parts().frame;
         for (at, manoeuvre) in request.manoeuvres_of(index).into_iter().take(end.manoeuvres) {
-            if let Some(outcome) = recomputation.run_to(at.into())? {
+            if let Some(outcome) = recomputation.run_to(at)? {
                 return Ok(Self::unfinished(outcome));
             }
             let change = request.parts().manoeuvres[manoeuvre]
@@ -54,10 +51,10 @@ impl Audit {
                 .ok_or(Failure::UndefinedAxes { manoeuvre, trajectory: index })?;
             recomputation.motion.kick(&change.map(|component| component.scaled(direction)));
         }
-        if let Some(outcome) = recomputation.run_to(end.elapsed.into())? {
+        if let Some(outcome) = recomputation.run_to(end.place.elapsed)? {
             return Ok(Self::unfinished(outcome));
         }
-        Ok(Self::difference(request, &end.state, &recomputation.motion.state))
+        Ok(Self::difference(request, &end.place.state, &recomputation.motion.state))
     }
 
     /// The error of a state of the default frame as the request's frame shows it, about that frame's origin and rounded.
@@ -91,8 +88,9 @@ struct Recomputation<'a> {
 
 impl Recomputation<'_> {
     /// Steps up to a time since the start; gives why it did not get there, if it did not.
-    fn run_to(&mut self, target: DoubleDouble) -> Result<Option<Outcome>, Failure> {
-        if (target - self.motion.elapsed).to_f64() * self.direction <= 0.0 {
+    fn run_to(&mut self, target: Compensated) -> Result<Option<Outcome>, Failure> {
+        let left = DoubleDouble::from(target) - self.motion.elapsed;
+        if left.to_f64() * self.direction <= 0.0 {
             return Ok(None);
         }
         loop {
@@ -102,13 +100,14 @@ impl Recomputation<'_> {
                 None => {}
             }
             let most = (self.most_steps - self.motion.steps).min(STEPS_PER_POLL);
-            match self.motion.run(target, self.direction, most, false) {
+            let stride = Stride { target, direction: self.direction, most, watched: false };
+            match self.motion.run(&stride) {
                 Halt::Steps if self.motion.steps == self.most_steps => return Ok(Some(Outcome::StepLimit)),
                 Halt::Steps => {}
                 Halt::Floor => return Ok(Some(Outcome::StepFloor)),
                 Halt::Step { .. } => {
                     self.motion.step();
-                    self.motion.elapsed = target;
+                    self.motion.elapsed = target.into();
                     return Ok(None);
                 }
             }

@@ -3,12 +3,24 @@
 use nalgebra::{Matrix3, Matrix6};
 
 use crate::arithmetic::sum::Compensated;
-use crate::taylor::{self, Columns, Series};
+use crate::taylor::{self, Columns, Path, Series};
+
+/// A matrix leg by leg, in whichever arithmetic.
+pub(super) trait Legs {
+    /// d(state)/d(initial state) at the last place reached.
+    fn here(&self) -> Matrix6<f64>;
+
+    /// Ends a leg, measuring it; the next one begins after a jump.
+    fn end_leg(&mut self, jump: Option<&Matrix6<f64>>);
+
+    /// |det − 1| and the largest element of `|MᵀJM − J|`, the largest of the legs.
+    fn defects(&mut self) -> (f64, f64);
+}
 
 /// The matrix of the leg under way, and of all before it.
 pub(super) struct Transition {
-    columns: Box<Columns<f64>>,
-    leg: [[Compensated; 6]; 6],
+    /// Of the leg under way, at the last place reached.
+    pub leg: [[Compensated; 6]; 6],
     before: Matrix6<f64>,
     determinant_defect: f64,
     symplectic_defect: f64,
@@ -16,50 +28,29 @@ pub(super) struct Transition {
 
 impl Transition {
     pub(super) fn new() -> Self {
-        Self {
-            columns: Box::default(),
-            leg: identity(),
-            before: Matrix6::identity(),
-            determinant_defect: 0.0,
-            symplectic_defect: 0.0,
-        }
+        Self { leg: identity(), before: Matrix6::identity(), determinant_defect: 0.0, symplectic_defect: 0.0 }
     }
 
     /// Prepares a step along `series`.
-    pub(super) fn expand(&mut self, series: &Series<f64>) {
-        taylor::expand_variational(series, &self.leg.map(|row| row.map(|c| c.value)), &mut self.columns);
+    pub(super) fn expand(&self, path: Path, series: &Series, columns: &mut Columns) {
+        taylor::expand_variational(path, series, &self.leg.map(|row| row.map(|c| c.value)), columns);
     }
 
     /// The leg's matrix `at` a time after the start of the step.
-    fn leg_at(&self, at: f64) -> [[Compensated; 6]; 6] {
-        let change = taylor::flow_variational(&self.columns, at);
+    fn leg_at(&self, path: Path, columns: &Columns, at: f64) -> [[Compensated; 6]; 6] {
+        let change = taylor::flow_variational(path, columns, at);
         std::array::from_fn(|row| {
             std::array::from_fn(|column| self.leg[row][column].plus(change[row][column]))
         })
     }
 
     /// d(state)/d(initial state) `at` a time after the start of the step.
-    pub(super) fn at(&self, at: f64) -> Matrix6<f64> {
-        rounded(&self.leg_at(at)) * self.before
+    pub(super) fn at(&self, path: Path, columns: &Columns, at: f64) -> Matrix6<f64> {
+        rounded(&self.leg_at(path, columns, at)) * self.before
     }
 
-    /// d(state)/d(initial state) at the last place reached.
-    pub(super) fn here(&self) -> Matrix6<f64> {
-        rounded(&self.leg) * self.before
-    }
-
-    pub(super) fn advance(&mut self, at: f64) {
-        self.leg = self.leg_at(at);
-    }
-
-    /// Ends a leg, measuring it; the next one begins after a jump.
-    pub(super) fn end_leg(&mut self, jump: Option<&Matrix6<f64>>) {
-        self.measure();
-        self.before = self.here();
-        if let Some(jump) = jump {
-            self.before = jump * self.before;
-        }
-        self.leg = identity();
+    pub(super) fn advance(&mut self, path: Path, columns: &Columns, at: f64) {
+        self.leg = self.leg_at(path, columns, at);
     }
 
     /// Takes the leg's defects into account.
@@ -69,9 +60,23 @@ impl Transition {
         let j = symplectic_unit();
         self.symplectic_defect = self.symplectic_defect.max((m.transpose() * j * m - j).amax());
     }
+}
 
-    /// |det − 1| and the largest element of `|MᵀJM − J|`, the largest of the legs.
-    pub(super) fn defects(&mut self) -> (f64, f64) {
+impl Legs for Transition {
+    fn here(&self) -> Matrix6<f64> {
+        rounded(&self.leg) * self.before
+    }
+
+    fn end_leg(&mut self, jump: Option<&Matrix6<f64>>) {
+        self.measure();
+        self.before = self.here();
+        if let Some(jump) = jump {
+            self.before = jump * self.before;
+        }
+        self.leg = identity();
+    }
+
+    fn defects(&mut self) -> (f64, f64) {
         self.measure();
         (self.determinant_defect, self.symplectic_defect)
     }

@@ -4,14 +4,17 @@
 //! the Jacobi constant stays a random walk of the unit round-off. Samples and events are evaluated from the
 //! Taylor polynomial of the step they fall into: they cost no step and change none.
 
+mod alone;
 mod audit;
 mod course;
 pub mod event;
+mod extended;
 mod invalid;
 mod manoeuvre;
 mod matrix;
 mod request;
 mod roots;
+mod swarm;
 mod watch;
 
 use std::ops::Range;
@@ -20,7 +23,7 @@ use std::sync::atomic::{AtomicU64, Ordering};
 use nalgebra::{Matrix6, Vector3};
 use thiserror::Error;
 
-use crate::interrupt::{Interrupt, Stop};
+use crate::interrupt::Interrupt;
 use crate::state::State;
 
 pub use invalid::Invalid;
@@ -227,13 +230,11 @@ pub fn propagate(
     sink: &mut dyn Sink,
     interrupt: &dyn Interrupt,
 ) -> Result<(), Failure> {
-    for index in range {
-        let trajectory = match interrupt.poll() {
-            Some(Stop::Cancelled) => return Err(Failure::Cancelled),
-            Some(Stop::WallTime) => course::not_started(request, index),
-            None => course::Course::new(request, index, budget, sink, interrupt).run()?,
-        };
-        sink.trajectory(trajectory)?;
+    if request.is_extended() {
+        extended::propagate(request, range, budget, sink, interrupt)
+    } else if swarm::suits(request, range.clone(), &*sink) {
+        swarm::propagate(request, range, budget, sink, interrupt)
+    } else {
+        alone::propagate(request, range, budget, sink, interrupt)
     }
-    Ok(())
 }

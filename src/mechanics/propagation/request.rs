@@ -9,7 +9,7 @@ use crate::quantity::{Distance, Duration, MassParameter, Quantity, Tolerance};
 use crate::state::State;
 use crate::system::Primary;
 use crate::taylor::extended::EXTENDED_TOLERANCE;
-use crate::taylor::{MAX_STEP, Primaries, StepSize};
+use crate::taylor::{MAX_STEP, Path, Primaries, StepSize};
 
 /// Numbers of a sample: time, position and velocity.
 const STATE_VALUES: u64 = 7;
@@ -129,6 +129,7 @@ pub struct Request {
     parts: RequestParts,
     primaries: Primaries,
     step_size: StepSize,
+    path: Path,
 }
 
 impl Request {
@@ -149,7 +150,7 @@ impl Request {
         }
         let spanned = problems.is_empty();
         let step_size = StepSize::new(parts.tolerance.get());
-        let mut request = Self { parts, primaries, step_size };
+        let mut request = Self { parts, primaries, step_size, path: Path::fastest() };
         request.check_states(&mut problems);
         request.check_sampling(spanned, &mut problems);
         request.check_manoeuvres(&mut problems);
@@ -177,6 +178,25 @@ impl Request {
     #[must_use]
     pub fn limits(&self) -> Limits {
         self.parts.limits
+    }
+
+    /// The same request, computed on a certain path. The results are the same bits.
+    #[must_use]
+    pub fn on(mut self, path: Path) -> Self {
+        self.path = path;
+        self
+    }
+
+    pub(super) fn with_matrix(&self) -> bool {
+        self.parts.matrix != MatrixOutput::None
+    }
+
+    pub(super) fn is_extended(&self) -> bool {
+        self.parts.arithmetic == Arithmetic::DoubleDouble
+    }
+
+    pub(super) fn path(&self) -> Path {
+        self.path
     }
 
     pub(super) fn primaries(&self) -> &Primaries {

@@ -11,7 +11,7 @@ use crate::arithmetic::{Quad, sum::Compensated};
 use crate::frame::{Axes, Frame, XAxis};
 use crate::quantity::Quantity;
 use crate::system::Primary;
-use crate::taylor::{self, Series, TERMS};
+use crate::taylor::{self, Path, Series, TERMS};
 
 /// Values this many round-offs of the largest term from zero have no certain sign.
 const NOISE: f64 = 8.0 * f64::EPSILON;
@@ -32,7 +32,8 @@ const LONGEST_POLISH: f64 = 0.01;
 
 /// The stretch between two steps, as the search sees it.
 pub(super) struct Stretch<'a> {
-    pub series: &'a Series<f64>,
+    pub path: Path,
+    pub series: &'a Series,
     pub state: &'a [Compensated; 6],
     /// Instant at the start of the step on the absolute clock.
     pub time: f64,
@@ -46,7 +47,8 @@ pub(super) struct Stretch<'a> {
 
 impl<'a> Stretch<'a> {
     pub(super) fn new(
-        series: &'a Series<f64>,
+        path: Path,
+        series: &'a Series,
         state: &'a [Compensated; 6],
         time: f64,
         length: f64,
@@ -56,7 +58,7 @@ impl<'a> Stretch<'a> {
         for k in 1..TERMS {
             powers[k] = powers[k - 1] * length;
         }
-        Self { series, state, time, length, elapsed, powers }
+        Self { path, series, state, time, length, elapsed, powers }
     }
 
     fn scaled(&self, coefficient: impl Fn(usize) -> f64) -> Polynomial {
@@ -69,12 +71,12 @@ impl<'a> Stretch<'a> {
 
     fn half_square(&self, primary: Primary) -> impl Fn(usize) -> f64 {
         let lane = usize::from(!self.is_near(primary));
-        move |k| self.series.half_square[k][lane]
+        move |k| self.series.half_square(k)[lane]
     }
 
     /// Position relative to a primary, and velocity, `at` a time after the start of the step.
     fn relative(&self, primary: Primary, at: f64) -> (Vector3<f64>, Vector3<f64>) {
-        let moved = taylor::flow(self.series, at);
+        let moved = taylor::flow(self.path, self.series, at);
         let [Quad([d, y, z, _]), Quad([vx, vy, vz, _]), ..] = self.series.position;
         let x = if self.is_near(primary) { d } else { d + self.series.side };
         (
@@ -242,7 +244,7 @@ impl Function {
     fn value(&self, stretch: &Stretch, at: f64) -> f64 {
         match self {
             Self::Plane { normal, offset, origin, turning } => {
-                let moved = taylor::flow(stretch.series, at);
+                let moved = taylor::flow(stretch.path, stretch.series, at);
                 let from = position_from(stretch.state, *origin);
                 let moved = Vector3::new(moved[0], moved[1], moved[2]);
                 if *turning {

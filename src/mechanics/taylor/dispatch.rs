@@ -1,75 +1,188 @@
-//! The kernels compiled for the CPU's fused multiply-add and chosen at run time. Every path runs the same
-//! operations in the same order, so it has the same bits; without the instruction `mul_add` is slow but exact.
+//! The kernels compiled for the instruction sets there are, and chosen at run time. Every path runs the same
+//! operations in the same order, so it has the same bits; without fused multiply-add instructions `mul_add` is slow but
+//! exact.
 
-use super::{Columns, Primaries, Series, TERMS, recurrence, variational};
-use crate::arithmetic::{Quad, Real, sum::Compensated};
+use std::sync::OnceLock;
 
-/// Whether the kernels run on fused multiply-add instructions here.
-#[must_use]
-pub fn accelerated() -> bool {
+use super::swarm::{Pause, Swarm};
+use super::variational::Registers;
+use super::{Columns, Halt, Place, Primaries, Series, StepSize, Stride, packed, variational};
+use crate::arithmetic::sum::Compensated;
+use crate::arithmetic::{Lanes, Packed, Quad};
+
+/// The instructions that the kernels run on. All give the same bits. A path can only be had where it can run.
+#[derive(Clone, Copy, Debug, Eq, PartialEq)]
+pub struct Path(pub(super) Instructions);
+
+/// The instruction sets.
+#[derive(Clone, Copy, Debug, Eq, PartialEq)]
+pub(super) enum Instructions {
+    Portable,
     #[cfg(target_arch = "x86_64")]
-    {
-        std::arch::is_x86_feature_detected!("avx2") && std::arch::is_x86_feature_detected!("fma")
+    Avx2,
+    #[cfg(target_arch = "x86_64")]
+    Avx512,
+}
+
+impl Path {
+    /// What the compiler makes of plain code.
+    pub const PORTABLE: Self = Self(Instructions::Portable);
+
+    /// The fastest one here.
+    #[must_use]
+    pub fn fastest() -> Self {
+        static FASTEST: OnceLock<Path> = OnceLock::new();
+        *FASTEST.get_or_init(|| Self::available().last().copied().unwrap_or(Self::PORTABLE))
     }
-    #[cfg(not(target_arch = "x86_64"))]
-    {
-        cfg!(target_arch = "aarch64")
+
+    /// Those there are here, the fastest last.
+    #[must_use]
+    pub fn available() -> Vec<Self> {
+        #[cfg_attr(not(target_arch = "x86_64"), expect(unused_mut, reason = "there is one"))]
+        let mut paths = vec![Self::PORTABLE];
+        #[cfg(target_arch = "x86_64")]
+        {
+            use std::arch::is_x86_feature_detected as has;
+            if has!("avx2") && has!("fma") && has!("bmi2") {
+                paths.push(Self(Instructions::Avx2));
+                if has!("avx512f") && has!("avx512dq") && has!("avx512vl") {
+                    paths.push(Self(Instructions::Avx512));
+                }
+            }
+        }
+        paths
+    }
+
+    /// Its name: `portable`, `avx2` (four doubles a register) or `avx512` (eight).
+    #[must_use]
+    pub fn name(self) -> &'static str {
+        match self.0 {
+            Instructions::Portable => "portable",
+            #[cfg(target_arch = "x86_64")]
+            Instructions::Avx2 => "avx2",
+            #[cfg(target_arch = "x86_64")]
+            Instructions::Avx512 => "avx512",
+        }
+    }
+
+    /// Whether its registers hold eight doubles.
+    pub(crate) fn has_eight(self) -> bool {
+        #[cfg(target_arch = "x86_64")]
+        {
+            self.0 == Instructions::Avx512
+        }
+        #[cfg(not(target_arch = "x86_64"))]
+        {
+            false
+        }
+    }
+
+    /// Whether it multiplies and adds in one instruction.
+    #[must_use]
+    pub fn is_fused(self) -> bool {
+        self != Self::PORTABLE || cfg!(target_arch = "aarch64")
     }
 }
 
-/// Defines a public function that runs its body compiled for FMA where the CPU has it.
-macro_rules! accelerated {
-    ($($(#[$doc:meta])* pub fn $name:ident($($argument:ident: $type:ty),* $(,)?) $(-> $result:ty)? $body:block)*) => {$(
+/// Defines a function that runs its body compiled for the path given.
+macro_rules! on_path {
+    ($($(#[$doc:meta])* $visibility:vis fn $name:ident<$lanes:ident: $trait:path = $plain:ty | $four:ty | $eight:ty>
+        ($($argument:ident: $type:ty),* $(,)?) $(-> $result:ty)? $body:block)*) => {$(
         $(#[$doc])*
         #[inline]
-        pub fn $name($($argument: $type),*) $(-> $result)? {
+        $visibility fn $name(path: $crate::taylor::Path, $($argument: $type),*) $(-> $result)? {
             #[inline(always)]
-            fn body($($argument: $type),*) $(-> $result)? $body
+            #[cfg_attr(not(target_arch = "x86_64"), expect(unused, reason = "one path"))]
+            fn body<$lanes: $trait>($($argument: $type),*) $(-> $result)? $body
 
             #[cfg(target_arch = "x86_64")]
             {
                 #[target_feature(enable = "avx2,fma,bmi2")]
-                fn fused($($argument: $type),*) $(-> $result)? {
-                    body($($argument),*)
+                fn on_avx2($($argument: $type),*) $(-> $result)? {
+                    body::<$four>($($argument),*)
                 }
 
-                if accelerated() {
-                    #[expect(unsafe_code, reason = "a function compiled for instructions of this CPU")]
-                    // SAFETY: `accelerated` has found every feature that `fused` is compiled for.
-                    return unsafe { fused($($argument),*) };
+                #[target_feature(enable = "avx512f,avx512dq,avx512vl,avx2,fma,bmi2")]
+                fn on_avx512($($argument: $type),*) $(-> $result)? {
+                    body::<$eight>($($argument),*)
+                }
+
+                #[expect(unsafe_code, reason = "functions compiled for instructions of this CPU")]
+                match path.0 {
+                    // SAFETY: a path is only made where `Path::available` has found the features it is compiled for.
+                    Instructions::Avx2 => return unsafe { on_avx2($($argument),*) },
+                    // SAFETY: the same.
+                    Instructions::Avx512 => return unsafe { on_avx512($($argument),*) },
+                    Instructions::Portable => {}
                 }
             }
-            body($($argument),*)
+            let _ = path;
+            body::<$plain>($($argument),*)
         }
     )*};
 }
+pub(crate) use on_path;
 
-accelerated! {
+#[cfg(target_arch = "x86_64")]
+use crate::arithmetic::x86::Wide4;
+#[cfg(not(target_arch = "x86_64"))]
+type Wide4 = Quad<f64>;
+
+on_path! {
     /// Expands the solution through `state` (x, y, z, vx, vy, vz) into `series`.
-    pub fn expand(primaries: &Primaries, state: &[Compensated; 6], series: &mut Series<f64>) {
-        let to_larger = state[0].minus(primaries.larger_x());
-        let to_smaller = state[0].minus(primaries.smaller_x());
-        let rounded = state.map(|component| component.value);
-        recurrence::expand(primaries, &rounded, to_larger, to_smaller, series);
+    pub fn expand<P: Packed = Quad<f64> | Wide4 | Wide4>(
+        primaries: &Primaries,
+        state: &[Compensated; 6],
+        series: &mut Series,
+    ) {
+        packed::expand::<P>(primaries, state, series);
+    }
+
+    /// Takes steps from `place` on, in the direction ±1 of the stride, as long as they end before its target.
+    pub fn run<P: Packed = Quad<f64> | Wide4 | Wide4>(
+        primaries: &Primaries,
+        sizes: StepSize,
+        place: &mut Place,
+        series: &mut Series,
+        stride: &Stride,
+    ) -> Halt {
+        place.run::<P>(series, primaries, sizes, stride)
+    }
+
+    /// Moves on along `series` by `time` within the step.
+    pub fn advance<P: Packed = Quad<f64> | Wide4 | Wide4>(place: &mut Place, series: &Series, time: f64) {
+        place.advance::<P>(series, time);
     }
 
     /// Expands the columns of `matrix` along `series`.
-    pub fn expand_variational(series: &Series<f64>, matrix: &[[f64; 6]; 6], columns: &mut Columns<f64>) {
-        variational::expand(series, matrix, columns);
+    pub fn expand_variational<P: Registers = variational::Plain | variational::Four | variational::Eight>(
+        series: &Series,
+        matrix: &[[f64; 6]; 6],
+        columns: &mut Columns,
+    ) {
+        variational::expand::<P>(series, matrix, columns);
     }
 
     /// What position and velocity change by within `time` of the series' instant.
-    pub fn flow(series: &Series<f64>, time: f64) -> [f64; 6] {
-        change(&series.position, time)
+    pub fn flow<P: Packed = Quad<f64> | Wide4 | Wide4>(series: &Series, time: f64) -> [f64; 6] {
+        let [place, rate] = packed::change::<P>(&series.position, time);
+        let ([x, y, z, _], [vx, vy, vz, _]) = (place.0, rate.0);
+        [x, y, z, vx, vy, vz]
     }
 
     /// What the columns of the matrix (rows x, y, z, vx, vy, vz) change by within `time` of the series' instant.
-    pub fn flow_variational(columns: &Columns<f64>, time: f64) -> [[f64; 6]; 6] {
-        variational::change(columns, time, &RATE)
+    pub fn flow_variational<P: Registers = variational::Plain | variational::Four | variational::Eight>(
+        columns: &Columns,
+        time: f64,
+    ) -> [[f64; 6]; 6] {
+        variational::change::<P>(columns, time)
     }
 
     /// The Jacobi constant 2Ω − v² of (x, y, z, vx, vy, vz).
-    pub fn jacobi_constant(primaries: &Primaries, state: &[Compensated; 6]) -> f64 {
+    pub fn jacobi_constant<P: Packed = Quad<f64> | Wide4 | Wide4>(
+        primaries: &Primaries,
+        state: &[Compensated; 6],
+    ) -> f64 {
         let [x, y, z, vx, vy, vz] = state.map(|component| component.value);
         let off_axis = z.mul_add(z, y * y);
         let term = |centre: Compensated, share: f64| {
@@ -80,63 +193,74 @@ accelerated! {
             + term(primaries.smaller_x(), primaries.mass_parameter());
         2.0f64.mul_add(potential, y.mul_add(y, x * x)) - vz.mul_add(vz, vy.mul_add(vy, vx * vx))
     }
+
+    /// Steps of several trajectories at once, one a lane: see [`Swarm::run`].
+    pub(crate) fn run_four<L: Four = Quad<f64> | Wide4 | Wide4>(
+        primaries: &Primaries,
+        sizes: StepSize,
+        swarm: &mut Swarm<[f64; 4]>,
+        most: u64,
+    ) -> Pause {
+        swarm.run::<L>(primaries, sizes, most)
+    }
+
+    /// Moves every lane on by its length.
+    pub(crate) fn advance_four<L: Four = Quad<f64> | Wide4 | Wide4>(swarm: &mut Swarm<[f64; 4]>) {
+        swarm.advance::<L>();
+    }
 }
 
-/// k + 1: from coefficient k + 1 of the position to coefficient k of the velocity.
-#[expect(clippy::cast_precision_loss, reason = "orders are small")]
-const RATE: [f64; TERMS] = {
-    let mut rates = [0.0; TERMS];
-    let mut k = 0;
-    while k < TERMS {
-        rates[k] = (k + 1) as f64;
-        k += 1;
+/// Registers of four doubles.
+trait Four: Lanes<Array = [f64; 4]> {}
+
+impl<L: Lanes<Array = [f64; 4]>> Four for L {}
+
+/// What [`run_four`] and [`advance_four`] do for eight lanes, where there are registers for that.
+#[cfg(target_arch = "x86_64")]
+pub(crate) mod eight {
+    use super::{Instructions, Path, Pause, Primaries, StepSize, Swarm};
+    use crate::arithmetic::x86::Wide8;
+
+    /// Steps of several trajectories at once: see [`Swarm::run`]. On a path without such registers no step at all.
+    pub(crate) fn run(
+        path: Path,
+        primaries: &Primaries,
+        sizes: StepSize,
+        swarm: &mut Swarm<[f64; 8]>,
+        most: u64,
+    ) -> Pause {
+        #[target_feature(enable = "avx512f,avx512dq,avx512vl,avx2,fma,bmi2")]
+        fn on_avx512(
+            primaries: &Primaries,
+            sizes: StepSize,
+            swarm: &mut Swarm<[f64; 8]>,
+            most: u64,
+        ) -> Pause {
+            swarm.run::<Wide8>(primaries, sizes, most)
+        }
+
+        if path.0 != Instructions::Avx512 {
+            return Pause::default();
+        }
+        #[expect(unsafe_code, reason = "a function compiled for instructions of this CPU")]
+        // SAFETY: the path has them.
+        unsafe {
+            on_avx512(primaries, sizes, swarm, most)
+        }
     }
-    rates
-};
 
-/// Horner's rule for all orders above 0, so that the change is rounded relative to itself.
-#[inline(always)]
-fn change<R: Real>(position: &[Quad<R>; TERMS], time: R) -> [R; 6] {
-    let time = Quad::splat(time);
-    let rated = |k: usize| position[k] * Quad::splat(R::from_f64(RATE[k - 1]));
-    let mut place = position[TERMS - 1];
-    let mut rate = rated(TERMS - 1);
-    for k in (2..TERMS - 1).rev() {
-        place = place.mul_add(time, position[k]);
-        rate = rate.mul_add(time, rated(k));
-    }
-    let Quad([x, y, z, _]) = place.mul_add(time, position[1]) * time;
-    let Quad([vx, vy, vz, _]) = rate * time;
-    [x, y, z, vx, vy, vz]
-}
+    /// Moves every lane on by its length.
+    pub(crate) fn advance(path: Path, swarm: &mut Swarm<[f64; 8]>) {
+        #[target_feature(enable = "avx512f,avx512dq,avx512vl,avx2,fma,bmi2")]
+        fn on_avx512(swarm: &mut Swarm<[f64; 8]>) {
+            swarm.advance::<Wide8>();
+        }
 
-#[cfg(test)]
-mod tests {
-    use super::{Columns, Compensated, Primaries, Series, change, recurrence, variational};
-
-    /// Without target features `mul_add` is the software's; the results are the same to the bit.
-    #[test]
-    fn portable_and_accelerated_paths_have_the_same_bits() {
-        let primaries = Primaries::new(0.0121);
-        let mut state = [0.83, 0.05, -0.03, 0.02, 0.31, -0.1].map(Compensated::new);
-        let matrix = std::array::from_fn(|i| std::array::from_fn(|j| if i == j { 1.0 } else { 0.25 }));
-        let (mut fast, mut plain) = (Series::new(), Series::new());
-        let (mut fast_columns, mut plain_columns) = (Columns::new(), Columns::new());
-        for _ in 0..50 {
-            super::expand(&primaries, &state, &mut fast);
-            let rounded = state.map(|component| component.value);
-            let away = [primaries.larger_x(), primaries.smaller_x()].map(|centre| state[0].minus(centre));
-            recurrence::expand(&primaries, &rounded, away[0], away[1], &mut plain);
-            assert_eq!(format!("{fast:?}"), format!("{plain:?}"));
-
-            super::expand_variational(&fast, &matrix, &mut fast_columns);
-            variational::expand(&plain, &matrix, &mut plain_columns);
-            assert_eq!(format!("{fast_columns:?}"), format!("{plain_columns:?}"));
-
-            let moved = super::flow(&fast, 0.05);
-            assert_eq!(moved.map(f64::to_bits), change(&plain.position, 0.05).map(f64::to_bits));
-            for (component, moved) in state.iter_mut().zip(moved) {
-                *component = component.plus(moved);
+        if path.0 == Instructions::Avx512 {
+            #[expect(unsafe_code, reason = "a function compiled for instructions of this CPU")]
+            // SAFETY: the path has them.
+            unsafe {
+                on_avx512(swarm);
             }
         }
     }

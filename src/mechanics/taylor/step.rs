@@ -1,7 +1,7 @@
 //! How far a series may be carried (Jorba & Zou 2005, §3.2, with a fixed order).
 
-use super::{ORDER, Series};
-use crate::arithmetic::{Quad, Real};
+use super::ORDER;
+use crate::arithmetic::Real;
 
 /// Longest step in inverse mean motions. The rotation of the axes alone has an entire series, which at this
 /// order is good to the round-off up to here, so that its sine and cosine may share the step.
@@ -12,29 +12,26 @@ pub const STEP_FLOOR: f64 = 1e-13;
 
 /// The two orders of the velocity that estimate the radius. Not the last two: these are ready earlier, so the
 /// estimate is made beside the last sums.
-const ESTIMATED_FROM: [usize; 2] = [ORDER - 3, ORDER - 2];
+pub(super) const ESTIMATED_FROM: [usize; 2] = [ORDER - 3, ORDER - 2];
 
 /// Keeps the logarithm finite where a coefficient vanishes.
 const SMALLEST_COEFFICIENT: f64 = 1e-300;
 
-/// log₂ of the radius of convergence, from the size of two coefficients of the velocity relative to its own.
+/// log₂ of the radius of convergence, from the largest components of the velocity, of the coefficients of
+/// [`ESTIMATED_FROM`] (those of the position an order later), and half the squared distance to the nearer primary.
 #[inline(always)]
-pub(super) fn log2_radius<R: Real>(s: &Series<R>) -> R {
-    let size = |k: usize| {
-        let Quad([x, y, z, _]) = s.position[k];
-        x.abs().max(y.abs()).max(z.abs())
-    };
+pub(super) fn log2_radius<R: Real>(sizes: [R; 2], speed: R, half_square: R) -> R {
     // A body at rest in the rotating axes still moves with them, at this distance times the mean motion.
-    let distance = (s.half_square[0][0] + s.half_square[0][0]).sqrt();
-    let log2_scale = size(1).max(distance).log2_coarse();
-    let estimate = |k: usize| {
+    let distance = (half_square + half_square).sqrt();
+    let log2_scale = speed.max(distance).log2_coarse();
+    let estimate = |which: usize| {
+        let k = ESTIMATED_FROM[which];
         #[expect(clippy::cast_precision_loss, reason = "orders are small")]
         let (factor, power) = (R::from_f64((k + 1) as f64), R::from_f64(1.0 / k as f64));
-        let coefficient = (size(k + 1) * factor).max(R::from_f64(SMALLEST_COEFFICIENT));
+        let coefficient = (sizes[which] * factor).max(R::from_f64(SMALLEST_COEFFICIENT));
         (log2_scale - coefficient.log2_coarse()) * power
     };
-    let [earlier, later] = ESTIMATED_FROM;
-    estimate(earlier).min(estimate(later))
+    estimate(0).min(estimate(1))
 }
 
 /// The share of the tolerance left to truncation, which always errs to the same side: at the default tolerance it
@@ -57,10 +54,11 @@ impl StepSize {
 
     /// The step, at most [`MAX_STEP`], for a radius of convergence.
     #[must_use]
-    pub fn from_log2_radius(&self, log2_radius: f64) -> f64 {
-        // 2^±100 is far outside what is ever used, and inside what the coarse power can do.
-        let step = (log2_radius + self.log2_fraction).clamp(-100.0, 100.0).exp2_coarse();
-        // Not `min`, which would make a step of what is no number.
-        if step > MAX_STEP { MAX_STEP } else { step }
+    #[inline(always)]
+    pub(super) fn from_log2_radius<R: Real>(&self, log2_radius: R) -> R {
+        // 2^±100 is far outside what is ever used, and inside what the coarse power can do; what is no number becomes
+        // the shortest.
+        let power = log2_radius + R::from_f64(self.log2_fraction);
+        power.max(R::from_f64(-100.0)).min(R::from_f64(100.0)).exp2_coarse().min(R::from_f64(MAX_STEP))
     }
 }

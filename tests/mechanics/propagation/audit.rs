@@ -12,6 +12,8 @@ use mechanics::propagation::{
 };
 use mechanics::quantity::{MassParameter, Quantity};
 use mechanics::state::State;
+use mechanics::taylor::extended::Motion;
+use mechanics::taylor::{Path, Primaries};
 use nalgebra::{Vector3, Vector6};
 
 use super::{HALO, HALO_PERIOD, MU, parts, run};
@@ -133,10 +135,7 @@ fn in_inertial_axes() {
     let mut bits = co_rotating.components().map(DoubleDouble::from);
     bits[0] = bits[0] + centre;
     let bits: [DoubleDouble; 6] = std::array::from_fn(|i| bits[i]);
-    let end = propagated(
-        mechanics::taylor::extended::Motion::new(mechanics::taylor::Primaries::new(MU), bits),
-        30.0,
-    );
+    let end = propagated(Motion::new(Path::fastest(), Primaries::new(MU), bits), 30.0);
     let mut end = end.state;
     end[0] = end[0] - centre;
     let end = State::new(trajectory.last.time, end.map(DoubleDouble::to_f64));

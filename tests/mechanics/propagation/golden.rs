@@ -1,36 +1,40 @@
 //! The same bits on every machine, and no allocation on the way.
 
 use allocation_counter::measure;
-use mechanics::propagation::{MatrixOutput, Sampling};
+use mechanics::propagation::{MatrixOutput, RequestParts, Sampling};
 
-use super::{HALO, MU, parts, run};
+use super::{HALO, MU, parts};
+use crate::reference::golden::{bits, line, request, solved, table};
 
-/// FNV-1a, 64 bit (Fowler, Noll & Vo).
-fn hashed(values: impl Iterator<Item = f64>) -> u64 {
-    values
-        .flat_map(|value| value.to_bits().to_le_bytes())
-        .fold(0xcbf2_9ce4_8422_2325, |hash, byte| (hash ^ u64::from(byte)).wrapping_mul(0x0100_0000_01b3))
-}
-
-/// Final states and matrices of two hundred trajectories over all mass parameters, close approaches included. A change
-/// of the recurrences changes this number; another machine, build or path must not.
 #[test]
 fn golden_bits() {
-    let mut all = Vec::new();
-    for i in 0..200 {
-        let i = f64::from(i);
-        let mu = libm::exp2(-1.0 - 0.1 * i);
-        let state = [0.3 + 0.003 * i, 0.01 * i - 1.0, 0.002 * i - 0.2, 0.1, 1.2 - 0.01 * i, 0.05];
-        let mut request = parts(mu, state, 3.0);
-        request.matrix = MatrixOutput::Final;
-        let trajectory = run(request);
-        all.extend(trajectory.last.components().iter());
-        all.extend(trajectory.matrix.expect("asked for").iter());
-    }
-    assert_eq!(hashed(all.into_iter()), GOLDEN);
+    // Another machine, build or path gives these very bits; a change of the recurrences gives others.
+    assert_eq!(table(), include_str!("../reference/golden.txt"));
 }
 
-const GOLDEN: u64 = 5380448846444963817;
+#[test]
+fn the_same_bits_alone_and_among_others() {
+    let whole = request();
+    let lines: Vec<_> = solved(whole.clone()).iter().map(line).collect();
+    let plain = RequestParts { matrix: MatrixOutput::None, events: Vec::new(), ..whole.clone() };
+    for count in [1, 3, 7, 8, 9, whole.states.len()] {
+        for request in [&whole, &plain] {
+            for (group, indices) in whole.states.chunks(count).enumerate() {
+                let mut states = indices.to_vec();
+                states.reverse();
+                let mut found = solved(RequestParts { states, ..request.clone() });
+                found.reverse();
+                for (trajectory, expected) in found.iter().zip(&lines[group * count..]) {
+                    if request.matrix == MatrixOutput::None {
+                        assert!(expected.starts_with(&bits(&trajectory.last)));
+                    } else {
+                        assert_eq!(&line(trajectory), expected);
+                    }
+                }
+            }
+        }
+    }
+}
 
 #[test]
 fn no_allocation_per_step() {

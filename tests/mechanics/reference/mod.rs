@@ -1,5 +1,10 @@
 //! Tables of values from outside the crate. `make.py` made them and says how.
 
+pub(crate) mod cases;
+pub(crate) mod effort;
+pub(crate) mod golden;
+pub(crate) mod truth;
+
 use mechanics::quantity::{MassParameter, Quantity};
 
 /// 40-digit equilibria: see the table's first line for its columns.

@@ -8,47 +8,11 @@ use std::ops::{Add, Div, Mul, Neg, Sub};
 pub use matrix::Matrix;
 pub use products::SumOfProducts;
 
-use super::{Quad, sum::Compensated};
-
-/// What the halves of a double-double are made of: one double, or several side by side.
-pub trait Half:
-    Copy + Add<Output = Self> + Sub<Output = Self> + Mul<Output = Self> + Neg<Output = Self>
-{
-    /// `value` in every lane.
-    fn splat(value: f64) -> Self;
-
-    /// `self * factor + addend` in every lane, rounded once.
-    #[must_use]
-    fn fused(self, factor: Self, addend: Self) -> Self;
-}
-
-impl Half for f64 {
-    #[inline(always)]
-    fn splat(value: f64) -> Self {
-        value
-    }
-
-    #[inline(always)]
-    fn fused(self, factor: Self, addend: Self) -> Self {
-        self.mul_add(factor, addend)
-    }
-}
-
-impl Half for Quad<f64> {
-    #[inline(always)]
-    fn splat(value: f64) -> Self {
-        Self::splat(value)
-    }
-
-    #[inline(always)]
-    fn fused(self, factor: Self, addend: Self) -> Self {
-        self.mul_add(factor, addend)
-    }
-}
+use super::{Quad, Real, sum::Compensated};
 
 /// The exact sum of two, rounded and the rest.
 #[inline(always)]
-fn two_sum<V: Half>(a: V, b: V) -> [V; 2] {
+fn two_sum<V: Real>(a: V, b: V) -> [V; 2] {
     let sum = a + b;
     let of_b = sum - a;
     [sum, (a - (sum - of_b)) + (b - of_b)]
@@ -56,9 +20,9 @@ fn two_sum<V: Half>(a: V, b: V) -> [V; 2] {
 
 /// The exact product of two, rounded and the rest.
 #[inline(always)]
-fn two_product<V: Half>(a: V, b: V) -> [V; 2] {
+fn two_product<V: Real>(a: V, b: V) -> [V; 2] {
     let product = a * b;
-    [product, a.fused(b, -product)]
+    [product, a.mul_add(b, -product)]
 }
 
 /// `hi + lo` with |lo| at most half a unit in the last place of `hi`.
@@ -76,12 +40,12 @@ pub struct DoubleDouble<V = f64> {
     lo: V,
 }
 
-impl<V: Half> DoubleDouble<V> {
+impl<V: Real> DoubleDouble<V> {
     /// `value` in every lane.
     #[must_use]
     #[inline(always)]
     pub fn splat(value: DoubleDouble) -> Self {
-        Self { hi: V::splat(value.hi), lo: V::splat(value.lo) }
+        Self { hi: V::from_f64(value.hi), lo: V::from_f64(value.lo) }
     }
 
     /// Two halves, which must be a value and a rest that its rounding lost.
@@ -154,7 +118,7 @@ impl<V: Half> DoubleDouble<V> {
     #[inline(always)]
     pub fn times(self, factor: V) -> Self {
         let [hi, rest] = two_product(self.hi, factor);
-        Self::normalized(hi, self.lo.fused(factor, rest))
+        Self::normalized(hi, self.lo.mul_add(factor, rest))
     }
 }
 
@@ -232,7 +196,7 @@ impl From<DoubleDouble> for Compensated {
     }
 }
 
-impl<V: Half> Neg for DoubleDouble<V> {
+impl<V: Real> Neg for DoubleDouble<V> {
     type Output = Self;
 
     #[inline(always)]
@@ -241,7 +205,7 @@ impl<V: Half> Neg for DoubleDouble<V> {
     }
 }
 
-impl<V: Half> Add for DoubleDouble<V> {
+impl<V: Real> Add for DoubleDouble<V> {
     type Output = Self;
 
     #[inline(always)]
@@ -252,13 +216,13 @@ impl<V: Half> Add for DoubleDouble<V> {
     }
 }
 
-impl<V: Half> Mul for DoubleDouble<V> {
+impl<V: Real> Mul for DoubleDouble<V> {
     type Output = Self;
 
     #[inline(always)]
     fn mul(self, other: Self) -> Self {
         let high = Self::product(self.hi, other.hi);
-        let cross = self.hi.fused(other.lo, self.lo * other.hi);
+        let cross = self.hi.mul_add(other.lo, self.lo * other.hi);
         Self::normalized(high.hi, high.lo + cross)
     }
 }
@@ -276,7 +240,7 @@ impl Div for DoubleDouble {
     }
 }
 
-impl<V: Half> Sub for DoubleDouble<V> {
+impl<V: Real> Sub for DoubleDouble<V> {
     type Output = Self;
 
     #[inline(always)]

@@ -1,6 +1,7 @@
 //! Sums of products.
 
-use super::{DoubleDouble, Half, two_product, two_sum};
+use super::super::Real;
+use super::{DoubleDouble, two_product, two_sum};
 
 /// A sum of products of double-doubles that is made a double-double only at its end: the leading halves are summed
 /// with their rounding errors, everything smaller in plain doubles (Ogita, Rump & Oishi 2005, SIAM J. Sci. Comput.
@@ -12,12 +13,12 @@ pub struct SumOfProducts<V> {
     rest: V,
 }
 
-impl<V: Half> SumOfProducts<V> {
+impl<V: Real> SumOfProducts<V> {
     /// The sum of none.
     #[must_use]
     #[inline(always)]
     pub fn none() -> Self {
-        Self { leading: V::splat(0.0), rest: V::splat(0.0) }
+        Self { leading: V::from_f64(0.0), rest: V::from_f64(0.0) }
     }
 
     /// One product.
@@ -25,7 +26,7 @@ impl<V: Half> SumOfProducts<V> {
     #[inline(always)]
     pub fn of(a: DoubleDouble<V>, b: DoubleDouble<V>) -> Self {
         let [leading, rest] = two_product(a.hi, b.hi);
-        Self { leading, rest: a.hi.fused(b.lo, a.lo.fused(b.hi, rest)) }
+        Self { leading, rest: a.hi.mul_add(b.lo, a.lo.mul_add(b.hi, rest)) }
     }
 
     /// This and the product of `a` and `b`.
@@ -34,7 +35,7 @@ impl<V: Half> SumOfProducts<V> {
     pub fn and(self, a: DoubleDouble<V>, b: DoubleDouble<V>) -> Self {
         let [product, lost] = two_product(a.hi, b.hi);
         let [leading, lost_in_sum] = two_sum(self.leading, product);
-        let small = a.hi.fused(b.lo, a.lo.fused(b.hi, lost + lost_in_sum));
+        let small = a.hi.mul_add(b.lo, a.lo.mul_add(b.hi, lost + lost_in_sum));
         Self { leading, rest: self.rest + small }
     }
 

@@ -1,4 +1,5 @@
-//! One trajectory, step by step.
+//! One trajectory's bookkeeping: legs, events, samples, and what is measured. The integration itself is elsewhere,
+//! alone ([`super::alone`]) or among others ([`super::swarm`]).
 
 mod sampling;
 
@@ -8,20 +9,20 @@ use nalgebra::{Matrix6, Vector3};
 
 use super::audit::End;
 use super::event::When;
-use super::matrix::Transition;
-use super::request::{Contact, MatrixOutput, Request, Sampling};
+use super::extended::ExtendedTransition;
+use super::matrix::{Legs, Transition};
+use super::request::{Arithmetic, Contact, Request, Sampling};
 use super::watch::{Hit, Stretch, Watch};
 use super::{Audit, Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Sink, Trajectory};
+use crate::arithmetic::DoubleDouble;
 use crate::arithmetic::sum::Compensated;
 use crate::interrupt::{Interrupt, Stop};
 use crate::potential::gradient;
 use crate::quantity::{Distance, Quantity};
 use crate::state::State;
 use crate::system::Primary;
-use crate::taylor::{self, STEP_FLOOR, Series};
+use crate::taylor::{self, Place, Series};
 
-/// Steps between two polls: a tenth of a millisecond with a matrix, less without.
-const STEPS_PER_POLL: u64 = 64;
 /// A start this near to a surface is on it: coordinates of the order of 1 are rounded to about this.
 const SURFACE: f64 = 8.0 * f64::EPSILON;
 /// Numbers of an event in the answer: which, its time, position and velocity.
@@ -46,37 +47,39 @@ pub(super) fn not_started(request: &Request, index: usize) -> Trajectory {
 }
 
 /// Why the integration stops here, or does not go on at all.
-type Flow = Result<ControlFlow<Outcome>, Failure>;
+pub(super) type Flow = Result<ControlFlow<Outcome>, Failure>;
+
+/// Where samples go that a trajectory does not keep.
+pub(super) struct Outlet<'a>(pub Option<&'a mut dyn Sink>);
 
 /// A trajectory under way.
 pub(super) struct Course<'a> {
-    request: &'a Request,
-    index: usize,
+    pub request: &'a Request,
+    pub index: usize,
     budget: &'a SampleBudget,
-    sink: &'a mut dyn Sink,
     interrupt: &'a dyn Interrupt,
     /// +1 forwards, −1 backwards.
-    direction: f64,
+    pub direction: f64,
     start: f64,
     duration: f64,
-    state: [Compensated; 6],
-    /// Signed time since the start.
-    elapsed: Compensated,
-    series: Box<Series<f64>>,
-    transition: Option<Transition>,
+    /// Where it is, and how long it has taken to get there.
+    pub motion: Place,
+    /// Signed time since the start at which the leg under way ends.
+    pub target: Compensated,
+    pub transition: Option<Transition>,
+    /// The same in double-double arithmetic.
+    pub extended_transition: Option<Box<ExtendedTransition>>,
+    manoeuvres: Vec<(Compensated, usize)>,
+    /// Manoeuvres that have been met.
+    met: usize,
     watches: Vec<Watch>,
     counts: Vec<u64>,
     surfaces: Vec<(Primary, Watch)>,
     scratch: Scratch,
-    /// Jacobi constant at the start of the leg.
-    leg_jacobi: Option<f64>,
     next_sample: u64,
     samples: Samples,
     events: Vec<Occurrence>,
     stopped_by: Option<usize>,
-    /// Manoeuvres applied.
-    applied: usize,
-    evidence: Evidence,
 }
 
 /// What is used anew in each step.
@@ -94,16 +97,35 @@ enum Found {
     Surface(Primary),
 }
 
+/// A step about to be taken.
+#[derive(Clone, Copy)]
+pub(super) struct Step {
+    /// Its signed length.
+    pub length: f64,
+    /// Whether it ends at the end of the leg.
+    pub last: bool,
+}
+
+/// What is known of a step about to be taken.
+pub(super) trait Ahead {
+    /// Its series, as the search for events sees it.
+    fn series(&self) -> &Series;
+
+    /// The state `at` a time after `place`, at its start, as a state and a change of it.
+    fn state(&self, place: &[Compensated; 6], at: Compensated) -> ([Compensated; 6], [f64; 6]);
+
+    /// The course's matrix there.
+    fn matrix(&self, course: &Course, at: Compensated) -> Option<Matrix6<f64>>;
+}
+
 impl<'a> Course<'a> {
     pub(super) fn new(
         request: &'a Request,
         index: usize,
         budget: &'a SampleBudget,
-        sink: &'a mut dyn Sink,
         interrupt: &'a dyn Interrupt,
     ) -> Self {
         let parts = request.parts();
-        let initial = &parts.states[index];
         let duration = request.duration(index);
         let origin = request.origin_x();
         let watches: Vec<_> =
@@ -119,50 +141,120 @@ impl<'a> Course<'a> {
             request,
             index,
             budget,
-            sink,
             interrupt,
             direction: if duration < 0.0 { -1.0 } else { 1.0 },
-            start: initial.time,
+            start: parts.states[index].time,
             duration,
-            state: request.start_of(index),
-            elapsed: Compensated::default(),
-            series: Box::default(),
-            transition: (parts.matrix != MatrixOutput::None).then(Transition::new),
+            motion: Place::new(request.start_of(index)),
+            target: Compensated::default(),
+            transition: (request.with_matrix() && !request.is_extended()).then(Transition::new),
+            extended_transition: (request.with_matrix() && request.is_extended())
+                .then(|| Box::new(ExtendedTransition::new())),
+            manoeuvres: request.manoeuvres_of(index),
+            met: 0,
             counts: vec![0; watches.len()],
             watches,
             surfaces,
             scratch: Scratch::default(),
-            leg_jacobi: None,
             next_sample: 0,
             samples: Samples::default(),
             events: Vec::new(),
             stopped_by: None,
-            applied: 0,
-            evidence: Evidence::default(),
         }
     }
 
-    pub(super) fn run(mut self) -> Result<Trajectory, Failure> {
-        let outcome = match self.legs()? {
-            ControlFlow::Break(outcome) => outcome,
-            ControlFlow::Continue(()) => Outcome::Complete,
-        };
-        self.end_leg();
-        if self.request.parts().audit {
-            let end = End {
-                state: self.state,
-                elapsed: self.elapsed,
-                manoeuvres: self.applied,
-                steps: self.evidence.steps,
-            };
-            self.evidence.audit = Some(Audit::of(self.request, self.index, &end, self.interrupt)?);
+    /// Whether each step has to be looked at: for events, surfaces or samples.
+    pub(super) fn is_watched(&self) -> bool {
+        !self.watches.is_empty()
+            || !self.surfaces.is_empty()
+            || self.request.parts().sampling != Sampling::None
+    }
+
+    /// What happens at the start, before any step.
+    pub(super) fn open(&mut self, outlet: &mut Outlet) -> Flow {
+        if let Some(outcome) = self.inside() {
+            self.sample_here(false, outlet)?;
+            return Ok(ControlFlow::Break(outcome));
         }
-        let last = self.seen(self.time_here(), &[0.0; 6]);
-        let matrix = self.transition.as_mut().map(|transition| {
-            let (determinant, symplectic) = transition.defects();
-            self.evidence.determinant_defect = Some(determinant);
-            self.evidence.symplectic_defect = Some(symplectic);
-            transition.here()
+        self.next_leg(outlet)
+    }
+
+    /// What happens between two legs; the next one's end is then the target.
+    pub(super) fn next_leg(&mut self, outlet: &mut Outlet) -> Flow {
+        // All manoeuvres of one instant, then the samples of that very instant, on their far side.
+        while let Some(&(at, manoeuvre)) = self.manoeuvres.get(self.met)
+            && at.minus(self.motion.elapsed) * self.direction <= 0.0
+        {
+            self.apply(manoeuvre)?;
+            self.met += 1;
+        }
+        let end = Compensated::new(self.duration);
+        let finished = end.minus(self.motion.elapsed) * self.direction <= 0.0;
+        self.sample_here(finished, outlet)?;
+        if finished {
+            return Ok(ControlFlow::Break(Outcome::Complete));
+        }
+        self.target = self.manoeuvres.get(self.met).map_or(end, |(at, _)| *at);
+        Ok(ControlFlow::Continue(()))
+    }
+
+    /// Records the events and samples of a step; gives how far it goes, and why the trajectory ends there if it does.
+    pub(super) fn observe(
+        &mut self,
+        ahead: &dyn Ahead,
+        step: Step,
+        outlet: &mut Outlet,
+    ) -> Result<(f64, Option<Outcome>), Failure> {
+        let known = self.events.len();
+        let at_end = step.last && self.target == Compensated::new(self.duration);
+        let stop = self.watch(ahead, step.length, at_end);
+        self.budget.take(VALUES_PER_EVENT * (self.events.len() - known) as u64)?;
+        let end = stop.map_or(step.length, |(at, _)| at);
+        self.sample_within(ahead, end, step.last && stop.is_none(), outlet)?;
+        Ok((end, stop.map(|(_, outcome)| outcome)))
+    }
+
+    /// What happens at the end of a step that goes on.
+    pub(super) fn arrive(&mut self, last: bool, outlet: &mut Outlet) -> Flow {
+        if last {
+            self.motion.elapsed = self.target;
+            return self.next_leg(outlet);
+        }
+        if self.request.parts().sampling == Sampling::EveryStep {
+            self.push_sample(None, None, outlet)?;
+        }
+        Ok(ControlFlow::Continue(()))
+    }
+
+    /// A reason to end here, if there is one.
+    pub(super) fn poll(&self) -> Flow {
+        match self.interrupt.poll() {
+            Some(Stop::Cancelled) => Err(Failure::Cancelled),
+            Some(Stop::WallTime) => Ok(ControlFlow::Break(Outcome::WallTimeLimit)),
+            None => Ok(ControlFlow::Continue(())),
+        }
+    }
+
+    /// The trajectory, which ends here.
+    pub(super) fn close(mut self, outcome: Outcome) -> Result<Trajectory, Failure> {
+        self.end_leg();
+        let last = self.seen(self.time_here());
+        let mut evidence = Evidence {
+            steps: self.motion.steps,
+            jacobi_drift: self.motion.drift,
+            determinant_defect: None,
+            symplectic_defect: None,
+            audit: None,
+        };
+        if self.request.parts().audit {
+            let end = End { place: &self.motion, manoeuvres: self.met };
+            evidence.audit = Some(Audit::of(self.request, self.index, &end, self.interrupt)?);
+        }
+        let matrix = self.legs().map(|legs| {
+            let (determinant, symplectic) = legs.defects();
+            evidence.determinant_defect = Some(determinant);
+            evidence.symplectic_defect = Some(symplectic);
+            legs.here()
         });
         Ok(Trajectory {
             index: self.index,
@@ -172,116 +264,26 @@ impl<'a> Course<'a> {
             samples: self.samples,
             events: self.events,
             matrix: matrix.map(|m| in_frame(self.request, &m, self.start, last.time)),
-            evidence: self.evidence,
+            evidence,
         })
     }
 
-    /// The legs between manoeuvres.
-    fn legs(&mut self) -> Flow {
-        if let Some(outcome) = self.inside() {
-            self.sample_here(false)?;
-            return Ok(ControlFlow::Break(outcome));
+    /// The matrix, in whichever arithmetic.
+    fn legs(&mut self) -> Option<&mut dyn Legs> {
+        match (&mut self.transition, &mut self.extended_transition) {
+            (Some(transition), _) => Some(transition),
+            (None, Some(transition)) => Some(&mut **transition),
+            (None, None) => None,
         }
-        let manoeuvres = self.request.manoeuvres_of(self.index);
-        let mut rest = manoeuvres.as_slice();
-        loop {
-            // All manoeuvres of one instant, then the samples of that very instant, on their far side.
-            while let Some(((at, manoeuvre), later)) = rest.split_first()
-                && at.minus(self.elapsed) * self.direction <= 0.0
-            {
-                self.apply(*manoeuvre)?;
-                self.applied += 1;
-                rest = later;
-            }
-            let end = Compensated::new(self.duration);
-            let finished = end.minus(self.elapsed) * self.direction <= 0.0;
-            self.sample_here(finished)?;
-            if finished {
-                return Ok(ControlFlow::Continue(()));
-            }
-            let target = rest.first().map_or(end, |(at, _)| *at);
-            if let ControlFlow::Break(outcome) = self.leg(target)? {
-                return Ok(ControlFlow::Break(outcome));
-            }
-            self.elapsed = target;
-        }
-    }
-
-    /// Steps up to `target`, or to where the trajectory ends before.
-    fn leg(&mut self, target: Compensated) -> Flow {
-        let limits = self.request.limits();
-        loop {
-            if self.evidence.steps % STEPS_PER_POLL == STEPS_PER_POLL - 1
-                && let ControlFlow::Break(outcome) = self.poll()?
-            {
-                return Ok(ControlFlow::Break(outcome));
-            }
-            if self.evidence.steps == limits.steps {
-                return Ok(ControlFlow::Break(Outcome::StepLimit));
-            }
-            taylor::expand(self.request.primaries(), &self.state, &mut self.series);
-            let remaining = target.minus(self.elapsed);
-            let step = self.request.step_size().from_log2_radius(self.series.log2_radius);
-            let last = step >= remaining.abs();
-            // Written so that a step that is no number counts as too small.
-            if !(self.series.is_finite() && (last || step >= STEP_FLOOR)) {
-                return Ok(ControlFlow::Break(Outcome::StepFloor));
-            }
-            self.measure(self.series.jacobi);
-            self.evidence.steps += 1;
-            if let Some(transition) = &mut self.transition {
-                transition.expand(&self.series);
-            }
-            let length = if last { remaining } else { step * self.direction };
-            let known = self.events.len();
-            let at_end = last && target == Compensated::new(self.duration);
-            let stop = self.watch(length, at_end);
-            self.budget.take(VALUES_PER_EVENT * (self.events.len() - known) as u64)?;
-            let end = stop.map_or(length, |(at, _)| at);
-            self.sample_within(end, last && stop.is_none())?;
-            self.advance(end);
-            if let Some((_, outcome)) = stop {
-                return Ok(ControlFlow::Break(outcome));
-            }
-            if last {
-                return Ok(ControlFlow::Continue(()));
-            }
-            if self.request.parts().sampling == Sampling::EveryStep {
-                self.push_sample(0.0, None)?;
-            }
-        }
-    }
-
-    fn poll(&self) -> Flow {
-        match self.interrupt.poll() {
-            Some(Stop::Cancelled) => Err(Failure::Cancelled),
-            Some(Stop::WallTime) => Ok(ControlFlow::Break(Outcome::WallTimeLimit)),
-            None => Ok(ControlFlow::Continue(())),
-        }
-    }
-
-    /// Takes the Jacobi constant of a place on the leg into account.
-    fn measure(&mut self, jacobi: f64) {
-        let reference = *self.leg_jacobi.get_or_insert(jacobi);
-        self.evidence.jacobi_drift = self.evidence.jacobi_drift.max((jacobi - reference).abs());
     }
 
     fn end_leg(&mut self) {
-        if self.leg_jacobi.is_some() {
-            self.measure(taylor::jacobi_constant(self.request.primaries(), &self.state));
+        if self.motion.reference.is_some() {
+            let jacobi =
+                taylor::jacobi_constant(self.request.path(), self.request.primaries(), &self.motion.state);
+            self.motion.measure(jacobi);
+            self.motion.reference = None;
         }
-        self.leg_jacobi = None;
-    }
-
-    fn advance(&mut self, length: f64) {
-        let change = taylor::flow(&self.series, length);
-        for (component, change) in self.state.iter_mut().zip(change) {
-            *component = component.plus(change);
-        }
-        if let Some(transition) = &mut self.transition {
-            transition.advance(length);
-        }
-        self.elapsed = self.elapsed.plus(length);
     }
 
     /// The outcome of a start inside a primary.
@@ -291,12 +293,18 @@ impl<'a> Course<'a> {
             return None;
         }
         let primaries = self.request.primaries();
-        let velocity = Vector3::new(self.state[3].value, self.state[4].value, self.state[5].value);
-        let position = Vector3::new(self.state[0].value, self.state[1].value, self.state[2].value);
+        let velocity =
+            Vector3::new(self.motion.state[3].value, self.motion.state[4].value, self.motion.state[5].value);
+        let position =
+            Vector3::new(self.motion.state[0].value, self.motion.state[1].value, self.motion.state[2].value);
         let coriolis = 2.0 * Vector3::new(velocity.y, -velocity.x, 0.0);
         let acceleration = gradient(self.request.parts().mass_parameter, &position) + coriolis;
         let below = |radius: Option<Distance>, centre: Compensated| {
-            let away = Vector3::new(self.state[0].minus(centre), self.state[1].value, self.state[2].value);
+            let away = Vector3::new(
+                self.motion.state[0].minus(centre),
+                self.motion.state[1].value,
+                self.motion.state[2].value,
+            );
             let rate = away.dot(&velocity) * self.direction;
             let inwards =
                 rate < 0.0 || (rate == 0.0 && away.dot(&acceleration) + velocity.norm_squared() < 0.0);
@@ -319,30 +327,41 @@ impl<'a> Course<'a> {
         self.end_leg();
         let parts = self.request.parts();
         let manoeuvre = &parts.manoeuvres[index];
-        let before = self.seen(manoeuvre.time, &[0.0; 6]);
-        let (change, jump) = manoeuvre
-            .impulse(parts.frame, &before)
-            .ok_or(Failure::UndefinedAxes { manoeuvre: index, trajectory: self.index })?;
-        for (component, change) in self.state[3..].iter_mut().zip(change.iter()) {
-            *component = component.plus(change * self.direction);
+        let undefined = Failure::UndefinedAxes { manoeuvre: index, trajectory: self.index };
+        let before = self.seen(manoeuvre.time);
+        let (change, jump) = manoeuvre.impulse(parts.frame, &before).ok_or(undefined)?;
+        if parts.arithmetic == Arithmetic::DoubleDouble {
+            let state = self.motion.state.map(DoubleDouble::from);
+            let origin = self.request.origin_x().into();
+            let change = manoeuvre.precise_impulse(parts.frame, origin, &state).ok_or(undefined)?;
+            for axis in 0..3 {
+                let velocity = state[axis + 3] + change[axis].scaled(self.direction);
+                self.motion.state[axis + 3] = velocity.into();
+            }
+        } else {
+            for (component, change) in self.motion.state[3..].iter_mut().zip(change.iter()) {
+                *component = component.plus(change * self.direction);
+            }
         }
-        if let Some(transition) = &mut self.transition {
-            transition.end_leg(jump.as_ref());
+        if let Some(legs) = self.legs() {
+            legs.end_leg(jump.as_ref());
         }
         Ok(())
     }
 
     /// Records the events of a step; gives where and why the trajectory ends in it, if it does.
-    fn watch(&mut self, length: f64, at_end: bool) -> Option<(f64, Outcome)> {
+    fn watch(&mut self, ahead: &dyn Ahead, length: f64, at_end: bool) -> Option<(f64, Outcome)> {
         if self.watches.is_empty() && self.surfaces.is_empty() {
             return None;
         }
+        let elapsed = self.motion.elapsed;
         let stretch = Stretch::new(
-            &self.series,
-            &self.state,
-            self.start + self.elapsed.value,
+            self.request.path(),
+            ahead.series(),
+            &self.motion.state,
+            self.start + elapsed.value,
             length,
-            self.elapsed.value,
+            elapsed.value,
         );
         let Scratch { roots, hits, found } = &mut self.scratch;
         found.clear();
@@ -370,9 +389,9 @@ impl<'a> Course<'a> {
                 Found::Surface(_) => {}
                 Found::Event(entry) => {
                     let event = &parts.events[entry];
-                    let time = self.start + (self.elapsed.value + (self.elapsed.rest + hit.at));
-                    let change = taylor::flow(&self.series, hit.at);
-                    let state = seen(self.request, &self.state, time, &change);
+                    let time = self.start + (elapsed.value + (elapsed.rest + hit.at));
+                    let (place, change) = ahead.state(&self.motion.state, Compensated::new(hit.at));
+                    let state = seen(self.request, &place, time, &change);
                     let admitted = event.direction.admits(hit.rate)
                         && event.only.is_none_or(|only| only.admits(&state.position));
                     if !admitted {
@@ -394,12 +413,12 @@ impl<'a> Course<'a> {
     }
 
     fn time_here(&self) -> f64 {
-        self.start + (self.elapsed.value + self.elapsed.rest)
+        self.start + (self.motion.elapsed.value + self.motion.elapsed.rest)
     }
 
-    /// The state after a change, in the request's frame.
-    fn seen(&self, time: f64, change: &[f64; 6]) -> State {
-        seen(self.request, &self.state, time, change)
+    /// The state reached, in the request's frame.
+    fn seen(&self, time: f64) -> State {
+        seen(self.request, &self.motion.state, time, &[0.0; 6])
     }
 }
 

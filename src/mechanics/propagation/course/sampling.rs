@@ -1,11 +1,10 @@
 //! The samples of a trajectory under way.
 
-use super::{Course, in_frame};
+use super::{Ahead, Course, Outlet, in_frame, seen};
 use crate::arithmetic::sum::Compensated;
 use crate::interrupt::Stop;
 use crate::propagation::Failure;
 use crate::propagation::request::{MatrixOutput, Sampling};
-use crate::taylor;
 
 /// Samples between two polls, where one step holds many.
 const SAMPLES_PER_POLL: usize = 1024;
@@ -37,15 +36,21 @@ impl Course<'_> {
     }
 
     /// The planned samples up to `end` of the step under way, without those of its very end if a leg ends there.
-    pub(super) fn sample_within(&mut self, end: f64, leg_ends: bool) -> Result<(), Failure> {
+    pub(super) fn sample_within(
+        &mut self,
+        ahead: &dyn Ahead,
+        end: f64,
+        leg_ends: bool,
+        outlet: &mut Outlet,
+    ) -> Result<(), Failure> {
         let mut since_poll = 0;
         while let Some((since, time)) = self.planned(self.next_sample) {
-            let at = since.minus(self.elapsed);
-            let ahead = (at - end) * self.direction;
-            if ahead > 0.0 || (leg_ends && ahead == 0.0) {
+            let at = since.difference(self.motion.elapsed);
+            let beyond = (at.value - end) * self.direction;
+            if beyond > 0.0 || (leg_ends && beyond == 0.0) {
                 break;
             }
-            self.push_sample(at, Some(time))?;
+            self.push_sample(Some((ahead, at)), Some(time), outlet)?;
             self.next_sample += 1;
             since_poll += 1;
             if since_poll % SAMPLES_PER_POLL == 0 && self.interrupt.poll() == Some(Stop::Cancelled) {
@@ -56,38 +61,52 @@ impl Course<'_> {
     }
 
     /// The samples of the very instant reached, or all that rounding has left over once `finished`.
-    pub(super) fn sample_here(&mut self, finished: bool) -> Result<(), Failure> {
+    pub(super) fn sample_here(&mut self, finished: bool, outlet: &mut Outlet) -> Result<(), Failure> {
         if self.request.parts().sampling == Sampling::EveryStep {
-            return self.push_sample(0.0, None);
+            return self.push_sample(None, None, outlet);
         }
         while let Some((since, time)) = self.planned(self.next_sample) {
-            if !finished && since.minus(self.elapsed) * self.direction > 0.0 {
+            if !finished && since.minus(self.motion.elapsed) * self.direction > 0.0 {
                 break;
             }
-            self.push_sample(0.0, Some(time))?;
+            self.push_sample(None, Some(time), outlet)?;
             self.next_sample += 1;
         }
         Ok(())
     }
 
-    /// The state `at` a time after the start of the step under way, 0 for the place reached.
-    pub(super) fn push_sample(&mut self, at: f64, time: Option<f64>) -> Result<(), Failure> {
+    /// The state a time after the start of the step ahead, or the place reached.
+    pub(super) fn push_sample(
+        &mut self,
+        within: Option<(&dyn Ahead, Compensated)>,
+        time: Option<f64>,
+        outlet: &mut Outlet,
+    ) -> Result<(), Failure> {
         self.budget.take(self.request.values_per_sample())?;
-        if self.sink.samples_at_once() == Some(self.samples.times.len()) {
-            self.sink.samples(self.index, std::mem::take(&mut self.samples))?;
+        if let Some(sink) = &mut outlet.0
+            && sink.samples_at_once() == Some(self.samples.times.len())
+        {
+            sink.samples(self.index, std::mem::take(&mut self.samples))?;
         }
+        let within = within.filter(|(_, at)| at.value != 0.0);
         let time = time.unwrap_or(self.time_here());
-        let parts = self.request.parts();
-        let change = if at == 0.0 { [0.0; 6] } else { taylor::flow(&self.series, at) };
-        let seen = self.seen(time, &change);
+        let seen = match within {
+            Some((ahead, at)) => {
+                let (place, change) = ahead.state(&self.motion.state, at);
+                seen(self.request, &place, time, &change)
+            }
+            None => self.seen(time),
+        };
         self.samples.times.push(time);
         self.samples.positions.push(seen.position);
         self.samples.velocities.push(seen.velocity);
-        if parts.matrix == MatrixOutput::Samples
-            && let Some(transition) = &self.transition
-        {
-            let matrix = if at == 0.0 { transition.here() } else { transition.at(at) };
-            self.samples.matrices.push(in_frame(self.request, &matrix, self.start, time));
+        if self.request.parts().matrix == MatrixOutput::Samples {
+            let matrix = match within {
+                Some((ahead, at)) => ahead.matrix(self, at),
+                None => self.legs().map(|legs| legs.here()),
+            };
+            let matrix = matrix.map(|matrix| in_frame(self.request, &matrix, self.start, time));
+            self.samples.matrices.extend(matrix);
         }
         Ok(())
     }

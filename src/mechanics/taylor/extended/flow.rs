@@ -4,7 +4,7 @@
 
 use super::recurrence::number;
 use super::{Columns, Series, TERMS, Wide};
-use crate::arithmetic::{DoubleDouble, Half, Quad, SumOfProducts};
+use crate::arithmetic::{DoubleDouble, Quad, Real, SumOfProducts};
 
 /// Powers of a time in trial steps, and the derivatives of the powers.
 struct Powers {
@@ -34,7 +34,7 @@ impl Powers {
 
 /// The sum of all orders from `first` on, from the highest.
 #[inline(always)]
-fn sum<V: Half>(
+fn sum<V: Real>(
     first: usize,
     coefficient: impl Fn(usize) -> DoubleDouble<V>,
     powers: &[DoubleDouble; TERMS],

@@ -10,11 +10,11 @@ mod recurrence;
 mod step;
 mod variational;
 
-use super::dispatch::accelerated;
+use super::dispatch::{Instructions, on_path};
 use super::{Primaries, Series as RoundedSeries, TERMS as ROUNDED_TERMS};
-use crate::arithmetic::{DoubleDouble, Quad};
+use crate::arithmetic::{DoubleDouble, Packed, Quad};
 
-pub use motion::{Halt, Motion};
+pub use motion::Motion;
 pub use step::EXTENDED_TOLERANCE;
 pub use variational::Columns;
 
@@ -55,14 +55,14 @@ impl Pairs {
     /// Coefficients k and k + 1.
     #[inline(always)]
     fn with_next(&self, k: usize) -> Wide {
-        let join = |half: &[[f64; 2]; TERMS]| Quad::join(half[k], half[k + 1]);
+        let join = |half: &[[f64; 2]; TERMS]| Quad([half[k][0], half[k][1], half[k + 1][0], half[k + 1][1]]);
         Wide::normal(join(&self.leading), join(&self.rest))
     }
 
     /// Coefficient k, twice.
     #[inline(always)]
     fn twice(&self, k: usize) -> Wide {
-        Wide::normal(Quad::twice(self.leading[k]), Quad::twice(self.rest[k]))
+        Wide::normal(Quad::twice(&self.leading[k]), Quad::twice(&self.rest[k]))
     }
 }
 
@@ -120,13 +120,13 @@ impl Series {
 
     /// The first coefficients in powers of the time, rounded: the series that the search for events works on. What it
     /// leaves out is below the round-off within a step of this series.
-    pub fn round_to(&self, rounded: &mut RoundedSeries<f64>) {
+    pub fn round_to(&self, rounded: &mut RoundedSeries) {
         let per_time = 1.0 / self.trial_step;
         let mut factor = 1.0;
         for k in 0..ROUNDED_TERMS {
             let scale = |value: f64| value * factor;
             rounded.position[k] = Quad(self.position[k].to_double().0.map(scale));
-            rounded.half_square[k] = self.half_square.leading[k].map(scale);
+            rounded.set_half_square(k, self.half_square.leading[k].map(scale));
             rounded.force[k] = self.force.leading[k].map(scale);
             rounded.total[k] = scale(self.total[k].to_f64());
             factor *= per_time;
@@ -143,26 +143,33 @@ impl Default for Series {
     }
 }
 
-accelerated! {
+on_path! {
     /// Expands the solution through `state` (x, y, z, vx, vy, vz) into `series`.
-    pub fn expand(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut Series) {
+    pub fn expand<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut Series) {
         recurrence::expand(primaries, state, series);
     }
 
     /// What position and velocity change by within `time` of the series' instant.
-    pub fn flow(series: &Series, time: DoubleDouble) -> [DoubleDouble; 6] {
+    pub fn flow<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(series: &Series, time: DoubleDouble) -> [DoubleDouble; 6] {
         flow::change(series, time)
     }
 
+    /// The Jacobi constant 2Ω − v² of (x, y, z, vx, vy, vz).
+    pub fn jacobi_constant<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(
+        primaries: &Primaries, state: &[DoubleDouble; 6],
+    ) -> DoubleDouble {
+        recurrence::Start::new(primaries, state).jacobi(state)
+    }
+
     /// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
-    pub fn expand_variational(
+    pub fn expand_variational<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(
         series: &Series, matrix: &[[DoubleDouble; 6]; 6], columns: &mut Columns,
     ) {
         variational::expand(series, matrix, columns);
     }
 
     /// What the columns of the matrix change by within `time` of the series' instant.
-    pub fn flow_variational(
+    pub fn flow_variational<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(
         series: &Series, columns: &Columns, time: DoubleDouble,
     ) -> [[DoubleDouble; 6]; 6] {
         flow::matrix_change(series, columns, time)
@@ -171,35 +178,41 @@ accelerated! {
 
 #[cfg(test)]
 mod tests {
-    use super::{Columns, DoubleDouble, Primaries, Series, flow, recurrence, variational};
+    use super::{
+        Columns, DoubleDouble, Primaries, Series, expand, expand_variational, flow, flow_variational,
+        jacobi_constant,
+    };
+    use crate::taylor::Path;
 
     /// Without target features `mul_add` is the software's; the results are the same to the bit.
     #[test]
-    fn portable_and_accelerated_paths_have_the_same_bits() {
+    fn all_paths_have_the_same_bits() {
         let primaries = Primaries::new(0.0121);
-        let mut state = [0.83, 0.05, -0.03, 0.02, 0.31, -0.1].map(DoubleDouble::from);
         let matrix = std::array::from_fn(|i| {
             std::array::from_fn(|j| DoubleDouble::from(if i == j { 1.0 } else { 0.25 }))
         });
-        let (mut fast, mut plain) = (Series::new(), Series::new());
-        let (mut fast_columns, mut plain_columns) = (Columns::new(), Columns::new());
-        for _ in 0..20 {
-            super::expand(&primaries, &state, &mut fast);
-            recurrence::expand(&primaries, &state, &mut plain);
-            assert_eq!(format!("{fast:?}"), format!("{plain:?}"));
-
-            super::expand_variational(&fast, &matrix, &mut fast_columns);
-            variational::expand(&plain, &matrix, &mut plain_columns);
-            assert_eq!(format!("{fast_columns:?}"), format!("{plain_columns:?}"));
-
-            let time = DoubleDouble::reciprocal(17);
-            let moved = flow(&fast, time);
-            assert_eq!(moved, flow::change(&plain, time));
-            let matrices = super::flow_variational(&fast, &fast_columns, time);
-            assert_eq!(matrices, flow::matrix_change(&plain, &plain_columns, time));
-            for (component, moved) in state.iter_mut().zip(moved) {
-                *component = *component + moved;
+        let time = DoubleDouble::reciprocal(17);
+        let walk = |path| {
+            let mut state = [0.83, 0.05, -0.03, 0.02, 0.31, -0.1].map(DoubleDouble::from);
+            let (mut series, mut columns) = (Series::new(), Columns::new());
+            let mut all = Vec::new();
+            for _ in 0..20 {
+                expand(path, &primaries, &state, &mut series);
+                expand_variational(path, &series, &matrix, &mut columns);
+                let matrix = flow_variational(path, &series, &columns, time);
+                all.push(format!(
+                    "{series:?} {columns:?} {matrix:?} {:?}",
+                    jacobi_constant(path, &primaries, &state)
+                ));
+                for (component, moved) in state.iter_mut().zip(flow(path, &series, time)) {
+                    *component = *component + moved;
+                }
             }
+            all
+        };
+        let plain = walk(Path::PORTABLE);
+        for path in Path::available() {
+            assert_eq!(walk(path), plain, "{}", path.name());
         }
     }
 }

@@ -1,12 +1,13 @@
 //! One trajectory's place, and its steps.
 
-use super::{Series, expand, flow};
+use super::{Series, expand, flow, jacobi_constant};
 use crate::arithmetic::DoubleDouble;
-use crate::taylor::{Primaries, STEP_FLOOR};
+use crate::taylor::{Halt, Path, Primaries, STEP_FLOOR, Stride};
 
 /// The place that an integration has reached, and the series about it.
 #[derive(Clone, Debug)]
 pub struct Motion {
+    path: Path,
     primaries: Primaries,
     /// x, y, z, vx, vy, vz in the default frame.
     pub state: [DoubleDouble; 6],
@@ -24,27 +25,12 @@ pub struct Motion {
     length: DoubleDouble,
 }
 
-/// Why an integration pauses.
-#[derive(Clone, Copy, Debug, PartialEq)]
-pub enum Halt {
-    /// The steps granted are taken.
-    Steps,
-    /// The series is expanded for a step of this signed length, the last one before the target or one that is watched.
-    Step {
-        /// Its length.
-        length: f64,
-        /// Whether it ends at the target.
-        last: bool,
-    },
-    /// The step would be too short.
-    Floor,
-}
-
 impl Motion {
     /// At the start.
     #[must_use]
-    pub fn new(primaries: Primaries, state: [DoubleDouble; 6]) -> Self {
+    pub fn new(path: Path, primaries: Primaries, state: [DoubleDouble; 6]) -> Self {
         Self {
+            path,
             primaries,
             state,
             elapsed: DoubleDouble::default(),
@@ -56,11 +42,12 @@ impl Motion {
         }
     }
 
-    /// Takes steps from here, in the `direction` ±1, as long as they end before `target`, at most `most`. Where
-    /// `watched` it stops at each step.
-    pub fn run(&mut self, target: DoubleDouble, direction: f64, most: u64, watched: bool) -> Halt {
+    /// Takes steps from here, in the direction ±1 of the stride, as long as they end before its target.
+    pub fn run(&mut self, stride: &Stride) -> Halt {
+        let Stride { target, direction, most, watched } = *stride;
+        let target = DoubleDouble::from(target);
         for _ in 0..most {
-            expand(&self.primaries, &self.state, &mut self.series);
+            expand(self.path, &self.primaries, &self.state, &mut self.series);
             let remaining = target - self.elapsed;
             let step = self.series.step();
             let last = step >= remaining.abs().to_f64();
@@ -82,7 +69,7 @@ impl Motion {
     /// The state `at` a time after the start of the step.
     #[must_use]
     pub fn state_at(&self, at: DoubleDouble) -> [DoubleDouble; 6] {
-        let change = flow(&self.series, at);
+        let change = flow(self.path, &self.series, at);
         std::array::from_fn(|i| self.state[i] + change[i])
     }
 
@@ -110,8 +97,16 @@ impl Motion {
         }
     }
 
+    /// Ends a leg; the next one's Jacobi constant may be another.
+    pub fn end_leg(&mut self) {
+        if self.reference.is_some() {
+            self.measure(jacobi_constant(self.path, &self.primaries, &self.state));
+            self.reference = None;
+        }
+    }
+
     /// Takes the Jacobi constant of a place on the leg into account.
-    pub fn measure(&mut self, jacobi: DoubleDouble) {
+    fn measure(&mut self, jacobi: DoubleDouble) {
         let reference = *self.reference.get_or_insert(jacobi);
         let departure = (jacobi - reference).abs().to_f64();
         self.drift = if departure > self.drift { departure } else { self.drift };

@@ -55,43 +55,67 @@ pub(super) fn expand(primaries: &Primaries, state: &[DoubleDouble; 6], series: &
     series.log2_radius = step::log2_radius(series);
 }
 
+/// Where the primaries are seen, the nearer one first.
+pub(super) struct Start {
+    /// x relative to the nearer one.
+    d: DoubleDouble,
+    /// The nearer one's x minus the farther one's.
+    side: f64,
+    share: [DoubleDouble; 2],
+    square: [DoubleDouble; 2],
+    distance: [DoubleDouble; 2],
+}
+
+impl Start {
+    #[inline(always)]
+    pub(super) fn new(primaries: &Primaries, state: &[DoubleDouble; 6]) -> Self {
+        let [x, y, z, ..] = *state;
+        let smaller = DoubleDouble::from(primaries.mass_parameter());
+        let larger = DoubleDouble::from(primaries.smaller_x());
+        let (to_larger, to_smaller) = (x + smaller, x - larger);
+        let (d, side, share) = if to_smaller.abs() < to_larger.abs() {
+            (to_smaller, 1.0, [smaller, larger])
+        } else {
+            (to_larger, -1.0, [larger, smaller])
+        };
+        let off_axis = y.squared() + z.squared();
+        let square = [d, d + side].map(|d| d.squared() + off_axis);
+        Self { d, side, share, square, distance: square.map(DoubleDouble::sqrt) }
+    }
+
+    /// The Jacobi constant.
+    #[inline(always)]
+    pub(super) fn jacobi(&self, state: &[DoubleDouble; 6]) -> DoubleDouble {
+        let [x, y, _, vx, vy, vz] = state.map(DoubleDouble::squared);
+        let potential = self.share[0] / self.distance[0] + self.share[1] / self.distance[1];
+        potential.scaled(2.0) + (x + y) - (vx + vy + vz)
+    }
+}
+
 /// Order 0 of everything.
 #[inline(always)]
 fn start(primaries: &Primaries, state: &[DoubleDouble; 6], s: &mut Series) -> Leading {
     let [x, y, z, vx, vy, vz] = *state;
     let zero = DoubleDouble::default();
-    let share_smaller = DoubleDouble::from(primaries.mass_parameter());
-    let share_larger = DoubleDouble::from(primaries.smaller_x());
-    let (to_larger, to_smaller) = (x + share_smaller, x - share_larger);
-    let off_axis = y.squared() + z.squared();
-    let smaller_is_nearer = to_smaller.abs() < to_larger.abs();
-    let (d, near, far) = if smaller_is_nearer {
-        (to_smaller, share_smaller, share_larger)
-    } else {
-        (to_larger, share_larger, share_smaller)
-    };
-    s.side = if smaller_is_nearer { 1.0 } else { -1.0 };
-    let far_d = d + s.side;
-    let square = [d.squared() + off_axis, far_d.squared() + off_axis];
-    let distance = square.map(DoubleDouble::sqrt);
-    let force = [near / (square[0] * distance[0]), far / (square[1] * distance[1])];
+    let start = Start::new(primaries, state);
+    let Start { d, side, share, square, distance } = start;
+    let force = [0, 1].map(|i| share[i] / (square[i] * distance[i]));
+    s.side = side;
     s.half_square.set(0, square.map(|square| square.scaled(0.5)));
     s.force.set(0, force);
     s.total[0] = force[0] + force[1];
+    s.jacobi = start.jacobi(state);
 
-    let speed_square = vx.squared() + vy.squared() + vz.squared();
-    let potential = near / distance[0] + far / distance[1];
-    s.jacobi = potential.scaled(2.0) + (x.squared() + y.squared()) - speed_square;
-
-    s.trial_step =
-        step::trial(distance[0].to_f64(), speed_square.to_f64().sqrt(), s.total[0].to_f64().sqrt());
+    let [a, b, c] = [vx, vy, vz].map(DoubleDouble::to_f64);
+    let speed = (a * a + b * b + c * c).sqrt();
+    s.trial_step = step::trial(distance[0].to_f64(), speed, s.total[0].to_f64().sqrt());
     s.position[0] = Wide::of([d, y, z, zero]);
     s.position[1] = Wide::of([vx, vy, vz, zero]).scaled(Quad::splat(s.trial_step));
 
     Leading {
         x,
         inverse: square.map(|square| DoubleDouble::from(-1.0) / square),
-        away: Wide::of([DoubleDouble::from(s.side), zero, zero, zero]),
+        away: Wide::of([DoubleDouble::from(side), zero, zero, zero]),
         trial_step: s.trial_step,
     }
 }
