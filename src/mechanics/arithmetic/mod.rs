@@ -5,9 +5,9 @@
 mod double;
 mod double_double;
 mod quad;
+pub mod sum;
 #[cfg(target_arch = "x86_64")]
 pub(crate) mod x86;
-pub mod sum;
 
 use std::ops::{Add, Div, Mul, Neg, Sub};
 

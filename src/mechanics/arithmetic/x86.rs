@@ -21,7 +21,7 @@ macro_rules! wide {
         #[doc = concat!("Doubles in a register of ", $set, ".")]
         #[derive(Clone, Copy, Debug)]
         #[repr(transparent)]
-        pub struct $name($register);
+        pub(crate) struct $name($register);
 
         wide!(@operator $name Add add $add);
         wide!(@operator $name Sub sub $sub);
@@ -173,7 +173,10 @@ macro_rules! coarse {
             let fraction = g.mul_add(f, e).mul_add(f, d).mul_add(f, c).mul_add(f, b).mul_add(f, a);
             // SAFETY: the module's. The last bits of the sum are the whole number, those above are shifted out.
             let power = Self(unsafe {
-                $from_bits($shift_left::<{ FRACTION_BITS as $immediate }>($add_i($to_bits(rounded.0), $set1(BIAS))))
+                $from_bits($shift_left::<{ FRACTION_BITS as $immediate }>($add_i(
+                    $to_bits(rounded.0),
+                    $set1(BIAS),
+                )))
             });
             fraction * power
         }

@@ -16,12 +16,7 @@ pub(super) struct Transition {
 
 impl Transition {
     pub(super) fn new() -> Self {
-        Self {
-            leg: identity(),
-            before: Matrix6::identity(),
-            determinant_defect: 0.0,
-            symplectic_defect: 0.0,
-        }
+        Self { leg: identity(), before: Matrix6::identity(), determinant_defect: 0.0, symplectic_defect: 0.0 }
     }
 
     /// Prepares a step along `series`.

@@ -147,8 +147,12 @@ impl<'a> School<'a> {
                 break;
             }
             let most = members.iter().flatten().map(|member| limit - member.course.motion.steps).min();
-            let pause =
-                swarm.run(path, request.primaries(), request.step_size(), most.map_or(0, |n| n.min(STEPS_PER_POLL)));
+            let pause = swarm.run(
+                path,
+                request.primaries(),
+                request.step_size(),
+                most.map_or(0, |n| n.min(STEPS_PER_POLL)),
+            );
             for member in members.iter_mut().flatten() {
                 member.course.motion.steps += pause.steps;
             }
@@ -226,7 +230,9 @@ impl<'a> School<'a> {
         for lane in 0..N {
             let outcome = match &members[lane] {
                 Some(_) if stop.is_some() => Outcome::WallTimeLimit,
-                Some(member) if member.course.motion.steps >= self.request.limits().steps => Outcome::StepLimit,
+                Some(member) if member.course.motion.steps >= self.request.limits().steps => {
+                    Outcome::StepLimit
+                }
                 _ => continue,
             };
             if let Some(mut member) = members[lane].take() {

@@ -2,8 +2,8 @@
 
 use std::sync::atomic::{Ordering, compiler_fence};
 
-use super::tables::{CORIOLIS, REST_MATTERS, TWICE_INTEGRATED, WEIGHT};
 use super::opening::{Leading, Opening};
+use super::tables::{CORIOLIS, REST_MATTERS, TWICE_INTEGRATED, WEIGHT};
 use super::{ORDER, Primaries, Series, TERMS, step};
 use crate::arithmetic::{Lanes, Quad, Real};
 

@@ -17,14 +17,12 @@ mod variational;
 
 use crate::arithmetic::{Quad, Real};
 
-pub use dispatch::{
-    Path, advance, expand, expand_variational, flow, flow_variational, jacobi_constant, run,
-};
+pub use dispatch::{Path, advance, expand, expand_variational, flow, flow_variational, jacobi_constant, run};
 pub(crate) use dispatch::{advance_four, eight, run_four};
 pub use motion::{Halt, Place, Stride};
-pub(crate) use swarm::{Lane, Pause, Swarm};
 pub use primaries::Primaries;
 pub use step::{MAX_STEP, STEP_FLOOR, StepSize};
+pub(crate) use swarm::{Lane, Pause, Swarm};
 pub use variational::Columns;
 
 /// Order of the velocity series. At double precision 20 to 26 cost the same within 5 %.
@@ -103,7 +101,7 @@ impl Default for Series {
 #[inline(always)]
 fn horner<R: Real>(time: R, coefficient: impl Fn(usize) -> R) -> [R; 2] {
     let square = time * time;
-    let ([even, even_slope], [odd, odd_slope]) = 
+    let ([even, even_slope], [odd, odd_slope]) =
         (alternate(square, TERMS - 2, &coefficient), alternate(square, TERMS - 1, &coefficient));
     let odd = time * odd;
     let place = (even + odd).mul_add(time, coefficient(1)) * time;

@@ -52,13 +52,7 @@ impl Place {
     /// At the start.
     #[must_use]
     pub fn new(state: [Compensated; 6]) -> Self {
-        Self {
-            state,
-            elapsed: Compensated::default(),
-            reference: None,
-            drift: 0.0,
-            steps: 0,
-        }
+        Self { state, elapsed: Compensated::default(), reference: None, drift: 0.0, steps: 0 }
     }
 
     #[inline(always)]
@@ -108,4 +102,3 @@ impl Place {
         self.drift = if departure > self.drift { departure } else { self.drift };
     }
 }
-

@@ -1,7 +1,7 @@
 //! The first coefficients, which begin the recurrences.
 
-use super::lanes::twice_integrated;
 use super::Primaries;
+use super::lanes::twice_integrated;
 use super::tables::{CORIOLIS, WEIGHT};
 use crate::arithmetic::Real;
 
@@ -86,7 +86,14 @@ impl<R: Real> Opening<R> {
         let bend = [0, 1].map(|i| half_square_1[i] * inverse[i]);
         let tilt = [0, 1].map(|i| force_1[i] * inverse[i]);
         Self {
-            leading: Leading { inverse, slope, far_slope, bend, tilt, pull: [centripetal, centripetal, total] },
+            leading: Leading {
+                inverse,
+                slope,
+                far_slope,
+                bend,
+                tilt,
+                pull: [centripetal, centripetal, total],
+            },
             position: [[d, y, z], [vx, vy, vz], second, third],
             half_square: [half_square, half_square_1],
             force: [force, force_1],

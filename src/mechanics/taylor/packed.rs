@@ -8,7 +8,7 @@ use super::opening::{Leading, Opening};
 use super::tables::{CORIOLIS, REST_MATTERS, TWICE_INTEGRATED, WEIGHT, WEIGHT_PAIRS};
 use super::{Primaries, Series, TERMS, step};
 use crate::arithmetic::sum::Compensated;
-use crate::arithmetic::{Packed, Quad, Real};
+use crate::arithmetic::{Packed, Quad};
 
 /// [`Leading`], packed.
 struct Constants<P> {
@@ -100,11 +100,8 @@ pub(super) fn expand<P: Packed>(primaries: &Primaries, state: &[Compensated; 6],
         let Quad([d, y, z, _]) = series.position[k];
         d.abs().max(y.abs()).max(z.abs())
     };
-    series.log2_radius = step::log2_radius(
-        step::ESTIMATED_FROM.map(|k| size(k + 1)),
-        size(1),
-        series.squares[0].0[0],
-    );
+    series.log2_radius =
+        step::log2_radius(step::ESTIMATED_FROM.map(|k| size(k + 1)), size(1), series.squares[0].0[0]);
 }
 
 impl<P: Packed> Sums<P> {
@@ -169,11 +166,23 @@ impl<P: Packed> Sums<P> {
 /// From the position's coefficients up to `K` + 1, the last two of which are among the `newest`, those of order `K` + 2
 /// and `K` + 3; and the old terms of the orders `NEXT` and `NEXT` + 1.
 #[inline(always)]
-fn pair<P: Packed, const K: usize, const NEXT: usize>(c: &Constants<P>, s: &mut Series, newest: Newest<P>) -> Newest<P> {
+fn pair<P: Packed, const K: usize, const NEXT: usize>(
+    c: &Constants<P>,
+    s: &mut Series,
+    newest: Newest<P>,
+) -> Newest<P> {
     let Newest { position: newest, squares: before, force, total, mut sums } = newest;
     let p = &s.position;
     let at = |j: usize| {
-        if j >= K { newest[j - K] } else if j == 0 { c.place } else if j == 1 { c.rate } else { P::load(&p[j]) }
+        if j >= K {
+            newest[j - K]
+        } else if j == 0 {
+            c.place
+        } else if j == 1 {
+            c.rate
+        } else {
+            P::load(&p[j])
+        }
     };
     let middle = K / 2;
     if middle <= 2 {
@@ -217,7 +226,8 @@ fn pair<P: Packed, const K: usize, const NEXT: usize>(c: &Constants<P>, s: &mut 
         sums.force::<K>(1, P::load(&s.squares[1]), force[1]);
     }
     let settled = sums.force.map_or(P::from_f64(0.0), |total| total * c.inverse);
-    let settled_even = (P::from_f64(WEIGHT[K][K - 1]) * c.tilt).mul_add(before.high_twice(), settled.low_twice());
+    let settled_even =
+        (P::from_f64(WEIGHT[K][K - 1]) * c.tilt).mul_add(before.high_twice(), settled.low_twice());
     let settled_even = settled_even.with::<FAR>(c.far_slope.mul_add(d_even, settled_even));
     let force_even = near_even.mul_add(c.slope, settled_even);
     let settled_odd = settled.high_twice();
@@ -260,7 +270,13 @@ fn pair<P: Packed, const K: usize, const NEXT: usize>(c: &Constants<P>, s: &mut 
     stage();
     let sums = Sums::old::<NEXT>(s).settle();
     stage();
-    Newest { position: [even, odd], squares, force: [force_even, force_odd], total: [total_even, total_odd], sums }
+    Newest {
+        position: [even, odd],
+        squares,
+        force: [force_even, force_odd],
+        total: [total_even, total_odd],
+        sums,
+    }
 }
 
 /// [`super::lanes::twice_integrated`], packed.

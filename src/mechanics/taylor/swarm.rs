@@ -3,8 +3,8 @@
 use super::lanes::{self, LaneSeries};
 use super::variational::LaneColumns;
 use super::{Primaries, STEP_FLOOR, StepSize};
+use crate::arithmetic::Lanes;
 use crate::arithmetic::sum::Compensated;
-use crate::arithmetic::{Lanes, Real};
 
 /// Values and what their rounding lost, one a lane.
 #[derive(Clone, Copy, Debug)]
@@ -216,7 +216,8 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
             // The scalar comparison keeps the old one where the new one is no number.
             self.drift = (jacobi - reference).abs().max(L::from_array(&self.drift)).to_array();
 
-            let remaining = self.target.minus(L::from_array(&self.elapsed.value), L::from_array(&self.elapsed.rest));
+            let remaining =
+                self.target.minus(L::from_array(&self.elapsed.value), L::from_array(&self.elapsed.rest));
             let step = sizes.from_log2_radius(L::from_array(&self.series.log2_radius));
             let all = (1 << L::COUNT) - 1;
             let last = !step.less(remaining.abs()) & all;
@@ -272,4 +273,3 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Matrices<A> {
         }
     }
 }
-

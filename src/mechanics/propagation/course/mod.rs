@@ -259,12 +259,18 @@ impl<'a> Course<'a> {
             return None;
         }
         let primaries = self.request.primaries();
-        let velocity = Vector3::new(self.motion.state[3].value, self.motion.state[4].value, self.motion.state[5].value);
-        let position = Vector3::new(self.motion.state[0].value, self.motion.state[1].value, self.motion.state[2].value);
+        let velocity =
+            Vector3::new(self.motion.state[3].value, self.motion.state[4].value, self.motion.state[5].value);
+        let position =
+            Vector3::new(self.motion.state[0].value, self.motion.state[1].value, self.motion.state[2].value);
         let coriolis = 2.0 * Vector3::new(velocity.y, -velocity.x, 0.0);
         let acceleration = gradient(self.request.parts().mass_parameter, &position) + coriolis;
         let below = |radius: Option<Distance>, centre: Compensated| {
-            let away = Vector3::new(self.motion.state[0].minus(centre), self.motion.state[1].value, self.motion.state[2].value);
+            let away = Vector3::new(
+                self.motion.state[0].minus(centre),
+                self.motion.state[1].value,
+                self.motion.state[2].value,
+            );
             let rate = away.dot(&velocity) * self.direction;
             let inwards =
                 rate < 0.0 || (rate == 0.0 && away.dot(&acceleration) + velocity.norm_squared() < 0.0);
