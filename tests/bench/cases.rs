@@ -28,6 +28,7 @@ use std::process::ExitCode;
 use mechanics::interrupt::Never;
 use mechanics::propagation::{Durations, MatrixOutput, Request, Trajectory, solve};
 use mechanics::quantity::Quantity;
+use mechanics::taylor::Path;
 use rustix::time::{ClockId, clock_gettime};
 use serde_json::{Value, json};
 
@@ -39,9 +40,9 @@ fn main() -> ExitCode {
         ["names"] => Some(json!(cases::NAMES).to_string()),
         ["request", name] => request(name).map(|request| body(&request).to_string()),
         ["solve", name] => request(name).map(|request| solution(&request).to_string()),
-        ["solve", name, path] => force(path).and_then(|()| request(name)).map(|r| solution(&r).to_string()),
-        ["time", name, seconds] => timed(name, seconds),
-        ["time", name, seconds, path] => force(path).and_then(|()| timed(name, seconds)),
+        ["solve", name, path] => request_on(name, path).map(|request| solution(&request).to_string()),
+        ["time", name, seconds] => request(name).and_then(|request| timed(&request, seconds)),
+        ["time", name, seconds, path] => request_on(name, path).and_then(|request| timed(&request, seconds)),
         ["effort"] => Some(effort::table().trim_end().to_owned()),
         ["golden"] => Some(golden::table().trim_end().to_owned()),
         _ => None,
@@ -56,16 +57,17 @@ fn main() -> ExitCode {
 
 /// The kernels that can run here, the one that is chosen first.
 fn paths() -> Vec<&'static str> {
-    vec![if mechanics::taylor::accelerated() { "avx2" } else { "portable" }]
-}
-
-/// Makes all that follows run on one of the [`paths`].
-fn force(path: &str) -> Option<()> {
-    (path == *paths().first()?).then_some(())
+    Path::available().into_iter().rev().map(Path::name).collect()
 }
 
 fn request(name: &str) -> Option<Request> {
     cases::case(name).map(|parts| Request::new(parts).expect("valid"))
+}
+
+/// A case on one of the [`paths`].
+fn request_on(name: &str, path: &str) -> Option<Request> {
+    let path = Path::available().into_iter().find(|available| available.name() == path)?;
+    Some(request(name)?.on(path))
 }
 
 fn solved(request: &Request) -> Vec<Trajectory> {
@@ -107,13 +109,12 @@ fn processor_time() -> f64 {
 }
 
 /// Processor time of one solution, from so many that they last at least `seconds`.
-fn timed(name: &str, seconds: &str) -> Option<String> {
-    let request = request(name)?;
+fn timed(request: &Request, seconds: &str) -> Option<String> {
     let seconds: f64 = seconds.parse().ok()?;
     let run = |times: u32| {
         let begun = processor_time();
         for _ in 0..times {
-            black_box(solved(&request));
+            black_box(solved(request));
         }
         processor_time() - begun
     };

@@ -21,7 +21,7 @@ macro_rules! wide {
         #[doc = concat!("Doubles in a register of ", $set, ".")]
         #[derive(Clone, Copy, Debug)]
         #[repr(transparent)]
-        pub struct $name($register);
+        pub(crate) struct $name($register);
 
         wide!(@operator $name Add add $add);
         wide!(@operator $name Sub sub $sub);

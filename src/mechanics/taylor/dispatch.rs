@@ -121,8 +121,6 @@ macro_rules! on_path {
         }
     )*};
 }
-pub(crate) use on_path;
-
 #[cfg(target_arch = "x86_64")]
 use crate::arithmetic::x86::Wide4;
 #[cfg(not(target_arch = "x86_64"))]

@@ -8,7 +8,7 @@ use super::opening::{Leading, Opening};
 use super::tables::{CORIOLIS, REST_MATTERS, TWICE_INTEGRATED, WEIGHT, WEIGHT_PAIRS};
 use super::{Primaries, Series, TERMS, step};
 use crate::arithmetic::sum::Compensated;
-use crate::arithmetic::{Packed, Quad, Real};
+use crate::arithmetic::{Packed, Quad};
 
 /// [`Leading`], packed.
 struct Constants<P> {

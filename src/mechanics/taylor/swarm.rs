@@ -3,8 +3,8 @@
 use super::lanes::{self, LaneSeries};
 use super::variational::LaneColumns;
 use super::{Primaries, STEP_FLOOR, StepSize};
+use crate::arithmetic::Lanes;
 use crate::arithmetic::sum::Compensated;
-use crate::arithmetic::{Lanes, Real};
 
 /// Values and what their rounding lost, one a lane.
 #[derive(Clone, Copy, Debug)]

@@ -18,19 +18,20 @@ pub(crate) struct Version {
     release: &'static str,
     /// The commit it was built from, `unknown` outside a repository.
     commit: &'static str,
-    /// How multiply-add is done: `fma` in one instruction; `software` where the processor has none, with the same
-    /// bits but slowly.
+    /// The instructions that trajectories are computed with, `avx512`, `avx2`, `neon` or `software`. All give the same
+    /// bits; `software`, where the processor has no fused multiply-add, slowly.
     arithmetic: &'static str,
 }
 
-/// How this processor does a fused multiply-add.
+/// The instructions that trajectories are computed with here.
 #[must_use]
 pub fn arithmetic() -> &'static str {
-    #[cfg(target_arch = "x86_64")]
-    if !std::arch::is_x86_feature_detected!("fma") {
-        return "software";
+    let path = mechanics::taylor::Path::fastest();
+    match (path.is_fused(), path.name()) {
+        (false, _) => "software",
+        (true, "portable") => "neon",
+        (true, name) => name,
     }
-    "fma"
 }
 
 static VERSION: LazyLock<Document> = LazyLock::new(|| {
