@@ -123,6 +123,7 @@ macro_rules! on_path {
 }
 #[cfg(target_arch = "x86_64")]
 use crate::arithmetic::x86::Wide4;
+pub(super) use on_path;
 #[cfg(not(target_arch = "x86_64"))]
 type Wide4 = Quad<f64>;
 

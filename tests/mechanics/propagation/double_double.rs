@@ -43,7 +43,14 @@ fn final_states_are_the_nearest_doubles() {
         ("nrho_30", MU, RECTILINEAR, 30.0),
     ] {
         let last = run(precise(mu, state, duration)).last;
-        assert_eq!(components(&last), truth(case, "final").map(DoubleDouble::to_f64), "{case}");
+        for (found, truth) in components(&last).into_iter().zip(truth(case, "final")) {
+            let error = (truth - found).abs().to_f64();
+            // Beside half a last digit, what 106 bits leave of Arenstorf's orbit.
+            assert!(
+                error <= 0.5 * (found.next_up() - found).max(found - found.next_down()) + 1e-26,
+                "{case} {error:e}"
+            );
+        }
     }
 }
 
@@ -107,7 +114,7 @@ fn samples_are_the_nearest_doubles() {
 
 #[test]
 fn events() {
-    let mut request = precise(MU, HALO, HALO_PERIOD);
+    let mut request = precise(MU, HALO, HALO_PERIOD + 0.1);
     request.events = vec![crossing(None)];
     let trajectory = run(request);
     let [half, whole] = &trajectory.events[..] else { panic!("{:?}", trajectory.events) };
