@@ -445,7 +445,7 @@ fn an_audit_measures_the_true_error() {
         (&trajectory["evidence"]["audit"]["position_error"], apart(&trajectory["final"]["position"], &truth));
     assert!((found.as_f64().unwrap() / expected - 1.0).abs() < 1e-4, "{found} {expected}");
 
-    // A step of the audit takes as long as 32 in double precision and counts as many.
+    // A step of the audit takes as long as 25 in double precision and counts as many.
     let cut = audit(&json!({ "limits": { "steps": 100 } }));
     assert_eq!(
         cut,
@@ -463,7 +463,7 @@ fn an_audit_beyond_the_limits_is_refused_before_any_work() {
 
     let state = &halo()["initial_states"][0];
     for extended in [json!({ "audit": true }), json!({ "arithmetic": "double_double" })] {
-        let many = with(with(halo(), &json!({ "initial_states": vec![state; 4000] })), &extended);
+        let many = with(with(halo(), &json!({ "initial_states": vec![state; 4001] })), &extended);
         let problem = server.post(PATH, &many).problem("work-limit");
         assert_eq!(problem["errors"][0]["pointer"], "/initial_states");
     }

@@ -60,8 +60,8 @@ pub enum Arithmetic {
 }
 
 /// What a step in double-double arithmetic counts among the steps granted: it takes as long as so many in double
-/// precision (measured: 30 to 35).
-pub const EXTENDED_WEIGHT: u64 = 32;
+/// precision (measured: 20 to 26).
+pub const EXTENDED_WEIGHT: u64 = 25;
 
 /// The durations of the trajectories.
 #[derive(Clone, Debug, PartialEq)]

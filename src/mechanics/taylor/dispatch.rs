@@ -121,11 +121,12 @@ macro_rules! on_path {
         }
     )*};
 }
-#[cfg(target_arch = "x86_64")]
-use crate::arithmetic::x86::Wide4;
 pub(super) use on_path;
+
+#[cfg(target_arch = "x86_64")]
+pub(super) use crate::arithmetic::x86::Wide4;
 #[cfg(not(target_arch = "x86_64"))]
-type Wide4 = Quad<f64>;
+pub(super) type Wide4 = Quad<f64>;
 
 on_path! {
     /// Expands the solution through `state` (x, y, z, vx, vy, vz) into `series`.

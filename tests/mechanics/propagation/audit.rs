@@ -205,7 +205,7 @@ fn what_cannot_be_audited_is_refused() {
     assert_eq!(Request::new(finest).expect_err("nothing finer"), [Invalid::AuditOfDoubleDouble]);
 
     let long = RequestParts { audit: true, ..parts(MU, HALO, 1e5) };
-    let asked = 33 * 50_000;
+    let asked = 26 * 50_000;
     let fault = Invalid::AuditSteps { trajectory: 0, asked, limit: 1_000_000 };
     assert_eq!(Request::new(long.clone()).expect_err("too long"), [fault]);
     // What may end early may cost less.

@@ -187,7 +187,7 @@ fn manoeuvres() {
 #[test]
 fn steps_count_more() {
     let mut request = precise(MU, HALO, HALO_PERIOD);
-    request.limits.steps = 320;
+    request.limits.steps = 250;
     let trajectory = run(request);
     assert_eq!((trajectory.outcome, trajectory.evidence.steps), (Outcome::StepLimit, 10));
     assert!(trajectory.last.time > 0.5 && trajectory.last.time < 2.0);

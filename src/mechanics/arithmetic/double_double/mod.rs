@@ -8,7 +8,7 @@ use std::ops::{Add, Div, Mul, Neg, Sub};
 pub use matrix::Matrix;
 pub use products::SumOfProducts;
 
-use super::{Quad, Real, sum::Compensated};
+use super::{Packed, Quad, Real, sum::Compensated};
 
 /// The exact sum of two, rounded and the rest.
 #[inline(always)]
@@ -167,11 +167,29 @@ impl DoubleDouble<Quad<f64>> {
         Self { hi: Quad(lanes.map(|lane| lane.hi)), lo: Quad(lanes.map(|lane| lane.lo)) }
     }
 
+    /// The four numbers from memory.
+    #[inline(always)]
+    pub(crate) fn load<P: Packed>(&self) -> DoubleDouble<P> {
+        DoubleDouble { hi: P::load(&self.hi), lo: P::load(&self.lo) }
+    }
+
     /// One of the four numbers.
     #[must_use]
     #[inline(always)]
     pub fn lane(self, index: usize) -> DoubleDouble {
         DoubleDouble { hi: self.hi.0[index], lo: self.lo.0[index] }
+    }
+}
+
+impl<P: Packed> DoubleDouble<P> {
+    /// The four numbers in memory.
+    #[inline(always)]
+    pub(crate) fn stored(self) -> DoubleDouble<Quad<f64>> {
+        let mut halves = [Quad::splat(0.0); 2];
+        self.hi.store(&mut halves[0]);
+        self.lo.store(&mut halves[1]);
+        let [hi, lo] = halves;
+        DoubleDouble { hi, lo }
     }
 }
 

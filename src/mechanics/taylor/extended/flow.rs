@@ -4,7 +4,7 @@
 
 use super::recurrence::number;
 use super::{Columns, Series, TERMS, Wide};
-use crate::arithmetic::{DoubleDouble, Quad, Real, SumOfProducts};
+use crate::arithmetic::{DoubleDouble, Packed, SumOfProducts};
 
 /// Powers of a time in trial steps, and the derivatives of the powers.
 struct Powers {
@@ -34,33 +34,31 @@ impl Powers {
 
 /// The sum of all orders from `first` on, from the highest.
 #[inline(always)]
-fn sum<V: Real>(
+fn sum<'a, P: Packed>(
     first: usize,
-    coefficient: impl Fn(usize) -> DoubleDouble<V>,
+    coefficient: impl Fn(usize) -> &'a Wide,
     powers: &[DoubleDouble; TERMS],
-) -> DoubleDouble<V> {
-    let term = |k: usize| (coefficient(k), DoubleDouble::splat(powers[k]));
-    let (last, power) = term(TERMS - 1);
-    let mut sum = SumOfProducts::of(last, power);
-    for k in (first..TERMS - 1).rev() {
-        let (coefficient, power) = term(k);
-        sum = sum.and(coefficient, power);
+) -> Wide {
+    let last = TERMS - 1;
+    let mut sum = SumOfProducts::of(coefficient(last).load::<P>(), DoubleDouble::splat(powers[last]));
+    for k in (first..last).rev() {
+        sum = sum.and(coefficient(k).load(), DoubleDouble::splat(powers[k]));
     }
-    sum.total()
+    sum.total().stored()
 }
 
 /// What position and velocity change by within `time`.
 #[inline(always)]
-pub(super) fn change(series: &Series, time: DoubleDouble) -> [DoubleDouble; 6] {
+pub(super) fn change<P: Packed>(series: &Series, time: DoubleDouble) -> [DoubleDouble; 6] {
     let powers = Powers::new(time, series.trial_step);
-    let place = sum(1, |k| series.position[k], &powers.place);
-    let rate = sum(2, |k| series.position[k], &powers.rate);
+    let place = sum::<P>(1, |k| &series.position[k], &powers.place);
+    let rate = sum::<P>(2, |k| &series.position[k], &powers.rate);
     std::array::from_fn(|i| if i < 3 { place.lane(i) } else { rate.lane(i - 3) })
 }
 
 /// What the columns of the matrix change by within `time`.
 #[inline(always)]
-pub(super) fn matrix_change(
+pub(super) fn matrix_change<P: Packed>(
     series: &Series,
     columns: &Columns,
     time: DoubleDouble,
@@ -69,8 +67,8 @@ pub(super) fn matrix_change(
     let mut change = [[DoubleDouble::default(); 6]; 6];
     for axis in 0..3 {
         for half in 0..2 {
-            let place: Wide = sum::<Quad<f64>>(1, |k| columns.position[k][axis][half], &powers.place);
-            let rate = sum(2, |k| columns.position[k][axis][half], &powers.rate);
+            let place = sum::<P>(1, |k| &columns.position[k][axis][half], &powers.place);
+            let rate = sum::<P>(2, |k| &columns.position[k][axis][half], &powers.rate);
             for lane in 0..if half == 0 { 4 } else { 2 } {
                 change[axis][4 * half + lane] = place.lane(lane);
                 change[axis + 3][4 * half + lane] = rate.lane(lane);

@@ -10,7 +10,7 @@ mod recurrence;
 mod step;
 mod variational;
 
-use super::dispatch::{Instructions, on_path};
+use super::dispatch::{Instructions, Wide4, on_path};
 use super::{Primaries, Series as RoundedSeries, TERMS as ROUNDED_TERMS};
 use crate::arithmetic::{DoubleDouble, Packed, Quad};
 
@@ -54,15 +54,18 @@ impl Pairs {
 
     /// Coefficients k and k + 1.
     #[inline(always)]
-    fn with_next(&self, k: usize) -> Wide {
-        let join = |half: &[[f64; 2]; TERMS]| Quad([half[k][0], half[k][1], half[k + 1][0], half[k + 1][1]]);
-        Wide::normal(join(&self.leading), join(&self.rest))
+    fn with_next<P: Packed>(&self, k: usize) -> DoubleDouble<P> {
+        let next = k + 1;
+        let [[a, b], [c, d]] = [self.leading[k], self.leading[next]];
+        let leading = P::load(&Quad([a, b, c, d]));
+        let [[a, b], [c, d]] = [self.rest[k], self.rest[next]];
+        DoubleDouble::normal(leading, P::load(&Quad([a, b, c, d])))
     }
 
     /// Coefficient k, twice.
     #[inline(always)]
-    fn twice(&self, k: usize) -> Wide {
-        Wide::normal(Quad::twice(&self.leading[k]), Quad::twice(&self.rest[k]))
+    fn twice<P: Packed>(&self, k: usize) -> DoubleDouble<P> {
+        DoubleDouble::normal(P::twice(&self.leading[k]), P::twice(&self.rest[k]))
     }
 }
 
@@ -145,34 +148,27 @@ impl Default for Series {
 
 on_path! {
     /// Expands the solution through `state` (x, y, z, vx, vy, vz) into `series`.
-    pub fn expand<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut Series) {
-        recurrence::expand(primaries, state, series);
+    pub fn expand<P: Packed = Quad<f64> | Wide4 | Wide4>(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut Series) {
+        recurrence::expand::<P>(primaries, state, series);
     }
 
     /// What position and velocity change by within `time` of the series' instant.
-    pub fn flow<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(series: &Series, time: DoubleDouble) -> [DoubleDouble; 6] {
-        flow::change(series, time)
-    }
-
-    /// The Jacobi constant 2Ω − v² of (x, y, z, vx, vy, vz).
-    pub fn jacobi_constant<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(
-        primaries: &Primaries, state: &[DoubleDouble; 6],
-    ) -> DoubleDouble {
-        recurrence::Start::new(primaries, state).jacobi(state)
+    pub fn flow<P: Packed = Quad<f64> | Wide4 | Wide4>(series: &Series, time: DoubleDouble) -> [DoubleDouble; 6] {
+        flow::change::<P>(series, time)
     }
 
     /// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
-    pub fn expand_variational<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(
+    pub fn expand_variational<P: Packed = Quad<f64> | Wide4 | Wide4>(
         series: &Series, matrix: &[[DoubleDouble; 6]; 6], columns: &mut Columns,
     ) {
-        variational::expand(series, matrix, columns);
+        variational::expand::<P>(series, matrix, columns);
     }
 
     /// What the columns of the matrix change by within `time` of the series' instant.
-    pub fn flow_variational<P: Packed = Quad<f64> | Quad<f64> | Quad<f64>>(
+    pub fn flow_variational<P: Packed = Quad<f64> | Wide4 | Wide4>(
         series: &Series, columns: &Columns, time: DoubleDouble,
     ) -> [[DoubleDouble; 6]; 6] {
-        flow::matrix_change(series, columns, time)
+        flow::matrix_change::<P>(series, columns, time)
     }
 }
 
@@ -180,7 +176,6 @@ on_path! {
 mod tests {
     use super::{
         Columns, DoubleDouble, Primaries, Series, expand, expand_variational, flow, flow_variational,
-        jacobi_constant,
     };
     use crate::taylor::Path;
 
@@ -200,10 +195,7 @@ mod tests {
                 expand(path, &primaries, &state, &mut series);
                 expand_variational(path, &series, &matrix, &mut columns);
                 let matrix = flow_variational(path, &series, &columns, time);
-                all.push(format!(
-                    "{series:?} {columns:?} {matrix:?} {:?}",
-                    jacobi_constant(path, &primaries, &state)
-                ));
+                all.push(format!("{series:?} {columns:?} {matrix:?}"));
                 for (component, moved) in state.iter_mut().zip(flow(path, &series, time)) {
                     *component = *component + moved;
                 }

@@ -1,6 +1,7 @@
 //! One trajectory's place, and its steps.
 
-use super::{Series, expand, flow, jacobi_constant};
+use super::recurrence::Start;
+use super::{Series, expand, flow};
 use crate::arithmetic::DoubleDouble;
 use crate::taylor::{Halt, Path, Primaries, STEP_FLOOR, Stride};
 
@@ -100,7 +101,8 @@ impl Motion {
     /// Ends a leg; the next one's Jacobi constant may be another.
     pub fn end_leg(&mut self) {
         if self.reference.is_some() {
-            self.measure(jacobi_constant(self.path, &self.primaries, &self.state));
+            let jacobi = Start::new(&self.primaries, &self.state).jacobi(&self.state);
+            self.measure(jacobi);
             self.reference = None;
         }
     }

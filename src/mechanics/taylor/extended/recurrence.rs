@@ -2,7 +2,7 @@
 //! rounding loses.
 
 use super::{ORDER, Pairs, Series, TERMS, Wide, step};
-use crate::arithmetic::{DoubleDouble, Quad, SumOfProducts};
+use crate::arithmetic::{DoubleDouble, Packed, Quad, SumOfProducts};
 use crate::taylor::Primaries;
 
 /// 1/k.
@@ -47,10 +47,10 @@ struct Leading {
 
 /// Expands the solution through (x, y, z, vx, vy, vz) into `series`.
 #[inline(always)]
-pub(super) fn expand(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut Series) {
+pub(super) fn expand<P: Packed>(primaries: &Primaries, state: &[DoubleDouble; 6], series: &mut Series) {
     let leading = start(primaries, state, series);
     for k in (0..ORDER).step_by(2) {
-        pair(&leading, series, k);
+        pair::<P>(&leading, series, k);
     }
     series.log2_radius = step::log2_radius(series);
 }
@@ -79,8 +79,8 @@ impl Start {
             (to_larger, -1.0, [larger, smaller])
         };
         let off_axis = y.squared() + z.squared();
-        let square = [d, d + side].map(|d| d.squared() + off_axis);
-        Self { d, side, share, square, distance: square.map(DoubleDouble::sqrt) }
+        let square = [d.squared() + off_axis, (d + side).squared() + off_axis];
+        Self { d, side, share, square, distance: [square[0].sqrt(), square[1].sqrt()] }
     }
 
     /// The Jacobi constant.
@@ -99,9 +99,9 @@ fn start(primaries: &Primaries, state: &[DoubleDouble; 6], s: &mut Series) -> Le
     let zero = DoubleDouble::default();
     let start = Start::new(primaries, state);
     let Start { d, side, share, square, distance } = start;
-    let force = [0, 1].map(|i| share[i] / (square[i] * distance[i]));
+    let force = [share[0] / (square[0] * distance[0]), share[1] / (square[1] * distance[1])];
     s.side = side;
-    s.half_square.set(0, square.map(|square| square.scaled(0.5)));
+    s.half_square.set(0, [square[0].scaled(0.5), square[1].scaled(0.5)]);
     s.force.set(0, force);
     s.total[0] = force[0] + force[1];
     s.jacobi = start.jacobi(state);
@@ -114,7 +114,7 @@ fn start(primaries: &Primaries, state: &[DoubleDouble; 6], s: &mut Series) -> Le
 
     Leading {
         x,
-        inverse: square.map(|square| DoubleDouble::from(-1.0) / square),
+        inverse: [DoubleDouble::from(-1.0) / square[0], DoubleDouble::from(-1.0) / square[1]],
         away: Wide::of([DoubleDouble::from(side), zero, zero, zero]),
         trial_step: s.trial_step,
     }
@@ -122,9 +122,9 @@ fn start(primaries: &Primaries, state: &[DoubleDouble; 6], s: &mut Series) -> Le
 
 /// From the position's coefficients up to `k` + 1, those of order `k` + 2 and `k` + 3.
 #[inline(always)]
-fn pair(leading: &Leading, s: &mut Series, k: usize) {
-    let half_squares = half_squares(&s.position, k);
-    let [settled_even, settled_odd] = settled_products(&s.total, &s.position, k);
+fn pair<P: Packed>(leading: &Leading, s: &mut Series, k: usize) {
+    let half_squares = half_squares::<P>(&s.position, k);
+    let [settled_even, settled_odd] = settled_products::<P>(&s.total, &s.position, k);
 
     for (order, near) in [(k, half_squares[0]), (k + 1, half_squares[1])] {
         if order > 0 {
@@ -132,7 +132,7 @@ fn pair(leading: &Leading, s: &mut Series, k: usize) {
             s.half_square.set(order, [near, far]);
         }
     }
-    let [even, odd] = inverse_cubes(&s.half_square, &s.force, leading, k);
+    let [even, odd] = inverse_cubes::<P>(&s.half_square, &s.force, leading, k);
     if k > 0 {
         s.force.set(k, even);
         s.total[k] = even[0] + even[1];
@@ -142,28 +142,37 @@ fn pair(leading: &Leading, s: &mut Series, k: usize) {
 
     // The newest terms of the products, and the position two orders on.
     let p = &mut s.position;
-    let zero = DoubleDouble::default();
-    let (g_even, g_odd) = (Wide::splat(s.total[k]), Wide::splat(s.total[k + 1]));
-    let (far_even, far_odd) = (Wide::splat(s.force.at(k)[1]), Wide::splat(s.force.at(k + 1)[1]));
-    let in_plane = |x: DoubleDouble, y: DoubleDouble| Wide::of([x, y, zero, zero]);
-    let turned = |order: usize, rate: Wide| {
-        let factor = 2.0 * number(order + 1) / leading.trial_step;
-        in_plane(rate.lane(1).times(factor), rate.lane(0).times(-factor))
-    };
+    let (g_even, g_odd) = (DoubleDouble::<P>::splat(s.total[k]), DoubleDouble::<P>::splat(s.total[k + 1]));
+    let (far_even, far_odd) =
+        (DoubleDouble::splat(s.force.at(k)[1]), DoubleDouble::splat(s.force.at(k + 1)[1]));
 
     let x = if k > 0 { p[k].lane(0) } else { leading.x };
-    let attraction = settled_even.and(p[0], g_even).and(leading.away, far_even).total();
-    let acceleration = (in_plane(x, p[k].lane(1)) + turned(k, p[k + 1])) - attraction;
+    let attraction =
+        settled_even.and(p[0].load(), g_even).and(leading.away.load(), far_even).total().stored();
+    let acceleration = (in_plane(x, p[k].lane(1)) + turned(leading, k, p[k + 1])) - attraction;
     p[k + 2] = twice_integrated(leading, k, acceleration);
 
     let mut attraction = settled_odd;
     if k > 0 {
-        attraction = attraction.and(p[1], g_even);
+        attraction = attraction.and(p[1].load(), g_even);
     }
-    let attraction = attraction.and(p[0], g_odd).and(leading.away, far_odd).total();
+    let attraction = attraction.and(p[0].load(), g_odd).and(leading.away.load(), far_odd).total().stored();
     let centrifugal = in_plane(p[k + 1].lane(0), p[k + 1].lane(1));
-    let acceleration = (centrifugal - attraction) + turned(k + 1, p[k + 2]);
+    let acceleration = (centrifugal - attraction) + turned(leading, k + 1, p[k + 2]);
     p[k + 3] = twice_integrated(leading, k + 1, acceleration);
+}
+
+/// x and y.
+#[inline(always)]
+fn in_plane(x: DoubleDouble, y: DoubleDouble) -> Wide {
+    Wide::of([x, y, DoubleDouble::default(), DoubleDouble::default()])
+}
+
+/// The Coriolis acceleration of an order from the next coefficient of the position.
+#[inline(always)]
+fn turned(leading: &Leading, order: usize, next: Wide) -> Wide {
+    let factor = 2.0 * number(order + 1) / leading.trial_step;
+    in_plane(next.lane(1).times(factor), next.lane(0).times(-factor))
 }
 
 /// Coefficient k + 2 of the position from coefficient k of the acceleration.
@@ -175,34 +184,41 @@ fn twice_integrated(leading: &Leading, k: usize, acceleration: Wide) -> Wide {
 
 /// Half the squared distance to the nearer primary, orders `k` and `k` + 1: half squares need no doubling.
 #[inline(always)]
-fn half_squares(p: &[Wide; TERMS], k: usize) -> [DoubleDouble; 2] {
+fn half_squares<P: Packed>(p: &[Wide; TERMS], k: usize) -> [DoubleDouble; 2] {
     let middle = k / 2;
-    let mut even = SumOfProducts::of(p[middle].scaled(Quad::splat(0.5)), p[middle]);
-    let mut odd = SumOfProducts::of(p[middle], p[middle + 1]);
+    let mut even = SumOfProducts::of(p[middle].load::<P>().scaled(P::from_f64(0.5)), p[middle].load::<P>());
+    let mut odd = SumOfProducts::of(p[middle].load::<P>(), p[middle + 1].load::<P>());
     for j in (0..middle).rev() {
-        even = even.and(p[j], p[k - j]);
-        odd = odd.and(p[j], p[k + 1 - j]);
+        even = even.and(p[j].load::<P>(), p[k - j].load::<P>());
+        odd = odd.and(p[j].load::<P>(), p[k + 1 - j].load::<P>());
     }
-    [even, odd].map(|sum| {
-        let sum = sum.total();
-        (sum.lane(0) + sum.lane(1)) + sum.lane(2)
-    })
+    [added_up(even.total().stored()), added_up(odd.total().stored())]
+}
+
+/// The first three lanes together.
+#[inline(always)]
+fn added_up(sum: Wide) -> DoubleDouble {
+    (sum.lane(0) + sum.lane(1)) + sum.lane(2)
 }
 
 /// The products of force and position of order `k` and `k` + 1, as far as they don't need the force's newest
 /// two coefficients.
 #[inline(always)]
-fn settled_products(g: &[DoubleDouble; TERMS], p: &[Wide; TERMS], k: usize) -> [SumOfProducts<Quad<f64>>; 2] {
-    let first = Wide::splat(g[0]);
+fn settled_products<P: Packed>(
+    g: &[DoubleDouble; TERMS],
+    p: &[Wide; TERMS],
+    k: usize,
+) -> [SumOfProducts<P>; 2] {
+    let first = DoubleDouble::splat(g[0]);
     if k == 0 {
-        return [SumOfProducts::none(), SumOfProducts::of(first, p[1])];
+        return [SumOfProducts::none(), SumOfProducts::of(first, p[1].load::<P>())];
     }
-    let mut even = SumOfProducts::of(first, p[k]);
-    let mut odd = SumOfProducts::of(first, p[k + 1]);
+    let mut even = SumOfProducts::of(first, p[k].load::<P>());
+    let mut odd = SumOfProducts::of(first, p[k + 1].load::<P>());
     for j in 1..k {
-        let g = Wide::splat(g[j]);
-        even = even.and(g, p[k - j]);
-        odd = odd.and(g, p[k + 1 - j]);
+        let g = DoubleDouble::splat(g[j]);
+        even = even.and(g, p[k - j].load::<P>());
+        odd = odd.and(g, p[k + 1 - j].load::<P>());
     }
     [even, odd]
 }
@@ -210,29 +226,32 @@ fn settled_products(g: &[DoubleDouble; TERMS], p: &[Wide; TERMS], k: usize) -> [
 /// Orders `k` and `k` + 1 of the forces from their lower orders and the half squares h: with w ∝ h^(−3/2),
 /// `w[k] = −1/(2k h[0]) Σ (2k + j) h[j] w[k−j]`, j = 1 … k.
 #[inline(always)]
-fn inverse_cubes(h: &Pairs, w: &Pairs, leading: &Leading, k: usize) -> [[DoubleDouble; 2]; 2] {
-    let (order, next) = (number(2 * k), number(2 * (k + 1)));
-    let scaled = |j: usize| {
-        let (even, odd) = (order + number(j), next + number(j + 1));
-        h.with_next(j).times(Quad([even, even, odd, odd]))
-    };
-    // Here 1/h[0] is −2 · inverse.
-    let inverse = leading.inverse;
+fn inverse_cubes<P: Packed>(h: &Pairs, w: &Pairs, leading: &Leading, k: usize) -> [[DoubleDouble; 2]; 2] {
+    // −1/2h[0], of the nearer and of the farther primary.
+    let [near, far] = leading.inverse;
+    let [newest_near, newest_far] = h.at(1);
     if k == 0 {
-        let newest = h.at(1);
         let first = w.at(0);
-        return [first, std::array::from_fn(|i| (newest[i].times(3.0) * first[i]) * inverse[i])];
+        let odd = [newest_near.times(3.0) * first[0] * near, newest_far.times(3.0) * first[1] * far];
+        return [first, odd];
     }
-    let mut sum = SumOfProducts::of(scaled(k), w.twice(0));
+    let mut sum = SumOfProducts::of(weighted::<P>(h, k, k), w.twice(0));
     for j in 1..k {
-        sum = sum.and(scaled(j), w.twice(k - j));
+        sum = sum.and(weighted::<P>(h, k, j), w.twice(k - j));
     }
-    let sum = sum.total();
-    let even: [_; 2] = std::array::from_fn(|i| sum.lane(i) * (inverse[i] * RECIPROCAL[k]));
-    let newest = h.at(1);
-    let odd = std::array::from_fn(|i| {
-        let all = newest[i].times(next + 1.0) * even[i] + sum.lane(2 + i);
-        all * (inverse[i] * RECIPROCAL[k + 1])
-    });
+    let sum = sum.total().stored();
+    let even = [sum.lane(0) * (near * RECIPROCAL[k]), sum.lane(1) * (far * RECIPROCAL[k])];
+    // The term of the odd order that waited for the even one.
+    let weight = number(2 * (k + 1) + 1);
+    let odd =
+        [newest_near.times(weight) * even[0] + sum.lane(2), newest_far.times(weight) * even[1] + sum.lane(3)];
+    let odd = [odd[0] * (near * RECIPROCAL[k + 1]), odd[1] * (far * RECIPROCAL[k + 1])];
     [even, odd]
+}
+
+/// The half squares of term j of order k and of term j + 1 of order k + 1, with their weights.
+#[inline(always)]
+fn weighted<P: Packed>(h: &Pairs, k: usize, j: usize) -> DoubleDouble<P> {
+    let (even, odd) = (number(2 * k + j), number(2 * (k + 1) + j + 1));
+    h.with_next::<P>(j).times(P::load(&Quad([even, even, odd, odd])))
 }

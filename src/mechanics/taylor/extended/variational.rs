@@ -2,7 +2,7 @@
 
 use super::recurrence::{TWICE_INTEGRATED, number};
 use super::{ORDER, Pairs, Series, TERMS, Wide};
-use crate::arithmetic::{DoubleDouble, Quad, SumOfProducts};
+use crate::arithmetic::{DoubleDouble, Packed, Quad, SumOfProducts};
 
 /// Six columns of the matrix and two lanes of nothing.
 type Row = [Wide; 2];
@@ -52,55 +52,56 @@ impl Default for Columns {
 
 /// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
 #[inline(always)]
-pub(super) fn expand(series: &Series, matrix: &[[DoubleDouble; 6]; 6], columns: &mut Columns) {
-    gradient(series, columns);
+pub(super) fn expand<P: Packed>(series: &Series, matrix: &[[DoubleDouble; 6]; 6], columns: &mut Columns) {
+    gradient::<P>(series, columns);
     let [x, y, z, vx, vy, vz] = matrix.map(row);
     let trial_step = Quad::splat(series.trial_step);
     columns.position[0] = [x, y, z];
     columns.position[1] = [vx, vy, vz].map(|row| row.map(|half| half.scaled(trial_step)));
     for k in 0..ORDER {
-        order(columns, k, series.trial_step);
+        order::<P>(columns, k, series.trial_step);
     }
 }
 
 #[inline(always)]
-fn gradient(s: &Series, c: &mut Columns) {
-    let inverse = s.half_square.at(0).map(|half_square| DoubleDouble::from(1.0) / half_square);
+fn gradient<P: Packed>(s: &Series, c: &mut Columns) {
+    let [near, far] = s.half_square.at(0);
+    let inverse = [DoubleDouble::from(1.0) / near, DoubleDouble::from(1.0) / far];
     for k in 0..ORDER {
         let place = s.position[k];
         c.shuffled[k] = Wide::of([place.lane(1), place.lane(2), place.lane(2), place.lane(0)]);
     }
     for k in 0..ORDER {
-        // 2h · q = 3 n, so h_0 q_k = 3/2 n_k − Σ h_j q_{k−j}; two terms of the sum at a time, the last one by itself.
-        let mut sum = SumOfProducts::none();
+        // 2h · q = 3 n, so h_0 q_k = 3/2 n_k − Σ h_j q_{k−j}.
+        let mut sum = SumOfProducts::<P>::none();
         for j in 1..=k {
             sum = sum.and(s.half_square.twice(j), c.steep.twice(k - j));
         }
-        let sum = sum.total();
+        let sum = sum.total().stored();
         let force = s.force.at(k);
-        c.steep.set(
-            k,
-            std::array::from_fn(|which| (force[which].times(1.5) - sum.lane(which)) * inverse[which]),
-        );
+        let steep = [
+            (force[0].times(1.5) - sum.lane(0)) * inverse[0],
+            (force[1].times(1.5) - sum.lane(1)) * inverse[1],
+        ];
+        c.steep.set(k, steep);
 
-        let steep = c.steep.at(k);
-        let mut lever = SumOfProducts::none();
+        let mut lever = SumOfProducts::<P>::none();
         for j in 0..=k {
             let [near, far] = c.steep.at(j);
-            lever = lever.and(Wide::splat(near + far), s.position[k - j]);
+            lever = lever.and(DoubleDouble::splat(near + far), s.position[k - j].load());
         }
         let zero = DoubleDouble::default();
-        c.lever[k] = lever.total() + Wide::of([steep[1].scaled(s.side), zero, zero, zero]);
+        c.lever[k] = lever.total().stored() + Wide::of([steep[1].scaled(s.side), zero, zero, zero]);
 
-        let mut along_x = SumOfProducts::none();
-        let mut others = SumOfProducts::none();
+        let mut along_x = SumOfProducts::<P>::none();
+        let mut others = SumOfProducts::<P>::none();
         for j in 0..=k {
             let lever = c.lever[j];
-            along_x = along_x.and(Wide::splat(lever.lane(0)), s.position[k - j]);
+            along_x = along_x.and(DoubleDouble::splat(lever.lane(0)), s.position[k - j].load());
             let factors = [lever.lane(1), lever.lane(1), lever.lane(2), c.steep.at(j)[1]];
-            others = others.and(Wide::of(factors), c.shuffled[k - j]);
+            others = others.and(Wide::of(factors).load(), c.shuffled[k - j].load());
         }
-        let (along_x, others) = (along_x.total(), others.total());
+        let (along_x, others) = (along_x.total().stored(), others.total().stored());
         let total = s.total[k];
         let diagonal = if k == 0 { DoubleDouble::from(1.0) - total } else { -total };
         let offset = others.lane(3).scaled(s.side) + steep[1];
@@ -117,21 +118,23 @@ fn gradient(s: &Series, c: &mut Columns) {
 
 /// From the columns' coefficients up to k + 1, those of order k + 2.
 #[inline(always)]
-fn order(c: &mut Columns, k: usize, trial_step: f64) {
+fn order<P: Packed>(c: &mut Columns, k: usize, trial_step: f64) {
     let (before, after) = c.position.split_at_mut(k + 2);
     let (rates, next) = (&before[k + 1], &mut after[0]);
     let integrated = Wide::splat(TWICE_INTEGRATED[k].scaled(trial_step * trial_step));
     let turn = Quad::splat(2.0 * number(k + 1) / trial_step);
     for half in 0..2 {
-        let mut sums = [SumOfProducts::none(); 3];
+        let mut sums = [SumOfProducts::<P>::none(); 3];
         for j in 0..=k {
-            let [xx, xy, xz, yy, yz, zz] = c.gradient[j].map(Wide::splat);
-            let [x, y, z] = before[k - j].map(|row| row[half]);
-            sums[0] = sums[0].and(xx, x).and(xy, y).and(xz, z);
-            sums[1] = sums[1].and(xy, x).and(yy, y).and(yz, z);
-            sums[2] = sums[2].and(xz, x).and(yz, y).and(zz, z);
+            let [xx, xy, xz, yy, yz, zz] = &c.gradient[j];
+            let (xy, xz, yz) = (DoubleDouble::splat(*xy), DoubleDouble::splat(*xz), DoubleDouble::splat(*yz));
+            let [x, y, z] = &before[k - j];
+            let (x, y, z) = (x[half].load(), y[half].load(), z[half].load());
+            sums[0] = sums[0].and(DoubleDouble::splat(*xx), x).and(xy, y).and(xz, z);
+            sums[1] = sums[1].and(xy, x).and(DoubleDouble::splat(*yy), y).and(yz, z);
+            sums[2] = sums[2].and(xz, x).and(yz, y).and(DoubleDouble::splat(*zz), z);
         }
-        let [x, y, z] = sums.map(SumOfProducts::total);
+        let [x, y, z] = [sums[0].total().stored(), sums[1].total().stored(), sums[2].total().stored()];
         next[0][half] = (x + rates[1][half].times(turn)) * integrated;
         next[1][half] = (y - rates[0][half].times(turn)) * integrated;
         next[2][half] = z * integrated;

@@ -87,8 +87,8 @@ request! {
         optional manoeuvres: Vec<ManoeuvreSpec>,
         /// Whether the surfaces of primaries with a known radius end a trajectory; `stop` if absent.
         optional contact: ContactSpec,
-        /// What the trajectories are computed in; `double` if absent. With `double_double` each state counts as 32 of
-        /// the states, and each step as 32 of the steps that are granted: it takes as long.
+        /// What the trajectories are computed in; `double` if absent. With `double_double` each state counts as 25 of
+        /// the states, and each step as 25 of the steps that are granted: it takes as long.
         optional arithmetic: ArithmeticSpec,
         /// Whether each trajectory is computed again in double-double from the same bits and manoeuvres to the same time,
         /// to measure its true error; not if absent. States and the steps of the audit count as with `double_double`.
