@@ -3,7 +3,7 @@
 use std::sync::atomic::{Ordering, compiler_fence};
 
 use super::opening::{Leading, Opening};
-use super::tables::{CORIOLIS, REST_MATTERS, TWICE_INTEGRATED, WEIGHT};
+use super::tables::{CORIOLIS, REST_MATTERS, TWICE_INTEGRATED, WEIGHTS};
 use super::{ORDER, Primaries, Series, TERMS, step};
 use crate::arithmetic::{Lanes, Quad, Real};
 
@@ -86,10 +86,11 @@ pub(super) fn expand<L: Lanes>(
     series.side = side.to_array();
     series.jacobi = jacobi.to_array();
     stage();
-    macro_rules! pairs {
-        ($($k:literal)*) => {$(pair::<L, $k>(&leading, side, series);)*};
+    pair::<L, 2>(&leading, side, series, 2);
+    pair::<L, 4>(&leading, side, series, 4);
+    for k in (6..ORDER).step_by(2) {
+        pair::<L, 6>(&leading, side, series, k);
     }
-    pairs!(2 4 6 8 10 12 14 16 18 20);
     let size = |k: usize| {
         let [d, y, z] = [0, 1, 2].map(|i| L::from_array(&series.position[k][i]).abs());
         d.max(y).max(z)
@@ -101,17 +102,23 @@ pub(super) fn expand<L: Lanes>(
 
 /// From the position's coefficients up to `K` + 1, those of order `K` + 2 and `K` + 3.
 #[inline(always)]
-fn pair<L: Lanes, const K: usize>(leading: &Leading<L>, side: L, s: &mut LaneSeries<L::Array>) {
+fn pair<L: Lanes, const FORM: usize>(leading: &Leading<L>, side: L, s: &mut LaneSeries<L::Array>, k: usize) {
+    let K = if FORM == 6 { k } else { FORM };
+    assert!(K >= FORM && K < ORDER);
     let zero = L::from_f64(0.0);
     let p = |s: &LaneSeries<L::Array>, k: usize, i: usize| L::from_array(&s.position[k][i]);
     let middle = K / 2;
     let mut even = [0, 1, 2].map(|i| (p(s, middle, i) * p(s, middle, i)) * L::from_f64(0.5));
     let mut odd = [0, 1, 2].map(|i| p(s, middle, i).mul_add(p(s, middle + 1, i), zero));
-    for j in (0..middle).rev() {
+    // Each coefficient is loaded once and serves two orders.
+    let mut newer = read(&s.position[middle + 1]);
+    for (a, b) in s.position[..middle].iter().rev().zip(&s.position[middle + 2..K + 2]) {
+        let (a, b): ([L; 3], [L; 3]) = (read(a), read(b));
         for i in 0..3 {
-            even[i] = p(s, j, i).mul_add(p(s, K - j, i), even[i]);
-            odd[i] = p(s, j, i).mul_add(p(s, K + 1 - j, i), odd[i]);
+            even[i] = a[i].mul_add(newer[i], even[i]);
+            odd[i] = a[i].mul_add(b[i], odd[i]);
         }
+        newer = b;
     }
     let (near_even, near_odd) = ((even[0] + even[1]) + even[2], (odd[0] + odd[1]) + odd[2]);
     let far_even = side.mul_add(p(s, K, 0), near_even);
@@ -131,8 +138,41 @@ fn pair<L: Lanes, const K: usize>(leading: &Leading<L>, side: L, s: &mut LaneSer
             }
         }};
     }
-    for j in 4..K.max(2) - 2 {
-        pull!(j);
+    let h = |k: usize, i: usize| L::from_array(&s.half_square[k][i]);
+    let w = |k: usize, i: usize| L::from_array(&s.force[k][i]);
+    let (mut sum_even, mut sum_odd) = ([None; 2], [None; 2]);
+    macro_rules! settle {
+        ($j:expr) => {{
+            let j = $j;
+            for i in 0..2 {
+                sum_even[i] = plus(sum_even[i], L::from_f64(WEIGHTS[K][j]) * h(j, i), w(K - j, i));
+                sum_odd[i] = plus(sum_odd[i], L::from_f64(WEIGHTS[K + 1][j + 1]) * h(j + 1, i), w(K - j, i));
+            }
+        }};
+    }
+    if K > 6 {
+        pull!(4);
+        settle!(3);
+        let pulls = s.total[5..K - 2].iter().zip(s.position[3..K - 4].iter().rev());
+        let weights = WEIGHTS[K][4..K - 3].iter().zip(&WEIGHTS[K + 1][5..K - 2]);
+        let settles = s.half_square[5..K - 2].iter().zip(s.force[4..K - 3].iter().rev());
+        let mut newer: [L; 3] = read(&s.position[K - 4]);
+        let mut older: [L; 2] = read(&s.half_square[4]);
+        for (((total, p), (even, odd)), (h, w)) in pulls.zip(weights).zip(settles) {
+            let (total, p) = (L::from_array(total), read(p));
+            for i in 0..3 {
+                pull_even[i] = plus(pull_even[i], total, p[i]);
+                pull_odd[i] = plus(pull_odd[i], total, newer[i]);
+            }
+            newer = p;
+            let (even, odd): (L, L) = (L::from_f64(*even), L::from_f64(*odd));
+            let (h, w): ([L; 2], [L; 2]) = (read(h), read(w));
+            for i in 0..2 {
+                sum_even[i] = plus(sum_even[i], even * older[i], w[i]);
+                sum_odd[i] = plus(sum_odd[i], odd * h[i], w[i]);
+            }
+            older = h;
+        }
     }
     if K > 4 {
         pull!(3);
@@ -146,22 +186,6 @@ fn pair<L: Lanes, const K: usize>(leading: &Leading<L>, side: L, s: &mut LaneSer
     let mut pull_even = [0, 1, 2].map(|i| leading.pull[i].mul_add(p(s, K, i), sum(pull_even[i])));
     let mut pull_odd = [0, 1, 2].map(|i| leading.pull[i].mul_add(p(s, K + 1, i), sum(pull_odd[i])));
 
-    stage();
-    let h = |k: usize, i: usize| L::from_array(&s.half_square[k][i]);
-    let w = |k: usize, i: usize| L::from_array(&s.force[k][i]);
-    let (mut sum_even, mut sum_odd) = ([None; 2], [None; 2]);
-    macro_rules! settle {
-        ($j:expr) => {{
-            let j = $j;
-            for i in 0..2 {
-                sum_even[i] = plus(sum_even[i], L::from_f64(WEIGHT[K][j]) * h(j, i), w(K - j, i));
-                sum_odd[i] = plus(sum_odd[i], L::from_f64(WEIGHT[K + 1][j + 1]) * h(j + 1, i), w(K - j, i));
-            }
-        }};
-    }
-    for j in 3..K.max(3) - 3 {
-        settle!(j);
-    }
     if K > 4 {
         settle!(K - 3);
         settle!(K - 2);
@@ -174,7 +198,7 @@ fn pair<L: Lanes, const K: usize>(leading: &Leading<L>, side: L, s: &mut LaneSer
     }
     let settled = |sums: [Option<L>; 2], i: usize| sums[i].map_or(zero, |sum| sum * leading.inverse[i]);
     let mut force_even = [0, 1].map(|i| {
-        let tilt = L::from_f64(WEIGHT[K][K - 1]) * leading.tilt[i];
+        let tilt = L::from_f64(WEIGHTS[K][K - 1]) * leading.tilt[i];
         tilt.mul_add(h(K - 1, i), settled(sum_even, i))
     });
     force_even[1] = leading.far_slope.mul_add(p(s, K, 0), force_even[1]);
@@ -182,8 +206,8 @@ fn pair<L: Lanes, const K: usize>(leading: &Leading<L>, side: L, s: &mut LaneSer
     let mut force_odd = [0, 1].map(|i| settled(sum_odd, i));
     force_odd[1] = leading.far_slope.mul_add(p(s, K + 1, 0), force_odd[1]);
     let force_odd = [0, 1].map(|i| {
-        let bend = L::from_f64(WEIGHT[K + 1][1]) * leading.bend[i];
-        let tilt = L::from_f64(WEIGHT[K + 1][K]) * leading.tilt[i];
+        let bend = L::from_f64(WEIGHTS[K + 1][1]) * leading.bend[i];
+        let tilt = L::from_f64(WEIGHTS[K + 1][K]) * leading.tilt[i];
         let settled = tilt.mul_add([near_even, far_even][i], bend.mul_add(force_even[i], force_odd[i]));
         near_odd.mul_add(leading.slope[i], settled)
     });
@@ -216,6 +240,11 @@ fn pair<L: Lanes, const K: usize>(leading: &Leading<L>, side: L, s: &mut LaneSer
     pull_odd[1] = even[0].mul_add(turn, pull_odd[1]);
     s.position[K + 3] = pull_odd.map(|pull| twice_integrated(K + 1, pull).to_array());
     stage();
+}
+
+#[inline(always)]
+fn read<L: Lanes, const N: usize>(from: &[L::Array; N]) -> [L; N] {
+    std::array::from_fn(|i| L::from_array(&from[i]))
 }
 
 /// The sum with one more product; none is one that has not begun.

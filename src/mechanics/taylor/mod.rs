@@ -117,7 +117,7 @@ fn horner<R: Real>(time: R, coefficient: impl Fn(usize) -> R) -> [R; 2] {
 fn alternate<R: Real>(square: R, last: usize, coefficient: impl Fn(usize) -> R) -> [R; 2] {
     let mut slope = coefficient(last);
     let mut value = slope.mul_add(square, coefficient(last - 2));
-    for k in (2..last - 2).rev().filter(|k| k % 2 == last % 2) {
+    for k in (2 + last % 2..=last - 4).rev().step_by(2) {
         slope = slope.mul_add(square, value);
         value = value.mul_add(square, coefficient(k));
     }

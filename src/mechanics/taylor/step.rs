@@ -24,14 +24,15 @@ pub(super) fn log2_radius<R: Real>(sizes: [R; 2], speed: R, half_square: R) -> R
     // A body at rest in the rotating axes still moves with them, at this distance times the mean motion.
     let distance = (half_square + half_square).sqrt();
     let log2_scale = speed.max(distance).log2_coarse();
-    let estimate = |which: usize| {
-        let k = ESTIMATED_FROM[which];
-        #[expect(clippy::cast_precision_loss, reason = "orders are small")]
-        let (factor, power) = (R::from_f64((k + 1) as f64), R::from_f64(1.0 / k as f64));
-        let coefficient = (sizes[which] * factor).max(R::from_f64(SMALLEST_COEFFICIENT));
-        (log2_scale - coefficient.log2_coarse()) * power
-    };
-    estimate(0).min(estimate(1))
+    estimate(ESTIMATED_FROM[0], sizes[0], log2_scale).min(estimate(ESTIMATED_FROM[1], sizes[1], log2_scale))
+}
+
+#[inline(always)]
+fn estimate<R: Real>(k: usize, size: R, log2_scale: R) -> R {
+    #[expect(clippy::cast_precision_loss, reason = "orders are small")]
+    let (factor, power) = (R::from_f64((k + 1) as f64), R::from_f64(1.0 / k as f64));
+    let coefficient = (size * factor).max(R::from_f64(SMALLEST_COEFFICIENT));
+    (log2_scale - coefficient.log2_coarse()) * power
 }
 
 /// The share of the tolerance left to truncation, which always errs to the same side: at the default tolerance it

@@ -21,6 +21,9 @@ pub(super) const WEIGHT: [PerOrder; TERMS + 1] = {
     weights
 };
 
+/// The same in memory.
+pub(super) static WEIGHTS: [PerOrder; TERMS + 1] = WEIGHT;
+
 /// The weights of term j of order k and of term j + 1 of order k + 1, each for two primaries.
 pub(super) static WEIGHT_PAIRS: [[Quad<f64>; TERMS]; TERMS] = {
     let mut pairs = [[Quad([0.0; 4]); TERMS]; TERMS];

@@ -26,17 +26,19 @@ impl<L: Lanes> Layout for InLanes<L> {
 
     #[inline(always)]
     fn gradient(&self, from: &[L::Array; 6]) -> [L; 6] {
-        [0, 1, 2, 3, 4, 5].map(|i| L::from_array(&from[i]))
+        std::array::from_fn(|i| L::from_array(&from[i]))
     }
 
     #[inline(always)]
     fn read(&self, from: &[L::Array; 3]) -> [L; 3] {
-        [0, 1, 2].map(|i| L::from_array(&from[i]))
+        std::array::from_fn(|i| L::from_array(&from[i]))
     }
 
     #[inline(always)]
     fn write(&self, coefficient: [L; 3], to: &mut [L::Array; 3]) {
-        *to = coefficient.map(L::to_array);
+        for i in 0..3 {
+            to[i] = coefficient[i].to_array();
+        }
     }
 }
 

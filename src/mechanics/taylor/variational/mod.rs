@@ -72,7 +72,7 @@ trait Layout {
 }
 
 /// 1/((k + 1)(k + 2)) and 2/(k + 2): from the series of the forces on a column, and from its rate, to its own.
-const INTEGRATED: [[f64; 2]; TERMS] = {
+static INTEGRATED: [[f64; 2]; TERMS] = {
     let mut factors = [[0.0; 2]; TERMS];
     let mut k = 0;
     while k < TERMS {
@@ -87,25 +87,42 @@ const INTEGRATED: [[f64; 2]; TERMS] = {
 /// Expands a column whose coefficients 0 and 1 are known.
 #[inline(always)]
 fn expand_column<T: Layout>(layout: &T, gradient: &[T::Gradient; TERMS], column: &mut [T::Column; TERMS]) {
+    // The newest coefficients stay in registers.
+    let (mut newest, mut next) = (layout.read(&column[0]), layout.read(&column[1]));
+    let (first, second) = (layout.gradient(&gradient[0]), layout.gradient(&gradient[1]));
     for k in (0..ORDER).step_by(2) {
         let (mut even, mut odd) = (Sums::new(), Sums::new());
-        odd.add(layout.gradient(&gradient[k + 1]), layout.read(&column[0]));
-        for (gradient, columns) in gradient[..=k].iter().rev().zip(column[..k + 2].windows(2)) {
-            let gradient = layout.gradient(gradient);
-            even.add(gradient, layout.read(&columns[0]));
-            odd.add(gradient, layout.read(&columns[1]));
+        let mut older = layout.read(&column[0]);
+        odd.add(layout.gradient(&gradient[k + 1]), older);
+        if k > 0 {
+            for (gradient, column) in gradient[2..=k].iter().rev().zip(&column[1..k]) {
+                let (gradient, newer) = (layout.gradient(gradient), layout.read(column));
+                even.add(gradient, older);
+                odd.add(gradient, newer);
+                older = newer;
+            }
+            even.add(second, older);
+            odd.add(second, newest);
         }
-        let next = integrated(k, even.total(), layout.read(&column[k + 1]));
-        layout.write(next, &mut column[k + 2]);
-        layout.write(integrated(k + 1, odd.total(), next), &mut column[k + 3]);
+        even.add(first, newest);
+        odd.add(first, next);
+        newest = integrated(k, even, next);
+        next = integrated(k + 1, odd, newest);
+        layout.write(newest, &mut column[k + 2]);
+        layout.write(next, &mut column[k + 3]);
     }
 }
 
 /// Coefficient k + 2 of a column from coefficient k of the forces and k + 1 of the column.
 #[inline(always)]
-fn integrated<R: Real>(k: usize, [x, y, z]: [R; 3], [rate_x, rate_y, _]: [R; 3]) -> [R; 3] {
-    let [factor, turn] = INTEGRATED[k].map(R::from_f64);
-    [rate_y.mul_add(turn, x * factor), rate_x.neg_mul_add(turn, y * factor), z * factor]
+fn integrated<R: Real>(k: usize, forces: Sums<R>, [rate_x, rate_y, _]: [R; 3]) -> [R; 3] {
+    let Sums { in_plane: [x, y, z], vertical: [by_x, by_y, by_z] } = forces;
+    let (factor, turn) = (R::from_f64(INTEGRATED[k][0]), R::from_f64(INTEGRATED[k][1]));
+    [
+        rate_y.mul_add(turn, (x + by_x) * factor),
+        rate_x.neg_mul_add(turn, (y + by_y) * factor),
+        (z + by_z) * factor,
+    ]
 }
 
 /// Sums of the products of the gradient with a column: two an axis, so that neither waits for itself.
@@ -123,14 +140,11 @@ impl<R: Real> Sums<R> {
 
     #[inline(always)]
     fn add(&mut self, [xx, xy, xz, yy, yz, zz]: [R; 6], [x, y, z]: [R; 3]) {
-        for (axis, [by_x, by_y, by_z]) in [[xx, xy, xz], [xy, yy, yz], [xz, yz, zz]].into_iter().enumerate() {
-            self.in_plane[axis] = by_y.mul_add(y, by_x.mul_add(x, self.in_plane[axis]));
-            self.vertical[axis] = by_z.mul_add(z, self.vertical[axis]);
-        }
-    }
-
-    #[inline(always)]
-    fn total(&self) -> [R; 3] {
-        [0, 1, 2].map(|axis| self.in_plane[axis] + self.vertical[axis])
+        self.in_plane[0] = xy.mul_add(y, xx.mul_add(x, self.in_plane[0]));
+        self.in_plane[1] = yy.mul_add(y, xy.mul_add(x, self.in_plane[1]));
+        self.in_plane[2] = yz.mul_add(y, xz.mul_add(x, self.in_plane[2]));
+        self.vertical[0] = xz.mul_add(z, self.vertical[0]);
+        self.vertical[1] = yz.mul_add(z, self.vertical[1]);
+        self.vertical[2] = zz.mul_add(z, self.vertical[2]);
     }
 }

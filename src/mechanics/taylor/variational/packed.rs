@@ -64,12 +64,12 @@ impl<L: Lanes> Layout for SideBySide<L> {
 
     #[inline(always)]
     fn gradient(&self, from: &[f64; 6]) -> [L; 6] {
-        [0, 1, 2, 3, 4, 5].map(|i| L::from_f64(from[i]))
+        std::array::from_fn(|i| L::from_f64(from[i]))
     }
 
     #[inline(always)]
     fn read(&self, from: &[Row; 3]) -> [L; 3] {
-        [0, 1, 2].map(|i| L::read(&from[i][self.at..]))
+        std::array::from_fn(|i| L::read(&from[i][self.at..]))
     }
 
     #[inline(always)]
