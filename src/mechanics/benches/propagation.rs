@@ -13,7 +13,7 @@ use cases::{HALO, HALO_PERIOD, MU, REGULAR, REGULAR_PERIOD, case, parts};
 use criterion::{Criterion, criterion_group, criterion_main};
 use mechanics::interrupt::Never;
 use mechanics::propagation::event::{Direction, Event, Plane, When};
-use mechanics::propagation::{Request, RequestParts, Sampling, Trajectory, solve};
+use mechanics::propagation::{Arithmetic, Request, RequestParts, Sampling, Trajectory, solve};
 use truth::{ensemble_error, matrix_error, position_error};
 
 /// Solves the request again and again, and checks each answer.
@@ -36,6 +36,16 @@ fn one_trajectory(criterion: &mut Criterion) {
     for (name, bound) in [("halo_period", 5e-14), ("nrho_30", 1e-7), ("arenstorf", 1e-12)] {
         bench_case(criterion, name, |all| position_error(name, &all[0].last) <= bound);
     }
+
+    let halo = || parts(MU, HALO, HALO_PERIOD);
+    let fine = RequestParts { arithmetic: Arithmetic::DoubleDouble, ..halo() };
+    bench(criterion, "halo_period_in_double_double", fine, |all| {
+        position_error("halo_period", &all[0].last) <= 3e-16
+    });
+    let audited = RequestParts { audit: true, ..halo() };
+    bench(criterion, "halo_period_audited", audited, |all| {
+        all[0].evidence.audit.is_some_and(|audit| audit.position_error <= Some(5e-14))
+    });
 
     let crossing = Event {
         when: When::Plane(Plane::across(1, 0.0)),

@@ -4,7 +4,7 @@ use std::num::NonZeroU64;
 
 use mechanics::arithmetic::DoubleDouble;
 use mechanics::frame::{Axes, Frame, Origin, XAxis};
-use mechanics::interrupt::{AfterPolls, Stop};
+use mechanics::interrupt::{AfterPolls, Never, Stop};
 use mechanics::propagation::event::{Direction, Event, Plane, When};
 use mechanics::propagation::{
     Arithmetic, Audit, BurnAxes, Failure, Invalid, Manoeuvre, Outcome, Request, RequestParts, Trajectory,
@@ -57,6 +57,19 @@ fn the_error_is_the_difference_from_many_digits() {
         assert_measured(&trajectory, &truth(case, "final"), 1e-9);
         // The audit changes nothing of what it measures.
         assert_eq!(trajectory.last, run(parts(mu, state, duration)).last);
+    }
+}
+
+#[test]
+fn many_at_once_as_alone() {
+    let mut many = parts(MU, HALO, 2.0);
+    many.states = (0..21).map(|i| State::new(0.0, HALO.map(|c| c * (1.0 + 0.001 * f64::from(i))))).collect();
+    many.audit = true;
+    let together = solve(&Request::new(many.clone()).expect("valid"), &Never).expect("not cancelled");
+    for (trajectory, state) in together.iter().zip(&many.states) {
+        let alone = run(RequestParts { states: vec![*state], ..many.clone() });
+        assert_eq!(audit(trajectory), audit(&alone));
+        assert_eq!(audit(trajectory).outcome, Outcome::Complete);
     }
 }
 

@@ -3,7 +3,7 @@
 use std::num::NonZeroU64;
 
 use mechanics::arithmetic::DoubleDouble;
-use mechanics::interrupt::{AfterPolls, Stop};
+use mechanics::interrupt::{AfterPolls, Never, Stop};
 use mechanics::propagation::event::{Direction, Event, Plane, When};
 use mechanics::propagation::{
     Arithmetic, BurnAxes, Contact, Failure, Manoeuvre, MatrixOutput, Outcome, Request, RequestParts,
@@ -11,6 +11,7 @@ use mechanics::propagation::{
 };
 use mechanics::quantity::{Distance, Quantity};
 use mechanics::state::State;
+use mechanics::taylor::Path;
 use nalgebra::Vector3;
 use proptest::prelude::*;
 
@@ -182,6 +183,22 @@ fn manoeuvres() {
     let double = run(RequestParts { arithmetic: Arithmetic::Double, ..request }).matrix.expect("asked for");
     let matrix = trajectory.matrix.expect("asked for");
     assert!((matrix - double).amax() < 1e-11 * matrix.amax());
+}
+
+#[test]
+fn the_same_bits_on_every_path_and_among_others() {
+    let mut request = precise(MU, HALO, 1.0);
+    request.states = vec![request.states[0], State::new(0.0, RECTILINEAR), request.states[0]];
+    request.events = vec![crossing(None)];
+    request.matrix = MatrixOutput::Final;
+    request.sampling = Sampling::Count(5);
+    let request = Request::new(request).expect("valid");
+    let on = |path| solve(&request.clone().on(path), &Never).expect("not cancelled");
+    let plain = on(Path::PORTABLE);
+    for path in Path::available() {
+        assert_eq!(on(path), plain, "{}", path.name());
+    }
+    assert_eq!(Trajectory { index: 0, ..plain[2].clone() }, plain[0]);
 }
 
 #[test]
