@@ -2,12 +2,13 @@
 
 use nalgebra::Vector3;
 
-use super::{Audit, Failure, Outcome, Request};
+use super::extended::{Arithmetic, EXTENDED_WEIGHT};
+use super::{Audit, Contact, Failure, Invalid, Outcome, Request};
 use crate::arithmetic::{DoubleDouble, sum::Compensated};
 use crate::frame::Axes;
 use crate::interrupt::{Interrupt, Stop};
 use crate::taylor::extended::Motion;
-use crate::taylor::{Halt, Place, Stride};
+use crate::taylor::{Halt, MAX_STEP, Place, Stride};
 
 /// Steps between two polls: a tenth of a millisecond.
 pub(super) const STEPS_PER_POLL: u64 = 16;
@@ -75,6 +76,35 @@ impl Audit {
             position_error: Some(position.norm()),
             velocity_error: Some(velocity.norm()),
         }
+    }
+}
+
+impl Request {
+    /// An audit is refused that cannot be done within the steps granted, as far as that is known: no step is longer than
+    /// [`MAX_STEP`], and nothing may end a trajectory early.
+    pub(super) fn audit_problem(&self, spanned: bool) -> Option<Invalid> {
+        let parts = self.parts();
+        if !parts.audit {
+            return None;
+        }
+        if parts.arithmetic == Arithmetic::DoubleDouble {
+            return Some(Invalid::AuditOfDoubleDouble);
+        }
+        let may_end_early = parts.contact != Contact::default()
+            || parts.events.iter().any(|event| event.stop_after.is_some());
+        if !spanned || may_end_early {
+            return None;
+        }
+        let limit = parts.limits.steps;
+        #[expect(
+            clippy::cast_possible_truncation,
+            clippy::cast_sign_loss,
+            reason = "not negative, and a number too large saturates and is refused"
+        )]
+        let steps = |t: usize| (self.duration(t).abs() / MAX_STEP).ceil() as u64;
+        let asked = |t: usize| steps(t).saturating_mul(EXTENDED_WEIGHT).saturating_add(steps(t));
+        let trajectory = (0..self.count()).find(|t| asked(*t) > limit)?;
+        Some(Invalid::AuditSteps { trajectory, asked: asked(trajectory), limit })
     }
 }
 

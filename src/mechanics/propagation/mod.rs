@@ -26,11 +26,10 @@ use thiserror::Error;
 use crate::interrupt::Interrupt;
 use crate::state::State;
 
+pub use extended::{Arithmetic, EXTENDED_WEIGHT};
 pub use invalid::Invalid;
 pub use manoeuvre::{BurnAxes, Manoeuvre};
-pub use request::{
-    Arithmetic, Contact, Durations, EXTENDED_WEIGHT, Limits, MatrixOutput, Request, RequestParts, Sampling,
-};
+pub use request::{Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling};
 
 /// Why a trajectory ended.
 #[derive(Clone, Copy, Debug, Eq, PartialEq)]

@@ -1,6 +1,7 @@
 //! What is asked for, checked as a whole.
 
 use super::event::Event;
+use super::extended::Arithmetic;
 use super::invalid::Invalid;
 use super::manoeuvre::{BurnAxes, Manoeuvre};
 use crate::arithmetic::sum::Compensated;
@@ -9,7 +10,7 @@ use crate::quantity::{Distance, Duration, MassParameter, Quantity, Tolerance};
 use crate::state::State;
 use crate::system::Primary;
 use crate::taylor::extended::EXTENDED_TOLERANCE;
-use crate::taylor::{MAX_STEP, Path, Primaries, StepSize};
+use crate::taylor::{Path, Primaries, StepSize};
 
 /// Numbers of a sample: time, position and velocity.
 const STATE_VALUES: u64 = 7;
@@ -48,20 +49,6 @@ pub enum MatrixOutput {
     /// That of the final state and of each sample.
     Samples,
 }
-
-/// The arithmetic that trajectories are computed in.
-#[derive(Clone, Copy, Debug, Default, Eq, PartialEq)]
-pub enum Arithmetic {
-    /// Double precision.
-    #[default]
-    Double,
-    /// About 31 digits; the answer is rounded. The tolerance is then [`EXTENDED_TOLERANCE`].
-    DoubleDouble,
-}
-
-/// What a step in double-double arithmetic counts among the steps granted: it takes as long as so many in double
-/// precision (measured: 20 to 26).
-pub const EXTENDED_WEIGHT: u64 = 25;
 
 /// The durations of the trajectories.
 #[derive(Clone, Debug, PartialEq)]
@@ -154,7 +141,7 @@ impl Request {
         request.check_states(&mut problems);
         request.check_sampling(spanned, &mut problems);
         request.check_manoeuvres(&mut problems);
-        request.check_audit(spanned, &mut problems);
+        problems.extend(request.audit_problem(spanned));
         for list in request.parts.manoeuvres.iter_mut().filter_map(|m| m.trajectories.as_mut()) {
             list.sort_unstable();
         }
@@ -214,11 +201,6 @@ impl Request {
             Arithmetic::Double => self.parts.tolerance.get(),
             Arithmetic::DoubleDouble => EXTENDED_TOLERANCE,
         }
-    }
-
-    /// The steps in double-double arithmetic that are granted after so many in double precision.
-    pub(super) fn extended_steps(&self, taken: u64) -> u64 {
-        self.parts.limits.steps.saturating_sub(taken) / EXTENDED_WEIGHT
     }
 
     /// The signed duration of a trajectory.
@@ -393,36 +375,6 @@ impl Request {
             {
                 problems.push(Invalid::ManoeuvreBackwards { index, trajectory });
             }
-        }
-    }
-
-    /// An audit is refused that cannot be done within the steps granted, as far as that is known: no step is longer than
-    /// [`MAX_STEP`], and nothing may end a trajectory early.
-    fn check_audit(&self, spanned: bool, problems: &mut Vec<Invalid>) {
-        let parts = &self.parts;
-        if !parts.audit {
-            return;
-        }
-        if parts.arithmetic == Arithmetic::DoubleDouble {
-            problems.push(Invalid::AuditOfDoubleDouble);
-            return;
-        }
-        if !spanned
-            || parts.contact != Contact::default()
-            || parts.events.iter().any(|event| event.stop_after.is_some())
-        {
-            return;
-        }
-        let limit = parts.limits.steps;
-        #[expect(
-            clippy::cast_possible_truncation,
-            clippy::cast_sign_loss,
-            reason = "not negative, and a number too large saturates and is refused"
-        )]
-        let steps = |t: usize| (self.duration(t).abs() / MAX_STEP).ceil() as u64;
-        let asked = |t: usize| steps(t).saturating_mul(EXTENDED_WEIGHT).saturating_add(steps(t));
-        if let Some(trajectory) = (0..self.count()).find(|t| asked(*t) > limit) {
-            problems.push(Invalid::AuditSteps { trajectory, asked: asked(trajectory), limit });
         }
     }
 

@@ -11,7 +11,7 @@ use super::audit::End;
 use super::event::When;
 use super::extended::ExtendedTransition;
 use super::matrix::{Legs, Transition};
-use super::request::{Arithmetic, Contact, Request, Sampling};
+use super::request::{Contact, Request, Sampling};
 use super::watch::{Hit, Stretch, Watch};
 use super::{Audit, Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Sink, Trajectory};
 use crate::arithmetic::DoubleDouble;
@@ -330,7 +330,7 @@ impl<'a> Course<'a> {
         let undefined = Failure::UndefinedAxes { manoeuvre: index, trajectory: self.index };
         let before = self.seen(manoeuvre.time);
         let (change, jump) = manoeuvre.impulse(parts.frame, &before).ok_or(undefined)?;
-        if parts.arithmetic == Arithmetic::DoubleDouble {
+        if self.request.is_extended() {
             let state = self.motion.state.map(DoubleDouble::from);
             let origin = self.request.origin_x().into();
             let change = manoeuvre.precise_impulse(parts.frame, origin, &state).ok_or(undefined)?;

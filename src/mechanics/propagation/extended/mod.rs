@@ -18,6 +18,27 @@ use crate::taylor::{Halt, Path, Series, Stride};
 
 pub(super) use matrix::ExtendedTransition;
 
+/// The arithmetic that trajectories are computed in.
+#[derive(Clone, Copy, Debug, Default, Eq, PartialEq)]
+pub enum Arithmetic {
+    /// Double precision.
+    #[default]
+    Double,
+    /// About 31 digits; the answer is rounded. The tolerance is then [`EXTENDED_TOLERANCE`](crate::taylor::extended::EXTENDED_TOLERANCE).
+    DoubleDouble,
+}
+
+/// What a step in double-double arithmetic counts among the steps granted: it takes as long as so many in double
+/// precision (measured: 20 to 26).
+pub const EXTENDED_WEIGHT: u64 = 25;
+
+impl Request {
+    /// The steps in double-double arithmetic that are granted after so many in double precision.
+    pub(super) fn extended_steps(&self, taken: u64) -> u64 {
+        self.limits().steps.saturating_sub(taken) / EXTENDED_WEIGHT
+    }
+}
+
 pub(super) fn propagate(
     request: &Request,
     range: Range<usize>,

@@ -11,15 +11,18 @@ const ESTIMATED_FROM: [usize; 2] = [ORDER - 1, ORDER];
 /// Keeps the logarithm finite where a coefficient vanishes.
 const SMALLEST_COEFFICIENT: f64 = 1e-300;
 
-/// Relative local error per step. Down to 2^-98 the error of the result grows with it, below 2^-102 it is the
-/// round-off's.
-pub const EXTENDED_TOLERANCE: f64 = f64::from_bits((BIAS - 102) << FRACTION_BITS);
-const LOG2_TOLERANCE: f64 = -102.0;
-
+/// A double's exponent bias, and the bits of its fraction.
 const BIAS: u64 = 1023;
 const FRACTION_BITS: u32 = 52;
 
-/// The shortest trial step: far below every step.
+/// Base-2 logarithm of 1 over the relative local error per step. Up to 98 the error of the result follows it; beyond
+/// 102 there is only round-off.
+const TOLERANCE_BITS: u32 = 102;
+
+/// Relative local error per step.
+pub const EXTENDED_TOLERANCE: f64 = f64::from_bits((BIAS - TOLERANCE_BITS as u64) << FRACTION_BITS);
+
+/// The shortest trial step, 2^-100: far below every step.
 const SHORTEST_TRIAL: f64 = f64::from_bits((BIAS - 100) << FRACTION_BITS);
 
 /// A power of two near the radius of convergence, from the distance to the nearer primary, the speed and the square
@@ -53,7 +56,7 @@ pub(super) fn log2_radius(s: &Series) -> f64 {
 /// The step, at most [`MAX_STEP`], for a radius of convergence.
 pub(super) fn from_log2_radius(log2_radius: f64) -> f64 {
     // 2^±100 is far outside what is ever used, and inside what the coarse power can do.
-    let step = (log2_radius + LOG2_TOLERANCE / number(ORDER)).clamp(-100.0, 100.0).exp2_coarse();
+    let step = (log2_radius - f64::from(TOLERANCE_BITS) / number(ORDER)).clamp(-100.0, 100.0).exp2_coarse();
     // Not `min`, which would make a step of what is no number.
     if step > MAX_STEP { MAX_STEP } else { step }
 }
