@@ -4,8 +4,9 @@ use super::{Primaries, STEP_FLOOR, Series, StepSize, packed};
 use crate::arithmetic::Packed;
 use crate::arithmetic::sum::Compensated;
 
-/// The place that an integration has reached.
+/// The place that an integration has reached. Where it straddles lines of the cache, steps take up to twice as long.
 #[derive(Clone, Debug)]
+#[repr(C, align(64))]
 pub struct Place {
     /// x, y, z, vx, vy, vz in the default frame.
     pub state: [Compensated; 6],
