@@ -141,6 +141,10 @@ pub trait Packed: Real {
     #[must_use]
     fn high_with_low(self, other: Self) -> Self;
 
+    /// (c, d, 0, 0).
+    #[must_use]
+    fn high_alone(self) -> Self;
+
     /// (a, b, a, b).
     #[must_use]
     fn low_twice(self) -> Self;

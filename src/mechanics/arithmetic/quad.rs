@@ -209,6 +209,12 @@ impl Packed for Quad<f64> {
     }
 
     #[inline(always)]
+    fn high_alone(self) -> Self {
+        let Self([.., c, d]) = self;
+        Self([c, d, 0.0, 0.0])
+    }
+
+    #[inline(always)]
     fn low_twice(self) -> Self {
         let Self([a, b, ..]) = self;
         Self([a, b, a, b])

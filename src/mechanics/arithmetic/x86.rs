@@ -8,7 +8,19 @@
 #![expect(unsafe_code, reason = "intrinsics; see the module's safety argument")]
 
 use std::arch::asm;
-use std::arch::x86_64::*;
+use std::arch::x86_64::{
+    __m256d, __m512d, _CMP_LT_OQ, _mm_loadu_pd, _mm_storeu_pd, _mm256_add_epi64, _mm256_add_pd,
+    _mm256_andnot_pd, _mm256_blend_pd, _mm256_blendv_pd, _mm256_castpd_si256, _mm256_castpd128_pd256,
+    _mm256_castpd256_pd128, _mm256_castsi256_pd, _mm256_cmp_pd, _mm256_cvtsd_f64, _mm256_div_pd,
+    _mm256_fmadd_pd, _mm256_fnmadd_pd, _mm256_insertf128_pd, _mm256_loadu_pd, _mm256_max_pd, _mm256_min_pd,
+    _mm256_movemask_pd, _mm256_mul_pd, _mm256_or_si256, _mm256_permute_pd, _mm256_permute2f128_pd,
+    _mm256_permute4x64_pd, _mm256_set1_epi64x, _mm256_set1_pd, _mm256_slli_epi64, _mm256_sqrt_pd,
+    _mm256_srli_epi64, _mm256_storeu_pd, _mm256_sub_epi64, _mm256_sub_pd, _mm512_abs_pd, _mm512_add_epi64,
+    _mm512_add_pd, _mm512_castpd_si512, _mm512_castsi512_pd, _mm512_cmp_pd_mask, _mm512_div_pd,
+    _mm512_fmadd_pd, _mm512_fnmadd_pd, _mm512_loadu_pd, _mm512_mask_blend_pd, _mm512_max_pd, _mm512_min_pd,
+    _mm512_mul_pd, _mm512_or_si512, _mm512_set1_epi64, _mm512_set1_pd, _mm512_slli_epi64, _mm512_sqrt_pd,
+    _mm512_srli_epi64, _mm512_storeu_pd, _mm512_sub_epi64, _mm512_sub_pd,
+};
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
 use super::double::{BIAS, EXP2, FRACTION_BITS, LOG2_ODD, ROUNDER, TO_ONE};
@@ -139,7 +151,7 @@ wide!(Wide8, __m512d, 8, "AVX-512 F and DQ",
 
 /// What `log2_coarse` and `exp2_coarse` share between the widths: the steps of the scalar code, one by one.
 macro_rules! coarse {
-    ($immediate:ty, $set1:ident $add_i:ident $sub_i:ident $or_i:ident $shift_left:ident $shift_right:ident
+    ($immediate:expr, $set1:ident $add_i:ident $sub_i:ident $or_i:ident $shift_left:ident $shift_right:ident
      $to_bits:ident $from_bits:ident) => {
         #[inline(always)]
         fn log2_coarse(self) -> Self {
@@ -149,9 +161,9 @@ macro_rules! coarse {
             let (exponent, mantissa) = unsafe {
                 let bits = $to_bits(self.0);
                 let shifted = $add_i(bits, $set1(TO_ONE.cast_signed()));
-                let biased = $shift_right::<{ FRACTION_BITS as $immediate }>(shifted);
+                let biased = $shift_right::<{ $immediate }>(shifted);
                 let exponent = $from_bits($or_i(biased, $set1(WHOLE.to_bits().cast_signed())));
-                let whole = $shift_left::<{ FRACTION_BITS as $immediate }>($sub_i(biased, $set1(BIAS)));
+                let whole = $shift_left::<{ $immediate }>($sub_i(biased, $set1(BIAS)));
                 (Self(exponent), Self($from_bits($sub_i(bits, whole))))
             };
             #[expect(clippy::cast_precision_loss, reason = "exact")]
@@ -173,10 +185,7 @@ macro_rules! coarse {
             let fraction = g.mul_add(f, e).mul_add(f, d).mul_add(f, c).mul_add(f, b).mul_add(f, a);
             // SAFETY: the module's. The last bits of the sum are the whole number, those above are shifted out.
             let power = Self(unsafe {
-                $from_bits($shift_left::<{ FRACTION_BITS as $immediate }>($add_i(
-                    $to_bits(rounded.0),
-                    $set1(BIAS),
-                )))
+                $from_bits($shift_left::<{ $immediate }>($add_i($to_bits(rounded.0), $set1(BIAS))))
             });
             fraction * power
         }
@@ -226,7 +235,7 @@ impl Real for Wide4 {
         Self(unsafe { _mm256_blendv_pd(no.0, yes.0, _mm256_cmp_pd::<_CMP_LT_OQ>(self.0, other.0)) })
     }
 
-    coarse!(i32, _mm256_set1_epi64x _mm256_add_epi64 _mm256_sub_epi64 _mm256_or_si256
+    coarse!(FRACTION_BITS.cast_signed(), _mm256_set1_epi64x _mm256_add_epi64 _mm256_sub_epi64 _mm256_or_si256
         _mm256_slli_epi64 _mm256_srli_epi64 _mm256_castpd_si256 _mm256_castsi256_pd);
 }
 
@@ -273,7 +282,7 @@ impl Real for Wide8 {
         Self(unsafe { _mm512_mask_blend_pd(_mm512_cmp_pd_mask::<_CMP_LT_OQ>(self.0, other.0), no.0, yes.0) })
     }
 
-    coarse!(u32, _mm512_set1_epi64 _mm512_add_epi64 _mm512_sub_epi64 _mm512_or_si512
+    coarse!(FRACTION_BITS, _mm512_set1_epi64 _mm512_add_epi64 _mm512_sub_epi64 _mm512_or_si512
         _mm512_slli_epi64 _mm512_srli_epi64 _mm512_castpd_si512 _mm512_castsi512_pd);
 }
 
@@ -367,6 +376,12 @@ impl Packed for Wide4 {
     fn firsts(self) -> Self {
         // SAFETY: the module's.
         Self(unsafe { _mm256_permute4x64_pd::<0>(self.0) })
+    }
+
+    #[inline(always)]
+    fn high_alone(self) -> Self {
+        // SAFETY: the module's.
+        Self(unsafe { _mm256_permute2f128_pd::<0x81>(self.0, self.0) })
     }
 
     #[inline(always)]

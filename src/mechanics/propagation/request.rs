@@ -174,6 +174,12 @@ impl Request {
         self
     }
 
+    /// How many trajectories are computed side by side, if there are enough of them.
+    #[must_use]
+    pub fn lanes(&self) -> usize {
+        if self.path.has_eight() { 8 } else { 4 }
+    }
+
     pub(super) fn with_matrix(&self) -> bool {
         self.parts.matrix != MatrixOutput::None
     }

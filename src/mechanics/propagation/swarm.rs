@@ -21,13 +21,9 @@ pub(super) fn suits(request: &Request, range: Range<usize>, sink: &dyn Sink) -> 
             .clone()
             .all(|index| request.planned_samples(index).is_some_and(|samples| samples <= most as u64)),
     };
-    range.len() > fewest(lanes(request.path()), request.with_matrix())
+    range.len() > fewest(request.lanes(), request.with_matrix())
         && parts.matrix != MatrixOutput::Samples
         && sink.samples_at_once().is_none_or(keeps_its_samples)
-}
-
-fn lanes(path: Path) -> usize {
-    if path.has_eight() { 8 } else { 4 }
 }
 
 /// Trajectories that are as fast alone as in these lanes. A step of all lanes costs as much as about 3 (of eight) or 2 (of

@@ -93,18 +93,18 @@ macro_rules! on_path {
         $visibility fn $name(path: $crate::taylor::Path, $($argument: $type),*) $(-> $result)? {
             #[inline(always)]
             #[cfg_attr(not(target_arch = "x86_64"), expect(unused, reason = "one path"))]
-            fn body<$lanes: $trait>($($argument: $type),*) $(-> $result)? $body
+            fn body<$lanes: $trait>(_: std::marker::PhantomData<$lanes>, $($argument: $type),*) $(-> $result)? $body
 
             #[cfg(target_arch = "x86_64")]
             {
                 #[target_feature(enable = "avx2,fma,bmi2")]
                 fn on_avx2($($argument: $type),*) $(-> $result)? {
-                    body::<$four>($($argument),*)
+                    body(std::marker::PhantomData::<$four>, $($argument),*)
                 }
 
                 #[target_feature(enable = "avx512f,avx512dq,avx512vl,avx2,fma,bmi2")]
                 fn on_avx512($($argument: $type),*) $(-> $result)? {
-                    body::<$eight>($($argument),*)
+                    body(std::marker::PhantomData::<$eight>, $($argument),*)
                 }
 
                 #[expect(unsafe_code, reason = "functions compiled for instructions of this CPU")]
@@ -117,7 +117,7 @@ macro_rules! on_path {
                 }
             }
             let _ = path;
-            body::<$plain>($($argument),*)
+            body(std::marker::PhantomData::<$plain>, $($argument),*)
         }
     )*};
 }

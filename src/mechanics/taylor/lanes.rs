@@ -33,6 +33,12 @@ impl<A: Copy + AsRef<[f64]>> LaneSeries<A> {
         }
     }
 
+    /// Coefficient `k` of an axis.
+    #[inline(always)]
+    fn position<L: Lanes<Array = A>>(&self, k: usize, axis: usize) -> L {
+        L::from_array(&self.position[k][axis])
+    }
+
     /// The sum of the last coefficients: one that has overflowed spoils all later ones.
     #[inline(always)]
     pub(super) fn newest<L: Lanes<Array = A>>(&self) -> L {
@@ -88,8 +94,8 @@ pub(super) fn expand<L: Lanes>(
     stage();
     pair::<L, 2>(&leading, side, series, 2);
     pair::<L, 4>(&leading, side, series, 4);
-    for k in (6..ORDER).step_by(2) {
-        pair::<L, 6>(&leading, side, series, k);
+    for k in (LONG..ORDER).step_by(2) {
+        pair::<L, LONG>(&leading, side, series, k);
     }
     let size = |k: usize| {
         let [d, y, z] = [0, 1, 2].map(|i| L::from_array(&series.position[k][i]).abs());
@@ -100,19 +106,49 @@ pub(super) fn expand<L: Lanes>(
     series.log2_radius = step::log2_radius(sizes, size(1), half_square).to_array();
 }
 
-/// From the position's coefficients up to `K` + 1, those of order `K` + 2 and `K` + 3.
+/// From this order on a pair of orders has all kinds of terms.
+const LONG: usize = 6;
+
+/// Coefficients of two orders.
+#[derive(Clone, Copy)]
+struct Pair<T> {
+    even: T,
+    odd: T,
+}
+
+/// From the position's coefficients up to k + 1, those of order k + 2 and k + 3; k is `FORM`, or the `order` from [`LONG`]
+/// on, so that the short ones are compiled apart and the long ones share their code, which has to stay in the cache.
 #[inline(always)]
-fn pair<L: Lanes, const FORM: usize>(leading: &Leading<L>, side: L, s: &mut LaneSeries<L::Array>, k: usize) {
-    let K = if FORM == 6 { k } else { FORM };
-    assert!(K >= FORM && K < ORDER);
-    let zero = L::from_f64(0.0);
-    let p = |s: &LaneSeries<L::Array>, k: usize, i: usize| L::from_array(&s.position[k][i]);
-    let middle = K / 2;
-    let mut even = [0, 1, 2].map(|i| (p(s, middle, i) * p(s, middle, i)) * L::from_f64(0.5));
-    let mut odd = [0, 1, 2].map(|i| p(s, middle, i).mul_add(p(s, middle + 1, i), zero));
+fn pair<L: Lanes, const FORM: usize>(
+    leading: &Leading<L>,
+    side: L,
+    s: &mut LaneSeries<L::Array>,
+    order: usize,
+) {
+    let k = if FORM == LONG { order } else { FORM };
+    assert!(k >= FORM && k < ORDER);
+    let squares = half_squares(side, s, k);
+    stage();
+    let sums = Sums::new(leading, s, k);
+    let forces = forces(leading, s, k, &squares, &sums);
+    positions(side, s, k, &sums, &forces);
+    stage();
+}
+
+/// The half squares of the orders k and k + 1.
+#[inline(always)]
+fn half_squares<L: Lanes>(side: L, s: &mut LaneSeries<L::Array>, k: usize) -> Pair<[L; 2]> {
+    let (zero, half) = (L::from_f64(0.0), L::from_f64(0.5));
+    let middle = k / 2;
+    let centre: [L; 3] = read(&s.position[middle]);
     // Each coefficient is loaded once and serves two orders.
-    let mut newer = read(&s.position[middle + 1]);
-    for (a, b) in s.position[..middle].iter().rev().zip(&s.position[middle + 2..K + 2]) {
+    let mut newer: [L; 3] = read(&s.position[middle + 1]);
+    let (mut even, mut odd) = ([zero; 3], [zero; 3]);
+    for i in 0..3 {
+        even[i] = (centre[i] * centre[i]) * half;
+        odd[i] = centre[i].mul_add(newer[i], zero);
+    }
+    for (a, b) in s.position[..middle].iter().rev().zip(&s.position[middle + 2..k + 2]) {
         let (a, b): ([L; 3], [L; 3]) = (read(a), read(b));
         for i in 0..3 {
             even[i] = a[i].mul_add(newer[i], even[i]);
@@ -120,126 +156,185 @@ fn pair<L: Lanes, const FORM: usize>(leading: &Leading<L>, side: L, s: &mut Lane
         }
         newer = b;
     }
-    let (near_even, near_odd) = ((even[0] + even[1]) + even[2], (odd[0] + odd[1]) + odd[2]);
-    let far_even = side.mul_add(p(s, K, 0), near_even);
-    s.half_square[K] = [near_even, far_even].map(L::to_array);
-    s.half_square[K + 1] = [near_odd, side.mul_add(p(s, K + 1, 0), near_odd)].map(L::to_array);
-    stage();
+    let (even, odd) = ((even[0] + even[1]) + even[2], (odd[0] + odd[1]) + odd[2]);
+    let even = [even, side.mul_add(s.position::<L>(k, 0), even)];
+    let odd = [odd, side.mul_add(s.position::<L>(k + 1, 0), odd)];
+    s.half_square[k] = [even[0].to_array(), even[1].to_array()];
+    s.half_square[k + 1] = [odd[0].to_array(), odd[1].to_array()];
+    Pair { even, odd }
+}
 
-    // The oldest coefficients first, as where they fill the time that the newest take.
-    let g = |k: usize| L::from_array(&s.total[k]);
-    let (mut pull_even, mut pull_odd) = ([None; 3], [None; 3]);
-    macro_rules! pull {
-        ($j:expr) => {{
-            let j = $j;
-            for i in 0..3 {
-                pull_even[i] = plus(pull_even[i], g(j), p(s, K - j, i));
-                pull_odd[i] = plus(pull_odd[i], g(j), p(s, K + 1 - j, i));
-            }
-        }};
+/// Sums of two orders: products of forces with positions, and of squares with forces, all taken away from 0. The terms
+/// come in the order in which their factors become known, where one trajectory waits for them.
+struct Sums<L> {
+    pull: Pair<[L; 3]>,
+    force: Pair<[L; 2]>,
+}
+
+impl<L: Lanes> Sums<L> {
+    #[inline(always)]
+    fn new(leading: &Leading<L>, s: &LaneSeries<L::Array>, k: usize) -> Self {
+        let zero = L::from_f64(0.0);
+        let mut sums = Self {
+            pull: Pair { even: [zero; 3], odd: [zero; 3] },
+            force: Pair { even: [zero; 2], odd: [zero; 2] },
+        };
+        sums.add_old(s, k);
+        if k > 4 {
+            sums.add_pull(s, k, 3);
+            sums.add_pull(s, k, 2);
+        }
+        if k > 2 {
+            sums.add_pull(s, k, k - 2);
+            sums.add_pull(s, k, k - 1);
+        }
+        sums.add_pull(s, k, 1);
+        for i in 0..3 {
+            let pull = &mut sums.pull;
+            pull.even[i] = leading.pull[i].neg_mul_add(s.position(k, i), pull.even[i]);
+            pull.odd[i] = leading.pull[i].neg_mul_add(s.position(k + 1, i), pull.odd[i]);
+        }
+
+        if k > 4 {
+            sums.add_force(s, k, k - 3);
+        }
+        if k > 2 {
+            sums.add_force(s, k, k - 2);
+        }
+        // The even order's term of force 1; the odd one's waits for the newest half square.
+        let weight = L::from_f64(WEIGHTS[k][k - 1]);
+        for i in 0..2 {
+            let weighted = weight * L::from_array(&s.half_square[k - 1][i]);
+            sums.force.even[i] = weighted.neg_mul_add(L::from_array(&s.force[1][i]), sums.force.even[i]);
+        }
+        if k > 4 {
+            sums.add_force(s, k, 2);
+        }
+        if k > 2 {
+            sums.add_force(s, k, 1);
+        }
+        sums
     }
-    let h = |k: usize, i: usize| L::from_array(&s.half_square[k][i]);
-    let w = |k: usize, i: usize| L::from_array(&s.force[k][i]);
-    let (mut sum_even, mut sum_odd) = ([None; 2], [None; 2]);
-    macro_rules! settle {
-        ($j:expr) => {{
-            let j = $j;
-            for i in 0..2 {
-                sum_even[i] = plus(sum_even[i], L::from_f64(WEIGHTS[K][j]) * h(j, i), w(K - j, i));
-                sum_odd[i] = plus(sum_odd[i], L::from_f64(WEIGHTS[K + 1][j + 1]) * h(j + 1, i), w(K - j, i));
-            }
-        }};
-    }
-    if K > 6 {
-        pull!(4);
-        settle!(3);
-        let pulls = s.total[5..K - 2].iter().zip(s.position[3..K - 4].iter().rev());
-        let weights = WEIGHTS[K][4..K - 3].iter().zip(&WEIGHTS[K + 1][5..K - 2]);
-        let settles = s.half_square[5..K - 2].iter().zip(s.force[4..K - 3].iter().rev());
-        let mut newer: [L; 3] = read(&s.position[K - 4]);
-        let mut older: [L; 2] = read(&s.half_square[4]);
-        for (((total, p), (even, odd)), (h, w)) in pulls.zip(weights).zip(settles) {
+
+    /// The terms in between.
+    #[inline(always)]
+    fn add_old(&mut self, s: &LaneSeries<L::Array>, k: usize) {
+        if k <= LONG {
+            return;
+        }
+        let Self { pull, force } = self;
+        let pulls = s.total[4..k - 2].iter().rev().zip(&s.position[4..k - 2]);
+        let weights = WEIGHTS[k][3..k - 3].iter().zip(&WEIGHTS[k + 1][4..k - 2]).rev();
+        let forces = s.half_square[3..k - 3].iter().rev().zip(&s.force[4..k - 2]);
+        let mut older: [L; 3] = read(&s.position[3]);
+        let mut newer: [L; 2] = read(&s.half_square[k - 3]);
+        for (((total, p), (even, odd)), (h, w)) in pulls.zip(weights).zip(forces) {
             let (total, p) = (L::from_array(total), read(p));
             for i in 0..3 {
-                pull_even[i] = plus(pull_even[i], total, p[i]);
-                pull_odd[i] = plus(pull_odd[i], total, newer[i]);
+                pull.even[i] = total.neg_mul_add(older[i], pull.even[i]);
+                pull.odd[i] = total.neg_mul_add(p[i], pull.odd[i]);
             }
-            newer = p;
+            older = p;
             let (even, odd): (L, L) = (L::from_f64(*even), L::from_f64(*odd));
             let (h, w): ([L; 2], [L; 2]) = (read(h), read(w));
             for i in 0..2 {
-                sum_even[i] = plus(sum_even[i], even * older[i], w[i]);
-                sum_odd[i] = plus(sum_odd[i], odd * h[i], w[i]);
+                force.even[i] = (even * h[i]).neg_mul_add(w[i], force.even[i]);
+                force.odd[i] = (odd * newer[i]).neg_mul_add(w[i], force.odd[i]);
             }
-            older = h;
+            newer = h;
         }
     }
-    if K > 4 {
-        pull!(3);
-        pull!(2);
-    }
-    if K > 2 {
-        pull!(K - 2);
-        pull!(K - 1);
-    }
-    pull!(1);
-    let mut pull_even = [0, 1, 2].map(|i| leading.pull[i].mul_add(p(s, K, i), sum(pull_even[i])));
-    let mut pull_odd = [0, 1, 2].map(|i| leading.pull[i].mul_add(p(s, K + 1, i), sum(pull_odd[i])));
 
-    if K > 4 {
-        settle!(K - 3);
-        settle!(K - 2);
-        settle!(2);
-    } else if K > 2 {
-        settle!(K - 2);
+    #[inline(always)]
+    fn add_pull(&mut self, s: &LaneSeries<L::Array>, k: usize, j: usize) {
+        let total = L::from_array(&s.total[j]);
+        for i in 0..3 {
+            self.pull.even[i] = total.neg_mul_add(s.position(k - j, i), self.pull.even[i]);
+            self.pull.odd[i] = total.neg_mul_add(s.position(k + 1 - j, i), self.pull.odd[i]);
+        }
     }
-    if K > 2 {
-        settle!(1);
-    }
-    let settled = |sums: [Option<L>; 2], i: usize| sums[i].map_or(zero, |sum| sum * leading.inverse[i]);
-    let mut force_even = [0, 1].map(|i| {
-        let tilt = L::from_f64(WEIGHTS[K][K - 1]) * leading.tilt[i];
-        tilt.mul_add(h(K - 1, i), settled(sum_even, i))
-    });
-    force_even[1] = leading.far_slope.mul_add(p(s, K, 0), force_even[1]);
-    let force_even = [0, 1].map(|i| near_even.mul_add(leading.slope[i], force_even[i]));
-    let mut force_odd = [0, 1].map(|i| settled(sum_odd, i));
-    force_odd[1] = leading.far_slope.mul_add(p(s, K + 1, 0), force_odd[1]);
-    let force_odd = [0, 1].map(|i| {
-        let bend = L::from_f64(WEIGHTS[K + 1][1]) * leading.bend[i];
-        let tilt = L::from_f64(WEIGHTS[K + 1][K]) * leading.tilt[i];
-        let settled = tilt.mul_add([near_even, far_even][i], bend.mul_add(force_even[i], force_odd[i]));
-        near_odd.mul_add(leading.slope[i], settled)
-    });
-    let (total_even, total_odd) = (force_even[0] + force_even[1], force_odd[0] + force_odd[1]);
-    s.force[K] = force_even.map(L::to_array);
-    s.force[K + 1] = force_odd.map(L::to_array);
-    s.total[K] = total_even.to_array();
-    s.total[K + 1] = total_odd.to_array();
 
-    // The newest terms of the products, and the position two orders on.
-    let turn = L::from_f64(CORIOLIS[K]);
-    pull_even[0] = side.mul_add(force_even[1], pull_even[0]);
-    for i in 0..3 {
-        pull_even[i] = total_even.mul_add(p(s, 0, i), pull_even[i]);
+    #[inline(always)]
+    fn add_force(&mut self, s: &LaneSeries<L::Array>, k: usize, j: usize) {
+        let (even, odd) = (L::from_f64(WEIGHTS[k][j]), L::from_f64(WEIGHTS[k + 1][j + 1]));
+        for i in 0..2 {
+            let force = L::from_array(&s.force[k - j][i]);
+            let (h, next) = (L::from_array(&s.half_square[j][i]), L::from_array(&s.half_square[j + 1][i]));
+            self.force.even[i] = (even * h).neg_mul_add(force, self.force.even[i]);
+            self.force.odd[i] = (odd * next).neg_mul_add(force, self.force.odd[i]);
+        }
     }
-    pull_even[0] = p(s, K + 1, 1).neg_mul_add(turn, pull_even[0]);
-    pull_even[1] = p(s, K + 1, 0).mul_add(turn, pull_even[1]);
-    let even = [0, 1, 2].map(|i| twice_integrated(K, pull_even[i]));
-    s.position[K + 2] = even.map(L::to_array);
+}
+
+/// The forces of the orders k and k + 1, and their totals.
+#[inline(always)]
+fn forces<L: Lanes>(
+    leading: &Leading<L>,
+    s: &mut LaneSeries<L::Array>,
+    k: usize,
+    squares: &Pair<[L; 2]>,
+    sums: &Sums<L>,
+) -> Pair<[L; 2]> {
+    let zero = L::from_f64(0.0);
+    let (mut even, mut odd) = ([zero; 2], [zero; 2]);
+    let (bend, tilt) = (L::from_f64(WEIGHTS[k + 1][1]), L::from_f64(WEIGHTS[k + 1][k]));
+    for i in 0..2 {
+        let (mut settled, mut settled_odd) =
+            (sums.force.even[i] * leading.inverse[i], sums.force.odd[i] * leading.inverse[i]);
+        if i == 1 {
+            settled = leading.far_slope.mul_add(s.position(k, 0), settled);
+            settled_odd = leading.far_slope.mul_add(s.position(k + 1, 0), settled_odd);
+        }
+        even[i] = squares.even[0].mul_add(leading.slope[i], settled);
+        let bent = (bend * leading.bend[i]).neg_mul_add(even[i], settled_odd);
+        let tilted = (tilt * leading.tilt[i]).neg_mul_add(squares.even[i], bent);
+        odd[i] = squares.odd[0].mul_add(leading.slope[i], tilted);
+    }
+    s.force[k] = [even[0].to_array(), even[1].to_array()];
+    s.force[k + 1] = [odd[0].to_array(), odd[1].to_array()];
+    Pair { even, odd }
+}
+
+/// The newest terms of the products, and the position two orders on.
+#[inline(always)]
+fn positions<L: Lanes>(
+    side: L,
+    s: &mut LaneSeries<L::Array>,
+    k: usize,
+    sums: &Sums<L>,
+    forces: &Pair<[L; 2]>,
+) {
+    let Pair { even: mut pull, odd: mut next_pull } = sums.pull;
+    let (total, next_total) = (forces.even[0] + forces.even[1], forces.odd[0] + forces.odd[1]);
+    s.total[k] = total.to_array();
+    s.total[k + 1] = next_total.to_array();
+
+    let turn = L::from_f64(CORIOLIS[k]);
+    pull[0] = side.neg_mul_add(forces.even[1], pull[0]);
+    for i in 0..3 {
+        pull[i] = total.neg_mul_add(s.position(0, i), pull[i]);
+    }
+    pull[0] = s.position::<L>(k + 1, 1).mul_add(turn, pull[0]);
+    pull[1] = s.position::<L>(k + 1, 0).neg_mul_add(turn, pull[1]);
+    let mut even = pull;
+    for i in 0..3 {
+        even[i] = twice_integrated(k, pull[i]);
+        s.position[k + 2][i] = even[i].to_array();
+    }
 
     for i in 0..3 {
-        pull_odd[i] = total_even.mul_add(p(s, 1, i), pull_odd[i]);
+        next_pull[i] = total.neg_mul_add(s.position(1, i), next_pull[i]);
     }
-    pull_odd[0] = side.mul_add(force_odd[1], pull_odd[0]);
+    next_pull[0] = side.neg_mul_add(forces.odd[1], next_pull[0]);
     for i in 0..3 {
-        pull_odd[i] = total_odd.mul_add(p(s, 0, i), pull_odd[i]);
+        next_pull[i] = next_total.neg_mul_add(s.position(0, i), next_pull[i]);
     }
-    let turn = L::from_f64(CORIOLIS[K + 1]);
-    pull_odd[0] = even[1].neg_mul_add(turn, pull_odd[0]);
-    pull_odd[1] = even[0].mul_add(turn, pull_odd[1]);
-    s.position[K + 3] = pull_odd.map(|pull| twice_integrated(K + 1, pull).to_array());
-    stage();
+    let turn = L::from_f64(CORIOLIS[k + 1]);
+    next_pull[0] = even[1].mul_add(turn, next_pull[0]);
+    next_pull[1] = even[0].neg_mul_add(turn, next_pull[1]);
+    for i in 0..3 {
+        s.position[k + 3][i] = twice_integrated(k + 1, next_pull[i]).to_array();
+    }
 }
 
 #[inline(always)]
@@ -247,27 +342,16 @@ fn read<L: Lanes, const N: usize>(from: &[L::Array; N]) -> [L; N] {
     std::array::from_fn(|i| L::from_array(&from[i]))
 }
 
-/// The sum with one more product; none is one that has not begun.
+/// Coefficient k + 2 of the position from coefficient k of the acceleration.
 #[inline(always)]
-pub(super) fn plus<R: Real>(sum: Option<R>, a: R, b: R) -> Option<R> {
-    Some(match sum {
-        Some(sum) => a.mul_add(b, sum),
-        None => a * b,
-    })
-}
-
-/// A sum that has begun.
-#[inline(always)]
-pub(super) fn sum<R: Real>(sum: Option<R>) -> R {
-    sum.unwrap_or_else(|| R::from_f64(0.0))
-}
-
-/// Coefficient k + 2 of the position from coefficient k of the pull.
-#[inline(always)]
-pub(super) fn twice_integrated<R: Real>(k: usize, pull: R) -> R {
+pub(super) fn twice_integrated<R: Real>(k: usize, acceleration: R) -> R {
     let (factor, rest) = TWICE_INTEGRATED[k];
     let factor = R::from_f64(factor);
-    if k < REST_MATTERS { pull.mul_add(factor, pull * R::from_f64(rest)) } else { pull * factor }
+    if k < REST_MATTERS {
+        acceleration.mul_add(factor, acceleration * R::from_f64(rest))
+    } else {
+        acceleration * factor
+    }
 }
 
 /// What position and velocity change by within `time`.

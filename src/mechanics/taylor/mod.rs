@@ -74,7 +74,7 @@ impl Series {
     pub fn half_square(&self, k: usize) -> [f64; 2] {
         // What an odd order's own place holds is not complete in the last pair.
         let Quad([near, far, next_near, next_far]) = self.squares[k - k % 2];
-        if k % 2 == 0 { [near, far] } else { [next_near, next_far] }
+        if k.is_multiple_of(2) { [near, far] } else { [next_near, next_far] }
     }
 
     fn set_half_square(&mut self, k: usize, [near, far]: [f64; 2]) {

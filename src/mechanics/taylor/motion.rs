@@ -68,7 +68,7 @@ impl Place {
         for _ in 0..most {
             packed::expand::<P>(primaries, &self.state, series);
             let remaining = target.minus(self.elapsed);
-            let step = sizes.from_log2_radius(series.log2_radius);
+            let step = sizes.at_log2_radius(series.log2_radius);
             let last = step >= remaining.abs();
             // Written so that a step that is no number counts as too small.
             if !(series.is_finite() && (last || step >= STEP_FLOOR)) {

@@ -1,21 +1,24 @@
 //! The first coefficients, which begin the recurrences.
+//!
+//! Every sum begins with +0 and takes its products away, and what it is multiplied with is positive: so it is never −0,
+//! and adding a product that is 0 changes no bit. The kernel that packs a trajectory's components relies on that.
 
 use super::Primaries;
 use super::lanes::twice_integrated;
-use super::tables::{CORIOLIS, WEIGHT};
+use super::tables::CORIOLIS;
 use crate::arithmetic::Real;
 
 /// What every order needs again, formed once.
 pub(super) struct Leading<R> {
-    /// −1 over the half squares of order 0.
+    /// 1 over the half squares of order 0.
     pub inverse: [R; 2],
     /// −3/2 of the forces over the half squares of order 0: a force's share in its newest half square.
     pub slope: [R; 2],
     /// The farther one's share in the newest d.
     pub far_slope: R,
-    /// −1 over the half squares of order 0 times those of order 1.
+    /// The half squares of order 1 over those of order 0.
     pub bend: [R; 2],
-    /// −1 over the half squares of order 0 times the forces of order 1.
+    /// The forces of order 1 over the half squares of order 0.
     pub tilt: [R; 2],
     /// The total force of order 0 less the centrifugal one.
     pub pull: [R; 3],
@@ -50,11 +53,12 @@ impl<R: Real> Opening<R> {
         let share = [pick(share_smaller, share_larger), pick(share_larger, share_smaller)];
         let side = pick(one, constant(-1.0));
         let d = pick(to_smaller, to_larger);
-        let half_square = square.map(|square| square * half);
+        let half_square = [square[0] * half, square[1] * half];
         let force = [0, 1].map(|i| share[i] / (square[i] * square[i].sqrt()));
         let total = force[0] + force[1];
-        let inverse = half_square.map(|half_square| constant(-1.0) / half_square);
-        let slope = [0, 1].map(|i| (force[i] * constant(WEIGHT[1][1])) * inverse[i]);
+        let inverse = [one / half_square[0], one / half_square[1]];
+        let steepened = constant(-1.5);
+        let slope = [(force[0] * steepened) * inverse[0], (force[1] * steepened) * inverse[1]];
         let far_slope = slope[1] * side;
         let centripetal = total - one;
 
@@ -62,29 +66,34 @@ impl<R: Real> Opening<R> {
         let potential = force[0].mul_add(square[0], force[1] * square[1]);
         let jacobi = two.mul_add(potential, y.mul_add(y, x * x)) - speed_square;
 
-        let near = vz.mul_add(z, vy.mul_add(y, vx * d));
+        let near = vz.mul_add(z, vy.mul_add(y, vx.mul_add(d, zero)));
         let half_square_1 = [near, side.mul_add(vx, near)];
-        let force_1 = [near * slope[0], near.mul_add(slope[1], far_slope * vx)];
+        let force_1 = [near.mul_add(slope[0], zero), near.mul_add(slope[1], far_slope.mul_add(vx, zero))];
         let total_1 = force_1[0] + force_1[1];
 
         let twice = constant(CORIOLIS[0]);
         // x from the barycentre; in all later orders it is that of d.
-        let pull = [
-            d.mul_add(total, vy.neg_mul_add(twice, side.mul_add(force[1], zero - x))),
-            y.mul_add(centripetal, vx * twice),
-            z * total,
+        let second = [
+            d.neg_mul_add(total, vy.mul_add(twice, side.neg_mul_add(force[1], x))),
+            y.neg_mul_add(centripetal, vx.neg_mul_add(twice, zero)),
+            z.neg_mul_add(total, zero),
         ];
-        let second = pull.map(|pull| twice_integrated(0, pull));
+        let second =
+            [twice_integrated(0, second[0]), twice_integrated(0, second[1]), twice_integrated(0, second[2])];
         let turn = constant(CORIOLIS[1]);
-        let pull = [
-            second[1].neg_mul_add(turn, d.mul_add(total_1, side.mul_add(force_1[1], vx * centripetal))),
-            second[0].mul_add(turn, y.mul_add(total_1, vy * centripetal)),
-            z.mul_add(total_1, vz * total),
+        let third = [
+            d.neg_mul_add(total_1, side.neg_mul_add(force_1[1], vx.neg_mul_add(centripetal, zero))),
+            y.neg_mul_add(total_1, vy.neg_mul_add(centripetal, zero)),
+            z.neg_mul_add(total_1, vz.neg_mul_add(total, zero)),
         ];
-        let third = pull.map(|pull| twice_integrated(1, pull));
+        let third = [
+            twice_integrated(1, second[1].mul_add(turn, third[0])),
+            twice_integrated(1, second[0].neg_mul_add(turn, third[1])),
+            twice_integrated(1, third[2]),
+        ];
 
-        let bend = [0, 1].map(|i| half_square_1[i] * inverse[i]);
-        let tilt = [0, 1].map(|i| force_1[i] * inverse[i]);
+        let bend = [half_square_1[0] * inverse[0], half_square_1[1] * inverse[1]];
+        let tilt = [force_1[0] * inverse[0], force_1[1] * inverse[1]];
         Self {
             leading: Leading {
                 inverse,

@@ -1,9 +1,9 @@
 //! The recurrences of one trajectory, packed: d, y and z side by side, and the two primaries of two orders.
 //!
-//! Every operation on a value is the one that [`super::lanes`] does, so both have the same bits. The fourth lane of a
-//! position is nothing: what it holds is never read.
+//! Every operation on a value is the one that [`super::lanes`] does, so both have the same bits; where a lane has
+//! nothing to add it adds a 0, which changes none (see [`super::opening`]). The fourth lane of a position stays 0.
 
-use super::lanes::{plus, stage, sum};
+use super::lanes::stage;
 use super::opening::{Leading, Opening};
 use super::tables::{CORIOLIS, REST_MATTERS, TWICE_INTEGRATED, WEIGHT, WEIGHT_PAIRS};
 use super::{Primaries, Series, TERMS, step};
@@ -14,19 +14,28 @@ use crate::arithmetic::{Packed, Quad};
 struct Constants<P> {
     inverse: P,
     slope: P,
+    /// In the lanes of the farther primary.
     far_slope: P,
     bend: P,
     tilt: P,
+    /// The forces of order 1, twice.
+    force: P,
     pull: P,
+    /// In the lanes of the farther primary.
     side: P,
+    /// In the lane of x.
+    toward: P,
     place: P,
     rate: P,
 }
 
 /// What the last pair of orders found, kept in registers.
+#[derive(Clone, Copy)]
 struct Newest<P> {
     position: [P; 2],
     squares: P,
+    /// The half squares of the last but two and the last but one order.
+    across: P,
     /// Each twice.
     force: [P; 2],
     /// Each in every lane.
@@ -34,23 +43,16 @@ struct Newest<P> {
     sums: Sums<P>,
 }
 
-/// The sums of a pair of orders: products of positions, products of forces with positions, and of squares with
-/// forces (both orders side by side). None is one that has not begun.
+/// The sums of a pair of orders: products of positions, products of forces with positions and of squares with forces
+/// (both orders side by side), the last two taken away.
 #[derive(Clone, Copy)]
 struct Sums<P> {
-    even: Option<P>,
-    odd: Option<P>,
-    pull_even: Option<P>,
-    pull_odd: Option<P>,
-    force: Option<P>,
+    even: P,
+    odd: P,
+    pull_even: P,
+    pull_odd: P,
+    force: P,
 }
-
-/// Lanes of the farther primary.
-const FAR: i32 = 0b1010;
-/// The lane of x.
-const X: i32 = 0b0001;
-/// The lanes of x and y.
-const IN_PLANE: i32 = 0b0011;
 
 /// Expands the solution through `state` (x, y, z, vx, vy, vz) into `series`.
 #[inline(always)]
@@ -76,17 +78,20 @@ pub(super) fn expand<P: Packed>(primaries: &Primaries, state: &[Compensated; 6],
     let constants = Constants {
         inverse: P::twice(&inverse),
         slope: P::twice(&slope),
-        far_slope: P::from_f64(far_slope),
+        far_slope: quad([0.0, far_slope, 0.0, far_slope]),
         bend: P::twice(&bend),
         tilt: P::twice(&tilt),
+        force: P::twice(&force[1]),
         pull: quad([in_plane, in_plane, vertical, 0.0]),
-        side: P::from_f64(side),
+        side: quad([0.0, side, 0.0, side]),
+        toward: quad([side, 0.0, 0.0, 0.0]),
         place: position[0],
         rate: position[1],
     };
     let mut newest = Newest {
         position: [position[2], position[3]],
         squares,
+        across: squares,
         force: force.map(|force| P::twice(&force)),
         total: total.map(P::from_f64),
         sums: Sums::old::<2>(series),
@@ -109,25 +114,25 @@ impl<P: Packed> Sums<P> {
     /// they fill the time that its newest terms wait for each other.
     #[inline(always)]
     fn old<const K: usize>(s: &Series) -> Self {
-        let mut sums = Self { even: None, odd: None, pull_even: None, pull_odd: None, force: None };
+        let zero = P::from_f64(0.0);
+        let mut sums = Self { even: zero, odd: zero, pull_even: zero, pull_odd: zero, force: zero };
         let p = |j: usize| P::load(&s.position[j]);
         let middle = K / 2;
         if middle > 2 {
-            sums.even = Some((p(middle) * p(middle)) * P::from_f64(0.5));
+            sums.even = (p(middle) * p(middle)) * P::from_f64(0.5);
             for j in (3..middle).rev() {
-                sums.even = plus(sums.even, p(j), p(K - j));
+                sums.even = p(j).mul_add(p(K - j), sums.even);
             }
         }
         if middle > 3 {
-            sums.odd = Some(p(middle).mul_add(p(middle + 1), P::from_f64(0.0)));
-            for j in (4..middle).rev() {
-                sums.odd = plus(sums.odd, p(j), p(K + 1 - j));
+            for j in (3..middle).rev() {
+                sums.odd = p(j + 1).mul_add(p(K - j), sums.odd);
             }
         }
-        for j in 4..K.max(2) - 2 {
+        for j in (4..K.max(2) - 2).rev() {
             sums.pull(P::from_f64(s.total[j]), p(K - j), p(K + 1 - j));
         }
-        for j in 3..K.max(3) - 3 {
+        for j in (3..K.max(3) - 3).rev() {
             sums.force::<K>(j, P::load(&s.squares[j]), P::twice(&s.force[K - j]));
         }
         sums
@@ -136,30 +141,26 @@ impl<P: Packed> Sums<P> {
     /// The same sums, which the compiler may not put off.
     #[inline(always)]
     fn settle(self) -> Self {
-        let settle = |sum: Option<P>| match sum {
-            Some(sum) => Some(sum.settle()),
-            None => None,
-        };
         Self {
-            even: settle(self.even),
-            odd: settle(self.odd),
-            pull_even: settle(self.pull_even),
-            pull_odd: settle(self.pull_odd),
-            force: settle(self.force),
+            even: self.even.settle(),
+            odd: self.odd.settle(),
+            pull_even: self.pull_even.settle(),
+            pull_odd: self.pull_odd.settle(),
+            force: self.force.settle(),
         }
     }
 
     /// A term of the products of forces and positions.
     #[inline(always)]
     fn pull(&mut self, force: P, even: P, odd: P) {
-        self.pull_even = plus(self.pull_even, force, even);
-        self.pull_odd = plus(self.pull_odd, force, odd);
+        self.pull_even = force.neg_mul_add(even, self.pull_even);
+        self.pull_odd = force.neg_mul_add(odd, self.pull_odd);
     }
 
     /// Term `j` of the products of squares and forces, of the orders `K` and `K` + 1.
     #[inline(always)]
     fn force<const K: usize>(&mut self, j: usize, squares: P, force: P) {
-        self.force = plus(self.force, P::load(&WEIGHT_PAIRS[K][j]) * squares, force);
+        self.force = (P::load(&WEIGHT_PAIRS[K][j]) * squares).neg_mul_add(force, self.force);
     }
 }
 
@@ -171,7 +172,7 @@ fn pair<P: Packed, const K: usize, const NEXT: usize>(
     s: &mut Series,
     newest: Newest<P>,
 ) -> Newest<P> {
-    let Newest { position: newest, squares: before, force, total, mut sums } = newest;
+    let Newest { position: newest, squares: before, across: across_before, force, total, mut sums } = newest;
     let p = &s.position;
     let at = |j: usize| {
         if j >= K {
@@ -186,57 +187,59 @@ fn pair<P: Packed, const K: usize, const NEXT: usize>(
     };
     let middle = K / 2;
     if middle <= 2 {
-        sums.even = Some((at(middle) * at(middle)) * P::from_f64(0.5));
+        sums.even = (at(middle) * at(middle)) * P::from_f64(0.5);
     }
     if middle <= 3 {
-        sums.odd = Some(at(middle).mul_add(at(middle + 1), P::from_f64(0.0)));
+        sums.odd = at(middle).mul_add(at(middle + 1), sums.odd);
     }
     if middle > 3 {
-        sums.odd = plus(sums.odd, at(3), at(K - 2));
+        sums.odd = at(3).mul_add(at(K - 2), sums.odd);
     }
     if middle > 2 {
-        sums.even = plus(sums.even, at(2), at(K - 2));
-        sums.odd = plus(sums.odd, at(2), at(K - 1));
+        sums.even = at(2).mul_add(at(K - 2), sums.even);
+        sums.odd = at(2).mul_add(at(K - 1), sums.odd);
     }
     if middle > 1 {
-        sums.even = plus(sums.even, at(1), at(K - 1));
-        sums.odd = plus(sums.odd, at(1), at(K));
+        sums.even = at(1).mul_add(at(K - 1), sums.even);
+        sums.odd = at(1).mul_add(at(K), sums.odd);
     }
-    let even = at(0).mul_add(at(K), sum(sums.even));
-    let odd = at(0).mul_add(at(K + 1), sum(sums.odd));
+    let even = at(0).mul_add(at(K), sums.even);
+    let odd = at(0).mul_add(at(K + 1), sums.odd);
 
     // The nearer half squares, and the farther ones beside them.
     let (near_even, near_odd) = (even.sum(), odd.sum());
     let (d_even, d_odd) = (newest[0].firsts(), newest[1].firsts());
-    let squares_even = near_even.with::<FAR>(c.side.mul_add(d_even, near_even));
-    let squares_odd = near_odd.with::<FAR>(c.side.mul_add(d_odd, near_odd));
+    let squares_even = c.side.mul_add(d_even, near_even);
+    let squares_odd = c.side.mul_add(d_odd, near_odd);
     let across = before.high_with_low(squares_even);
     let squares = squares_even.low_with_low(squares_odd);
     across.store(&mut s.squares[K - 1]);
     squares.store(&mut s.squares[K]);
 
     if K > 4 {
-        sums.force::<K>(K - 3, P::load(&s.squares[K - 3]), P::twice(&s.force[3]));
-        sums.force::<K>(K - 2, before, P::twice(&s.force[2]));
+        sums.force::<K>(K - 3, across_before, P::twice(&s.force[3]));
+    }
+    if K > 2 {
+        sums.force::<K>(K - 2, before, if K > 4 { P::twice(&s.force[2]) } else { force[0] });
+    }
+    // The even order's term of force 1; the odd one's waits for the newest half square.
+    sums.force = (P::from_f64(WEIGHT[K][K - 1]) * before.high_alone()).neg_mul_add(c.force, sums.force);
+    if K > 4 {
         sums.force::<K>(2, P::load(&s.squares[2]), force[0]);
-    } else if K > 2 {
-        sums.force::<K>(K - 2, before, force[0]);
     }
     if K > 2 {
         sums.force::<K>(1, P::load(&s.squares[1]), force[1]);
     }
-    let settled = sums.force.map_or(P::from_f64(0.0), |total| total * c.inverse);
-    let settled_even =
-        (P::from_f64(WEIGHT[K][K - 1]) * c.tilt).mul_add(before.high_twice(), settled.low_twice());
-    let settled_even = settled_even.with::<FAR>(c.far_slope.mul_add(d_even, settled_even));
+    let settled = sums.force * c.inverse;
+    let settled_even = c.far_slope.mul_add(d_even, settled.low_twice());
     let force_even = near_even.mul_add(c.slope, settled_even);
-    let settled_odd = settled.high_twice();
-    let settled_odd = settled_odd.with::<FAR>(c.far_slope.mul_add(d_odd, settled_odd));
-    let settled_odd = (P::from_f64(WEIGHT[K + 1][1]) * c.bend).mul_add(force_even, settled_odd);
-    let settled_odd = (P::from_f64(WEIGHT[K + 1][K]) * c.tilt).mul_add(squares_even, settled_odd);
+    let settled_odd = c.far_slope.mul_add(d_odd, settled.high_twice());
+    let (bend, tilt) = (P::from_f64(WEIGHT[K + 1][1]) * c.bend, P::from_f64(WEIGHT[K + 1][K]) * c.tilt);
+    let settled_odd = tilt.neg_mul_add(squares_even, bend.neg_mul_add(force_even, settled_odd));
     let force_odd = near_odd.mul_add(c.slope, settled_odd);
-    let total_even = force_even + force_even.swap();
-    let total_odd = force_odd + force_odd.swap();
+    let (swapped_even, swapped_odd) = (force_even.swap(), force_odd.swap());
+    let total_even = force_even + swapped_even;
+    let total_odd = force_odd + swapped_odd;
 
     if K > 4 {
         sums.pull(P::from_f64(s.total[3]), at(K - 3), at(K - 2));
@@ -247,25 +250,22 @@ fn pair<P: Packed, const K: usize, const NEXT: usize>(
         sums.pull(total[1], at(1), at(2));
     }
     sums.pull(P::from_f64(s.total[1]), at(K - 1), at(K));
-    let pull_even = c.pull.mul_add(at(K), sum(sums.pull_even));
-    let pull_odd = c.pull.mul_add(at(K + 1), sum(sums.pull_odd));
+    let pull_even = c.pull.neg_mul_add(at(K), sums.pull_even);
+    let pull_odd = c.pull.neg_mul_add(at(K + 1), sums.pull_odd);
     force_even.low_with_low(force_odd).store_pairs(&mut s.force, K);
     s.total[K] = total_even.first();
     s.total[K + 1] = total_odd.first();
 
     // The newest terms of the products, and the position two orders on.
-    let turned = |pull: P, k: usize, rate: P| {
-        let twice = Quad([-CORIOLIS[k], CORIOLIS[k], 0.0, 0.0]);
-        pull.with::<IN_PLANE>(P::load(&twice).mul_add(rate.swap(), pull))
-    };
-    let toward = |pull: P, force: P| pull.with::<X>(c.side.mul_add(force.seconds(), pull));
-    let pull_even = total_even.mul_add(c.place, toward(pull_even, force_even));
-    let even = twice_integrated(K, turned(pull_even, K, newest[1]));
+    let pull_even = c.toward.neg_mul_add(swapped_even, pull_even);
+    let pull_even = total_even.neg_mul_add(c.place, pull_even);
+    let even = twice_integrated(K, turn::<P>(K).mul_add(newest[1].swap(), pull_even));
     even.store(&mut s.position[K + 2]);
 
-    let pull_odd = toward(total_even.mul_add(c.rate, pull_odd), force_odd);
-    let pull_odd = turned(total_odd.mul_add(c.place, pull_odd), K + 1, even);
-    let odd = twice_integrated(K + 1, pull_odd);
+    let pull_odd = total_even.neg_mul_add(c.rate, pull_odd);
+    let pull_odd = c.toward.neg_mul_add(swapped_odd, pull_odd);
+    let pull_odd = total_odd.neg_mul_add(c.place, pull_odd);
+    let odd = twice_integrated(K + 1, turn::<P>(K + 1).mul_add(even.swap(), pull_odd));
     odd.store(&mut s.position[K + 3]);
     stage();
     let sums = Sums::old::<NEXT>(s).settle();
@@ -273,10 +273,17 @@ fn pair<P: Packed, const K: usize, const NEXT: usize>(
     Newest {
         position: [even, odd],
         squares,
+        across,
         force: [force_even, force_odd],
         total: [total_even, total_odd],
         sums,
     }
+}
+
+/// From the swapped x and y of a rate to the Coriolis acceleration.
+#[inline(always)]
+fn turn<P: Packed>(k: usize) -> P {
+    P::load(&Quad([CORIOLIS[k], -CORIOLIS[k], 0.0, 0.0]))
 }
 
 /// [`super::lanes::twice_integrated`], packed.

@@ -56,7 +56,7 @@ impl StepSize {
     /// The step, at most [`MAX_STEP`], for a radius of convergence.
     #[must_use]
     #[inline(always)]
-    pub(super) fn from_log2_radius<R: Real>(&self, log2_radius: R) -> R {
+    pub(super) fn at_log2_radius<R: Real>(self, log2_radius: R) -> R {
         // 2^±100 is far outside what is ever used, and inside what the coarse power can do; what is no number becomes
         // the shortest.
         let power = log2_radius + R::from_f64(self.log2_fraction);

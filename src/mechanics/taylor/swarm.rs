@@ -218,11 +218,11 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
 
             let remaining =
                 self.target.minus(L::from_array(&self.elapsed.value), L::from_array(&self.elapsed.rest));
-            let step = sizes.from_log2_radius(L::from_array(&self.series.log2_radius));
+            let step = sizes.at_log2_radius(L::from_array(&self.series.log2_radius));
             let all = (1 << L::COUNT) - 1;
             let last = !step.less(remaining.abs()) & all;
             let spread = self.series.newest::<L>();
-            let infinite = !(spread - spread).less(L::from_f64(1.0)) & all;
+            let infinite = !spread.abs().less(L::from_f64(f64::INFINITY)) & all;
             let floor = infinite | (step.less(L::from_f64(STEP_FLOOR)) & !last);
             let lanes = last | floor | zero.less(L::from_array(&self.watched));
             let length = step * L::from_array(&self.direction);

@@ -40,17 +40,17 @@ pub(super) static WEIGHT_PAIRS: [[Quad<f64>; TERMS]; TERMS] = {
     pairs
 };
 
-/// −1/((k + 1)(k + 2)), from the series of what pulls back to that of the position, and what rounding it lost: left
+/// 1/((k + 1)(k + 2)), from the series of the acceleration to that of the position, and what rounding it lost: left
 /// out, that would bend every step the same way, and the Jacobi constant would drift linearly.
 pub(super) const TWICE_INTEGRATED: [(f64, f64); TERMS] = {
     let mut factors = [(0.0, 0.0); TERMS];
     let mut k = 0;
     while k < TERMS {
         let divisor = exact((k + 1) * (k + 2));
-        let factor = -1.0 / divisor;
-        // The remainder −1 − factor · divisor, exactly, the factor split so that both products are exact.
+        let factor = 1.0 / divisor;
+        // The remainder 1 − factor · divisor, exactly, the factor split so that both products are exact.
         let high = f64::from_bits(factor.to_bits() & !((1 << 27) - 1));
-        let rest = ((-1.0 - high * divisor) - (factor - high) * divisor) / divisor;
+        let rest = ((1.0 - high * divisor) - (factor - high) * divisor) / divisor;
         factors[k] = (factor, rest);
         k += 1;
     }

@@ -1,7 +1,7 @@
 //! Stopping, counted in polls and steps, never in seconds.
 
 use mechanics::interrupt::{AfterPolls, Stop};
-use mechanics::propagation::{Failure, Outcome, Request, Sampling, solve};
+use mechanics::propagation::{Failure, MatrixOutput, Outcome, Request, Sampling, solve};
 
 use super::{HALO, MU, parts, run};
 
@@ -13,16 +13,44 @@ fn cancellation_ends_at_the_next_poll() {
 
 #[test]
 fn the_time_granted_ends_a_trajectory_with_what_there_is() {
-    let mut three = parts(MU, HALO, 100.0);
-    three.states = vec![three.states[0]; 3];
-    let request = Request::new(three).expect("valid");
+    // Matrices of samples are computed one trajectory after the other.
+    let mut two = parts(MU, HALO, 100.0);
+    two.states = vec![two.states[0]; 2];
+    two.matrix = MatrixOutput::Samples;
+    two.sampling = Sampling::Count(2);
+    let request = Request::new(two).expect("valid");
     // One poll starts the first trajectory, three more pass within it.
     let all = solve(&request, &AfterPolls::new(4, Stop::WallTime)).expect("not cancelled");
     assert_eq!(all[0].outcome, Outcome::WallTimeLimit);
-    assert_eq!(all[0].evidence.steps, 64 * 4 - 1);
+    assert_eq!(all[0].evidence.steps, 64 * 4);
     assert!(all[0].last.time > 0.0 && all[0].last.time < 100.0);
-    assert!(all[1..].iter().all(|t| t.outcome == Outcome::NotStarted));
-    assert_eq!(all[2].last.position.x.to_bits(), HALO[0].to_bits());
+    assert_eq!(all[1].outcome, Outcome::NotStarted);
+    assert_eq!(all[1].last.position.x.to_bits(), HALO[0].to_bits());
+}
+
+#[test]
+fn the_time_granted_ends_trajectories_side_by_side() {
+    let mut many = parts(MU, HALO, 1000.0);
+    many.states = vec![many.states[0]; 20];
+    let request = Request::new(many).expect("valid");
+    let lanes = request.lanes();
+    // Each start polls once, then all of them together after 64 steps of each.
+    let polls = u64::try_from(lanes).expect("few") + 3;
+    let all = solve(&request, &AfterPolls::new(polls, Stop::WallTime)).expect("not cancelled");
+    for (index, trajectory) in all.iter().enumerate() {
+        assert_eq!(trajectory.index, index);
+        if index < lanes {
+            assert_eq!((trajectory.outcome, trajectory.evidence.steps), (Outcome::WallTimeLimit, 64 * 4));
+            assert_eq!(trajectory.last, all[0].last);
+        } else {
+            assert_eq!((trajectory.outcome, trajectory.evidence.steps), (Outcome::NotStarted, 0));
+        }
+    }
+    assert_eq!(
+        solve(&request, &AfterPolls::new(polls, Stop::Cancelled)),
+        Err(Failure::Cancelled),
+        "nobody waits for it"
+    );
 }
 
 #[test]

@@ -65,6 +65,7 @@ fn jacobi_constant_of_regular_orbits_over_a_thousand_revolutions() {
         let drift = |revolutions: f64| run(parts(MU, start, revolutions * period)).evidence.jacobi_drift;
         let (hundred, thousand) = (drift(100.0), drift(1000.0));
         assert!(thousand < 1e-13, "{thousand}");
-        assert!(thousand < 8.0 * hundred.max(5e-15), "{hundred} then {thousand}");
+        // A hundred revolutions may by chance end where they began; a walk of their steps reaches about 1e-14.
+        assert!(thousand < 8.0 * hundred.max(1e-14), "{hundred} then {thousand}");
     }
 }

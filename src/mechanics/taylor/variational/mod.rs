@@ -126,6 +126,7 @@ fn integrated<R: Real>(k: usize, forces: Sums<R>, [rate_x, rate_y, _]: [R; 3]) -
 }
 
 /// Sums of the products of the gradient with a column: two an axis, so that neither waits for itself.
+#[derive(Clone, Copy)]
 struct Sums<R> {
     in_plane: [R; 3],
     vertical: [R; 3],
