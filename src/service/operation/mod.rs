@@ -1,0 +1,207 @@
+//! The way from a body to an answer, the same for every computation: decode, check, compute, write. Where each part
+//! runs is decided here.
+
+mod items;
+mod run;
+mod stream;
+
+use std::sync::Arc;
+use std::time::{Duration, Instant};
+
+use axum::response::{IntoResponse, Response};
+use bytes::Bytes;
+use serde::Serialize;
+use sha2::{Digest, Sha256};
+
+use crate::answer::{Answer, Effort, JSON, NDJSON};
+use crate::config::Limits;
+use crate::decode::{Decode, Errors, Node, Path, parse};
+use crate::extract::Submission;
+use crate::pool::{Context, Place};
+use crate::problem::Problem;
+use crate::state::App;
+
+pub use items::{Items, LARGEST_PART, Lines, Out, Tally, each};
+use run::Run;
+
+/// A computation that can be asked for.
+pub trait Operation: Decode + 'static {
+    /// The checked request: everything in it can be computed.
+    type Task: Send + 'static;
+    /// The representations there are, the default first.
+    const OFFERED: &'static [&'static str] = &[JSON];
+
+    /// Checks what the members' own types could not, and reports every fault. Where the answer is streamed, `limits` has
+    /// no bound on the numbers in it.
+    fn check(self, limits: &Limits, errors: &mut Errors) -> Option<Self::Task>;
+
+    /// About how long it will take. What takes longer than [`IN_PLACE`] goes to the compute threads.
+    fn cost(task: &Self::Task) -> Duration;
+
+    /// The time that the request asks for; the server's own if it asks for none.
+    fn wall_time(_task: &Self::Task) -> Option<Duration> {
+        None
+    }
+
+    /// The computation; one that gives [`Work::Lines`] where `streamed`.
+    fn work(task: Self::Task, streamed: bool) -> Work;
+}
+
+/// A computation that is ready to begin.
+pub enum Work {
+    /// In one piece.
+    Whole(Box<dyn FnOnce(&Context) -> Result<Answer, Problem> + Send>),
+    /// Item by item, in parts that compute threads share, for an answer that is sent when it is complete.
+    Items(Arc<dyn Items>),
+    /// The same for an answer that is sent while it is computed.
+    Lines(Arc<dyn Lines>),
+}
+
+impl Work {
+    /// The computation of an answer's body and of its effort, in one piece.
+    pub fn whole<T: Serialize>(
+        solve: impl FnOnce(&Context) -> Result<(T, Effort), Problem> + Send + 'static,
+    ) -> Self {
+        Self::Whole(Box::new(move |context| {
+            let begun = Instant::now();
+            let (output, effort) = solve(context)?;
+            let compute = begun.elapsed();
+            Ok(Answer::json(&output)?.computed(compute, effort))
+        }))
+    }
+}
+
+/// A computation no longer than this is done on the thread that serves HTTP.
+pub const IN_PLACE: Duration = Duration::from_micros(20);
+/// A body no longer than this is decoded on the thread that serves HTTP.
+pub const SMALL_BODY: usize = 64 << 10;
+/// Memory granted to the tree of a body, in bytes per byte of the largest body. Numbers take 4 at most.
+const TREE_FACTOR: usize = 8;
+/// Bytes of an answer whose digest is worked out in one piece, some tenths of a millisecond.
+const DIGESTED: usize = 1 << 20;
+
+/// Answers a submission of the operation `O`.
+///
+/// # Errors
+/// The problem with the request, or that the mathematics met.
+pub async fn answer<O: Operation>(app: App, submission: Submission) -> Result<Response, Problem> {
+    let streamed = submission.negotiate(O::OFFERED)? == NDJSON;
+    let mut limits = app.config.limits;
+    if streamed {
+        limits.sample_values = u64::MAX;
+    }
+    let (task, place, origin) = if submission.body().len() > SMALL_BODY {
+        let place = app.pool.place()?;
+        let decode = move |_: &Context| (prepare::<O>(submission.body(), &limits), submission.into_origin());
+        let (task, origin) = place.run(decode).await?;
+        (task?, Some(place), origin)
+    } else {
+        (prepare::<O>(submission.body(), &limits)?, None, submission.into_origin())
+    };
+    let wall_time = O::wall_time(&task).unwrap_or(limits.wall_time);
+    let in_place = place.is_none() && O::cost(&task) <= IN_PLACE;
+    let place = || place.map_or_else(|| app.pool.place(), Ok);
+    let answer = match O::work(task, streamed) {
+        Work::Lines(lines) => {
+            return stream::response(lines, place()?, wall_time, app.config.times.send, origin);
+        }
+        Work::Whole(solve) if in_place => solve(&granted(&Context::in_place(&app.pool), wall_time)),
+        Work::Whole(solve) => {
+            let place = place()?;
+            let answer = place.run(move |context| solve(&granted(context, wall_time))).await?;
+            place.finish();
+            answer
+        }
+        Work::Items(items) if in_place => {
+            at_once(&*items, &granted(&Context::in_place(&app.pool), wall_time))
+        }
+        Work::Items(items) => collected(items, place()?, wall_time).await,
+    };
+    answer.map(IntoResponse::into_response)
+}
+
+fn granted(context: &Context, wall_time: Duration) -> Context {
+    context.grant(wall_time);
+    context.clone()
+}
+
+fn prepare<O: Operation>(body: &[u8], limits: &Limits) -> Result<O::Task, Problem> {
+    let node: Node<'_> = parse(body, limits.body_bytes.saturating_mul(TREE_FACTOR))?;
+    let mut errors = Errors::default();
+    let task =
+        O::decode(&node, Path::ROOT, &mut errors).and_then(|request| request.check(limits, &mut errors));
+    errors.finish(task)
+}
+
+/// The answer of a few items, on this thread.
+fn at_once(items: &dyn Items, context: &Context) -> Result<Answer, Problem> {
+    let begun = Instant::now();
+    let mut chunks = Vec::new();
+    let mut take = |chunk: Bytes| {
+        chunks.push(chunk);
+        Ok(())
+    };
+    let mut out = Out::new(false, &mut take);
+    items.compute(0..items.count(), &mut out, context.interrupt())?;
+    out.finish()?;
+    let compute = begun.elapsed();
+    let chunks = enveloped(items, chunks)?;
+    let mut digest = Sha256::new();
+    chunks.iter().for_each(|chunk| digest.update(chunk));
+    Ok(Answer::in_chunks(JSON, chunks, digest).computed(compute, items.effort()))
+}
+
+/// The answer of many items, each part of them computed and written by a compute thread.
+async fn collected(items: Arc<dyn Items>, place: Place, wall_time: Duration) -> Result<Answer, Problem> {
+    let run = Run::new(place, Arc::clone(&items), false, wall_time);
+    let mut chunks = Vec::new();
+    while let Some(chunk) = run.next().await {
+        chunks.push(chunk?);
+    }
+    let compute = run.elapsed();
+    let chunks = enveloped(&*items, chunks)?;
+    let mut digest = Sha256::new();
+    let mut rest = &*chunks;
+    while !rest.is_empty() {
+        let mut size = 0;
+        let fits = |chunk: &&Bytes| {
+            size += chunk.len();
+            size <= DIGESTED
+        };
+        let (piece, others) = rest.split_at(rest.iter().take_while(fits).count().max(1));
+        let piece = piece.to_vec();
+        digest = run
+            .place()
+            .run(move |_| {
+                piece.iter().for_each(|chunk| digest.update(chunk));
+                digest
+            })
+            .await?;
+        rest = others;
+    }
+    run.place().finish();
+    Ok(Answer::in_chunks(JSON, chunks, digest).computed(compute, items.effort()))
+}
+
+/// The items, each after a comma, in the array that the envelope ends with.
+fn enveloped(items: &dyn Items, mut chunks: Vec<Bytes>) -> Result<Vec<Bytes>, Problem> {
+    const END: &[u8] = b"]}";
+    let mut envelope = items.envelope()?;
+    debug_assert!(envelope.ends_with(b"[]}"), "the items go into the last member");
+    envelope.truncate(envelope.len() - END.len());
+    if let [first, ..] = &mut *chunks {
+        let comma = first.split_to(1);
+        debug_assert_eq!(&*comma, b",");
+    }
+    // A short answer is one piece, as its client gets it.
+    if let [only] = &*chunks
+        && only.len() <= SMALL_BODY
+    {
+        envelope.extend_from_slice(only);
+        envelope.extend_from_slice(END);
+        return Ok(vec![envelope.into()]);
+    }
+    chunks.insert(0, envelope.into());
+    chunks.push(Bytes::from_static(END));
+    Ok(chunks)
+}
