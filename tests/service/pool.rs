@@ -1,6 +1,5 @@
 //! The compute threads. Cancellation is observed by polls and signals, never by time.
 
-use std::sync::atomic::{AtomicUsize, Ordering};
 use std::sync::{Arc, mpsc};
 use std::time::Duration;
 

@@ -425,18 +425,6 @@ fn each_fault_has_its_pointer_and_all_come_at_once() {
 }
 
 #[test]
-fn streams_are_not_offered() {
-    let server = Server::start();
-    let body = halo().to_string();
-    let reply = server.send(&format!(
-        "POST {PATH} HTTP/1.1\r\nhost: t\r\nconnection: close\r\ncontent-type: application/json\r\n\
-         accept: application/x-ndjson\r\ncontent-length: {}\r\n\r\n{body}",
-        body.len()
-    ));
-    assert_eq!(reply.problem("not-acceptable")["offered"], json!(["application/json"]));
-}
-
-#[test]
 fn many_states_come_back_in_order() {
     let server = Server::start();
     let states: Vec<Value> = (0..200)

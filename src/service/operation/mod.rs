@@ -16,7 +16,7 @@ use sha2::{Digest, Sha256};
 use crate::answer::{Answer, Effort, JSON, NDJSON};
 use crate::config::Limits;
 use crate::decode::{Decode, Errors, Node, Path, parse};
-use crate::extract::Submission;
+use crate::extract::{Origin, Submission};
 use crate::pool::{Context, Place};
 use crate::problem::Problem;
 use crate::state::App;
@@ -92,11 +92,11 @@ pub async fn answer<O: Operation>(app: App, submission: Submission) -> Result<Re
     }
     let (task, place, origin) = if submission.body().len() > SMALL_BODY {
         let place = app.pool.place()?;
-        let decode = move |_: &Context| (prepare::<O>(submission.body(), &limits), submission.into_origin());
-        let (task, origin) = place.run(decode).await?;
-        (task?, Some(place), origin)
+        let (task, origin) = place.run(move |_| prepare::<O>(submission, &limits)).await??;
+        (task, Some(place), origin)
     } else {
-        (prepare::<O>(submission.body(), &limits)?, None, submission.into_origin())
+        let (task, origin) = prepare::<O>(submission, &limits)?;
+        (task, None, origin)
     };
     let wall_time = O::wall_time(&task).unwrap_or(limits.wall_time);
     let in_place = place.is_none() && O::cost(&task) <= IN_PLACE;
@@ -106,12 +106,7 @@ pub async fn answer<O: Operation>(app: App, submission: Submission) -> Result<Re
             return stream::response(lines, place()?, wall_time, app.config.times.send, origin);
         }
         Work::Whole(solve) if in_place => solve(&granted(&Context::in_place(&app.pool), wall_time)),
-        Work::Whole(solve) => {
-            let place = place()?;
-            let answer = place.run(move |context| solve(&granted(context, wall_time))).await?;
-            place.finish();
-            answer
-        }
+        Work::Whole(solve) => place()?.run(move |context| solve(&granted(context, wall_time))).await?,
         Work::Items(items) if in_place => {
             at_once(&*items, &granted(&Context::in_place(&app.pool), wall_time))
         }
@@ -125,12 +120,16 @@ fn granted(context: &Context, wall_time: Duration) -> Context {
     context.clone()
 }
 
-fn prepare<O: Operation>(body: &[u8], limits: &Limits) -> Result<O::Task, Problem> {
-    let node: Node<'_> = parse(body, limits.body_bytes.saturating_mul(TREE_FACTOR))?;
+/// Decodes and checks. The body and its tree, which may be large, are gone before the checked request is put together.
+fn prepare<O: Operation>(submission: Submission, limits: &Limits) -> Result<(O::Task, Origin), Problem> {
     let mut errors = Errors::default();
-    let task =
-        O::decode(&node, Path::ROOT, &mut errors).and_then(|request| request.check(limits, &mut errors));
-    errors.finish(task)
+    let request = {
+        let node: Node<'_> = parse(submission.body(), limits.body_bytes.saturating_mul(TREE_FACTOR))?;
+        O::decode(&node, Path::ROOT, &mut errors)
+    };
+    let origin = submission.into_origin();
+    let task = request.and_then(|request| request.check(limits, &mut errors));
+    errors.finish(task).map(|task| (task, origin))
 }
 
 /// The answer of a few items, on this thread.
@@ -160,8 +159,16 @@ async fn collected(items: Arc<dyn Items>, place: Place, wall_time: Duration) -> 
     }
     let compute = run.elapsed();
     let chunks = enveloped(&*items, chunks)?;
+    let digest = match run.into_place() {
+        Some(place) => digested(&chunks, place).await?,
+        None => Sha256::new(),
+    };
+    Ok(Answer::in_chunks(JSON, chunks, digest).computed(compute, items.effort()))
+}
+
+/// The digest of a body, worked out by compute threads, piece by piece.
+async fn digested(mut rest: &[Bytes], place: Place) -> Result<Sha256, Problem> {
     let mut digest = Sha256::new();
-    let mut rest = &*chunks;
     while !rest.is_empty() {
         let mut size = 0;
         let fits = |chunk: &&Bytes| {
@@ -170,17 +177,14 @@ async fn collected(items: Arc<dyn Items>, place: Place, wall_time: Duration) -> 
         };
         let (piece, others) = rest.split_at(rest.iter().take_while(fits).count().max(1));
         let piece = piece.to_vec();
-        digest = run
-            .place()
-            .run(move |_| {
-                piece.iter().for_each(|chunk| digest.update(chunk));
-                digest
-            })
-            .await?;
+        let hash = move |_: &Context| {
+            piece.iter().for_each(|chunk| digest.update(chunk));
+            digest
+        };
+        digest = place.run(hash).await?;
         rest = others;
     }
-    run.place().finish();
-    Ok(Answer::in_chunks(JSON, chunks, digest).computed(compute, items.effort()))
+    Ok(digest)
 }
 
 /// The items, each after a comma, in the array that the envelope ends with.

@@ -31,10 +31,7 @@ const PARTS_AHEAD: usize = 2;
 const PIECE: usize = 64 << 10;
 
 /// The items of one request while they are computed, for whoever reads them. Dropping it cancels the computation.
-pub(super) struct Run {
-    shared: Arc<Shared>,
-    place: Place,
-}
+pub(super) struct Run(Arc<Shared>);
 
 pub(super) struct Shared {
     items: Arc<dyn Items>,
@@ -47,6 +44,8 @@ pub(super) struct Shared {
 }
 
 struct State {
+    /// Where it is computed; none once that is over.
+    place: Option<Place>,
     /// The first item that nobody has taken.
     next: usize,
     /// Parts that are taken and not yet read; the reader is at the first.
@@ -63,7 +62,6 @@ struct State {
     pace: Option<Duration>,
     begun: Option<Instant>,
     reader: Reader,
-    abandoned: bool,
 }
 
 /// What the reader does.
@@ -85,7 +83,9 @@ impl Run {
     /// Items to be computed in this place, within `wall_time` of computing; `streamed` to write lines and to hold back
     /// what the reader has no room for.
     pub(super) fn new(place: Place, items: Arc<dyn Items>, streamed: bool, wall_time: Duration) -> Self {
+        let (watch, pool) = (Arc::clone(place.watch()), place.pool().clone());
         let state = State {
+            place: Some(place),
             next: 0,
             parts: VecDeque::new(),
             read: 0,
@@ -95,36 +95,34 @@ impl Run {
             pace: None,
             begun: None,
             reader: Reader::Busy(Instant::now()),
-            abandoned: false,
         };
-        let (watch, pool) = (Arc::clone(place.watch()), place.pool().clone());
         let (state, room) = (Mutex::new(state), Condvar::new());
-        Self { shared: Arc::new(Shared { items, streamed, watch, pool, state, room }), place }
+        Self(Arc::new(Shared { items, streamed, watch, pool, state, room }))
     }
 
     /// What is written next, once it is; nothing after the last item. A problem is the last that comes.
     pub(super) fn poll_next(&self, context: &Context<'_>) -> Poll<Option<Result<Bytes, Problem>>> {
-        let state = &mut *self.shared.lock();
+        let state = &mut *self.0.lock();
         state.reader = Reader::Busy(Instant::now());
         loop {
             let Some(part) = state.parts.front_mut() else {
-                if state.next == self.shared.items.count() {
+                if state.next == self.0.items.count() {
                     return Poll::Ready(None);
                 }
                 break;
             };
             if let Some(mut chunk) = part.chunks.pop_front() {
-                if self.shared.streamed && chunk.len() > PIECE {
+                if self.0.streamed && chunk.len() > PIECE {
                     part.chunks.push_front(chunk.split_off(PIECE));
                 }
                 part.size -= chunk.len();
-                self.shared.room.notify_all();
+                self.0.room.notify_all();
                 return Poll::Ready(Some(Ok(chunk)));
             }
             match part.end.take() {
                 None => break,
                 Some(Err(problem)) => {
-                    self.shared.abandon(state);
+                    self.0.abandon(state);
                     return Poll::Ready(Some(Err(problem)));
                 }
                 Some(Ok(())) => {
@@ -133,7 +131,7 @@ impl Run {
                 }
             }
         }
-        if self.shared.watch.is_cancelled() {
+        if self.0.watch.is_cancelled() {
             return Poll::Ready(Some(Err(stopping())));
         }
         state.reader = Reader::Waits(context.waker().clone());
@@ -148,44 +146,44 @@ impl Run {
 
     /// Calls as many threads as find something to do.
     fn call_hands(&self, state: &mut State) {
-        let left = (self.shared.items.count() - state.next).div_ceil(SMALLEST_PART);
-        let free = self.shared.pool.threads().saturating_sub(state.hands - state.idle);
-        for _ in 0..free.min(left).min(self.shared.room_for_parts(state)) {
+        let left = (self.0.items.count() - state.next).div_ceil(SMALLEST_PART);
+        let free = self.0.pool.threads().saturating_sub(state.hands - state.idle);
+        for _ in 0..free.min(left).min(self.0.room_for_parts(state)) {
+            let (Some(place), shared) = (&state.place, Arc::clone(&self.0)) else { return };
             state.hands += 1;
-            let shared = Arc::clone(&self.shared);
-            self.place.enlist(move || shared.step());
+            place.enlist(move || shared.step());
         }
     }
 
     /// How long it has been computed.
     pub(super) fn elapsed(&self) -> Duration {
-        self.shared.lock().begun.map_or(Duration::ZERO, |begun| begun.elapsed())
+        self.0.lock().begun.map_or(Duration::ZERO, |begun| begun.elapsed())
     }
 
     /// For whoever watches the reader's patience.
     pub(super) fn shared(&self) -> Weak<Shared> {
-        Arc::downgrade(&self.shared)
+        Arc::downgrade(&self.0)
     }
 
     /// Whether the reader has let what there is for it lie for that long.
     pub(super) fn lies_for(&self, time: Duration) -> bool {
-        self.shared.lies_for() >= time
+        self.0.lies_for() >= time
     }
 
     /// Whether the reader was given up.
     pub(super) fn is_given_up(&self) -> bool {
-        self.shared.lock().abandoned
+        self.0.lock().place.is_none()
     }
 
-    /// The place, to be used on or given back when all is computed.
-    pub(super) fn place(&self) -> &Place {
-        &self.place
+    /// The place, once everything is computed.
+    pub(super) fn into_place(self) -> Option<Place> {
+        self.0.lock().place.take()
     }
 }
 
 impl Drop for Run {
     fn drop(&mut self) {
-        self.shared.abandon(&mut self.shared.lock());
+        self.0.abandon(&mut self.0.lock());
     }
 }
 
@@ -212,9 +210,8 @@ impl Shared {
     }
 
     fn abandon(&self, state: &mut State) {
-        state.abandoned = true;
+        state.place = None;
         state.parts.clear();
-        self.watch.cancel();
         self.room.notify_all();
     }
 
@@ -247,8 +244,7 @@ impl Shared {
     fn take(&self) -> Option<(usize, Range<usize>)> {
         let state = &mut *self.lock();
         let left = self.items.count() - state.next;
-        let cancelled = state.abandoned || self.watch.is_cancelled();
-        if cancelled || left == 0 || self.room_for_parts(state) == 0 {
+        if self.watch.is_cancelled() || left == 0 || self.room_for_parts(state) == 0 {
             state.hands -= 1;
             self.hold_clock_if_idle(state);
             state.tell_reader(state.read);

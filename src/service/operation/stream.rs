@@ -42,12 +42,11 @@ pub(super) fn response(
     let ending = Arc::new(OnceLock::new());
     let body = LineStream {
         first: Some(first),
-        run,
+        run: Some(run),
         lines,
         patience,
         origin,
         ending: Arc::clone(&ending),
-        done: false,
     };
     let mut response = Response::new(Body::from_stream(body));
     response.headers_mut().insert(header::CONTENT_TYPE, HeaderValue::from_static(NDJSON));
@@ -85,19 +84,20 @@ fn line(write: impl FnOnce(&mut Out<'_>) -> Result<(), Problem>) -> Result<Bytes
 
 struct LineStream {
     first: Option<Bytes>,
-    run: Run,
+    /// None once everything is computed, or something went wrong.
+    run: Option<Run>,
     lines: Arc<dyn Lines>,
     patience: Duration,
     origin: Origin,
     ending: Arc<OnceLock<Effort>>,
-    done: bool,
 }
 
 impl LineStream {
     /// The last line: the summary, or what went wrong.
     fn last(&mut self, end: Result<(), Problem>) -> Bytes {
-        self.done = true;
-        self.run.place().finish();
+        if let Some(place) = self.run.take().and_then(Run::into_place) {
+            place.finish();
+        }
         match end.and_then(|()| line(|out| self.lines.summary(out))) {
             Ok(summary) => {
                 let _ = self.ending.set(self.lines.effort());
@@ -117,18 +117,16 @@ impl Stream for LineStream {
     type Item = io::Result<Bytes>;
 
     fn poll_next(mut self: Pin<&mut Self>, context: &mut Context<'_>) -> Poll<Option<io::Result<Bytes>>> {
-        if self.done {
-            return Poll::Ready(None);
-        }
         if let Some(first) = self.first.take() {
             return Poll::Ready(Some(Ok(first)));
         }
-        if self.run.is_given_up() {
-            self.done = true;
+        let Some(run) = &self.run else { return Poll::Ready(None) };
+        if run.is_given_up() {
+            self.run = None;
             let _ = self.ending.set(NOT_READ);
             return Poll::Ready(Some(Err(io::ErrorKind::TimedOut.into())));
         }
-        self.run.poll_next(context).map(|next| match next {
+        run.poll_next(context).map(|next| match next {
             Some(Ok(chunk)) => Some(Ok(chunk)),
             Some(Err(problem)) => Some(Ok(self.last(Err(problem)))),
             None => Some(Ok(self.last(Ok(())))),
@@ -138,7 +136,9 @@ impl Stream for LineStream {
 
 impl Drop for LineStream {
     fn drop(&mut self) {
-        if !self.done && self.run.lies_for(self.patience) {
+        // The connection's own time-out begins a moment before the last piece is taken.
+        let patience = self.patience / 2;
+        if self.run.as_ref().is_some_and(|run| run.is_given_up() || run.lies_for(patience)) {
             let _ = self.ending.set(NOT_READ);
         }
     }

@@ -80,6 +80,7 @@ impl Pool {
             watch: Arc::new(Watch::new(&self.0.closing)),
             permit: Mutex::new(Some(permit)),
             begun: AtomicBool::new(false),
+            busy: AtomicBool::new(false),
         };
         Ok(Place { pool: self.clone(), held: Arc::new(held) })
     }
@@ -92,10 +93,7 @@ impl Pool {
         &self,
         work: impl FnOnce(&Context) -> T + Send + 'static,
     ) -> Result<T, Problem> {
-        let place = self.place()?;
-        let value = place.run(work).await?;
-        place.finish();
-        Ok(value)
+        self.place()?.run(work).await
     }
 
     /// How many computations would be taken now.
@@ -168,6 +166,8 @@ struct Held {
     watch: Arc<Watch>,
     permit: Mutex<Option<OwnedSemaphorePermit>>,
     begun: AtomicBool,
+    /// Whether a thread is at work in it or called to it.
+    busy: AtomicBool,
 }
 
 impl Held {
@@ -222,7 +222,9 @@ impl Place {
             }
             false
         });
-        match answered.await {
+        let answered = answered.await;
+        self.held.busy.store(false, Ordering::Relaxed);
+        match answered {
             Ok(Ok(value)) => Ok(value),
             Ok(Err(panic)) => resume_unwind(panic),
             Err(_) => Err(Problem::overloaded("The server is stopping")),
@@ -233,6 +235,7 @@ impl Place {
     /// cancelled before it begins.
     pub fn enlist(&self, mut piece: impl FnMut() -> bool + Send + 'static) {
         let held = Arc::clone(&self.held);
+        held.busy.store(true, Ordering::Relaxed);
         self.pool.send(Box::new(move || {
             if !held.begun.load(Ordering::Relaxed) && held.watch.is_cancelled() {
                 return false;
@@ -251,6 +254,9 @@ impl Place {
 impl Drop for Place {
     fn drop(&mut self) {
         self.held.watch.cancel();
+        if !self.held.busy.load(Ordering::Relaxed) {
+            self.held.release();
+        }
     }
 }
 

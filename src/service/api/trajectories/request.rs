@@ -160,7 +160,7 @@ impl Task {
 
 fn count_states(states: &Field<StatesSpec>, limits: &Limits, errors: &mut Errors) -> bool {
     let Field::Given(states) = states else { return true };
-    let count = states.states.len() as u64;
+    let count = states.count() as u64;
     if count > limits.states {
         errors.beyond(Path::ROOT.member("initial_states"), "states", limits.states, count);
     }
