@@ -75,6 +75,9 @@ impl Work {
 pub const IN_PLACE: Duration = Duration::from_micros(20);
 /// A body no longer than this is decoded on the thread that serves HTTP.
 pub const SMALL_BODY: usize = 64 << 10;
+/// A body longer than this takes more than a few milliseconds to decode, which cannot be done in parts: another thread
+/// computes meanwhile.
+const LARGE_BODY: usize = 1 << 20;
 /// Memory granted to the tree of a body, in bytes per byte of the largest body. Numbers take 4 at most.
 const TREE_FACTOR: usize = 8;
 /// Bytes of an answer whose digest is worked out in one piece, some tenths of a millisecond.
@@ -92,7 +95,12 @@ pub async fn answer<O: Operation>(app: App, submission: Submission) -> Result<Re
     }
     let (task, place, origin) = if submission.body().len() > SMALL_BODY {
         let place = app.pool.place()?;
-        let (task, origin) = place.run(move |_| prepare::<O>(submission, &limits)).await??;
+        let pool = app.pool.clone();
+        let prepare = move |_: &Context| match submission.body().len() {
+            0..=LARGE_BODY => prepare::<O>(submission, &limits),
+            _ => pool.stand_in(|| prepare::<O>(submission, &limits)),
+        };
+        let (task, origin) = place.run(prepare).await??;
         (task, Some(place), origin)
     } else {
         let (task, origin) = prepare::<O>(submission, &limits)?;

@@ -20,9 +20,8 @@ use crate::problem::Problem;
 
 /// How long a part should take: that long others wait for a thread. Longer ones would hardly be computed faster.
 const PART_TIME: Duration = Duration::from_millis(2);
-/// The fewest items of a part, as many as are computed together. How long an item takes is not known before the first
-/// parts are done.
-const SMALLEST_PART: usize = 8;
+/// The fewest items of a part. How long an item takes is not known before the first parts are done.
+const SMALLEST_PART: usize = 16;
 /// What a part of a stream may hold for its reader, in bytes.
 const PART_ROOM: usize = 512 << 10;
 /// Parts of a stream that may be held for its reader besides one for each thread.
@@ -62,6 +61,8 @@ struct State {
     pace: Option<Duration>,
     begun: Option<Instant>,
     reader: Reader,
+    /// How long the reader let the piece before lie.
+    lay: Duration,
 }
 
 /// What the reader does.
@@ -70,6 +71,15 @@ enum Reader {
     Waits(Waker),
     /// Was given something, or told that there is something, at that instant, and has not asked since.
     Busy(Instant),
+}
+
+impl Reader {
+    fn lies_for(&self) -> Duration {
+        match self {
+            Self::Waits(_) => Duration::ZERO,
+            Self::Busy(since) => since.elapsed(),
+        }
+    }
 }
 
 #[derive(Default)]
@@ -95,6 +105,7 @@ impl Run {
             pace: None,
             begun: None,
             reader: Reader::Busy(Instant::now()),
+            lay: Duration::ZERO,
         };
         let (state, room) = (Mutex::new(state), Condvar::new());
         Self(Arc::new(Shared { items, streamed, watch, pool, state, room }))
@@ -103,6 +114,7 @@ impl Run {
     /// What is written next, once it is; nothing after the last item. A problem is the last that comes.
     pub(super) fn poll_next(&self, context: &Context<'_>) -> Poll<Option<Result<Bytes, Problem>>> {
         let state = &mut *self.0.lock();
+        state.lay = state.reader.lies_for();
         state.reader = Reader::Busy(Instant::now());
         loop {
             let Some(part) = state.parts.front_mut() else {
@@ -165,9 +177,10 @@ impl Run {
         Arc::downgrade(&self.0)
     }
 
-    /// Whether the reader has let what there is for it lie for that long.
-    pub(super) fn lies_for(&self, time: Duration) -> bool {
-        self.0.lies_for() >= time
+    /// Whether the reader has let what there was for it lie for that long, now or the last time.
+    pub(super) fn lay_for(&self, time: Duration) -> bool {
+        let state = self.0.lock();
+        state.lay.max(state.reader.lies_for()) >= time
     }
 
     /// Whether the reader was given up.
@@ -198,10 +211,7 @@ impl Shared {
 
     /// How long the reader has let what there is for it lie.
     pub(super) fn lies_for(&self) -> Duration {
-        match self.lock().reader {
-            Reader::Waits(_) => Duration::ZERO,
-            Reader::Busy(since) => since.elapsed(),
-        }
+        self.lock().reader.lies_for()
     }
 
     /// Nobody reads any more.

@@ -136,9 +136,9 @@ impl Stream for LineStream {
 
 impl Drop for LineStream {
     fn drop(&mut self) {
-        // The connection's own time-out begins a moment before the last piece is taken.
+        // The connection may have given up first, and have asked for more on the way.
         let patience = self.patience / 2;
-        if self.run.as_ref().is_some_and(|run| run.is_given_up() || run.lies_for(patience)) {
+        if self.run.as_ref().is_some_and(|run| run.is_given_up() || run.lay_for(patience)) {
             let _ = self.ending.set(NOT_READ);
         }
     }

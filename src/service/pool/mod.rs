@@ -113,13 +113,13 @@ impl Pool {
         self.0.closing.store(true, Ordering::Relaxed);
     }
 
-    /// Lets another thread take this one's place while it waits for something that is no computation.
-    pub fn stand_in<T>(&self, wait: impl FnOnce() -> T) -> T {
+    /// Lets another thread take this one's place while it waits for something, or does what cannot be done in pieces.
+    pub fn stand_in<T>(&self, work: impl FnOnce() -> T) -> T {
         let replaced = self.spawn("compute-stand-in".to_owned());
         if let Err(error) = &replaced {
-            tracing::warn!(%error, "no thread stands in for one that waits for a reader");
+            tracing::warn!(%error, "no thread stands in for another");
         }
-        let value = wait();
+        let value = work();
         if replaced.is_ok() {
             self.0.surplus.fetch_add(1, Ordering::Relaxed);
         }
