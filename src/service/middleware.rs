@@ -56,16 +56,12 @@ pub async fn observe(State(_app): State<App>, mut request: Request, next: Next) 
     headers.insert(X_REQUEST_ID, line.id.clone());
     headers.insert(header::X_CONTENT_TYPE_OPTIONS, HeaderValue::from_static("nosniff"));
     line.status = response.status().as_u16();
-    match response.extensions().get::<Ending>().cloned() {
-        Some(ending) => {
-            line.ending = Some(ending);
-            response.map(|body| Body::new(Streaming { body, line }))
-        }
-        None => {
-            line.write();
-            response
-        }
+    line.ending = response.extensions().get().cloned();
+    if line.ending.is_some() {
+        return response.map(|body| Body::new(Streaming { body, line }));
     }
+    line.write();
+    response
 }
 
 /// A body that is computed while it is sent. Its line in the log is written at its end.

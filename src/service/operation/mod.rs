@@ -47,10 +47,13 @@ pub trait Operation: Decode + 'static {
     fn work(task: Self::Task, streamed: bool) -> Work;
 }
 
+/// A computation in one piece.
+pub type Solve = Box<dyn FnOnce(&Context) -> Result<Answer, Problem> + Send>;
+
 /// A computation that is ready to begin.
 pub enum Work {
     /// In one piece.
-    Whole(Box<dyn FnOnce(&Context) -> Result<Answer, Problem> + Send>),
+    Whole(Solve),
     /// Item by item, in parts that compute threads share, for an answer that is sent when it is complete.
     Items(Arc<dyn Items>),
     /// The same for an answer that is sent while it is computed.
@@ -73,7 +76,7 @@ impl Work {
 
 /// A computation no longer than this is done on the thread that serves HTTP.
 pub const IN_PLACE: Duration = Duration::from_micros(20);
-/// A body no longer than this is decoded on the thread that serves HTTP.
+/// A body no longer than this is decoded, or its digest worked out, on the thread that serves HTTP.
 pub const SMALL_BODY: usize = 64 << 10;
 /// A body longer than this takes more than a few milliseconds to decode, which cannot be done in parts: another thread
 /// computes meanwhile.
@@ -154,7 +157,7 @@ fn at_once(items: &dyn Items, context: &Context) -> Result<Answer, Problem> {
     let compute = begun.elapsed();
     let chunks = enveloped(items, chunks)?;
     let mut digest = Sha256::new();
-    chunks.iter().for_each(|chunk| digest.update(chunk));
+    update(&mut digest, &chunks);
     Ok(Answer::in_chunks(JSON, chunks, digest).computed(compute, items.effort()))
 }
 
@@ -174,9 +177,13 @@ async fn collected(items: Arc<dyn Items>, place: Place, wall_time: Duration) -> 
     Ok(Answer::in_chunks(JSON, chunks, digest).computed(compute, items.effort()))
 }
 
-/// The digest of a body, worked out by compute threads, piece by piece.
+/// The digest of a body; that of a long one is worked out by compute threads, piece by piece.
 async fn digested(mut rest: &[Bytes], place: Place) -> Result<Sha256, Problem> {
     let mut digest = Sha256::new();
+    if rest.iter().map(Bytes::len).sum::<usize>() <= SMALL_BODY {
+        update(&mut digest, rest);
+        return Ok(digest);
+    }
     while !rest.is_empty() {
         let mut size = 0;
         let fits = |chunk: &&Bytes| {
@@ -186,13 +193,19 @@ async fn digested(mut rest: &[Bytes], place: Place) -> Result<Sha256, Problem> {
         let (piece, others) = rest.split_at(rest.iter().take_while(fits).count().max(1));
         let piece = piece.to_vec();
         let hash = move |_: &Context| {
-            piece.iter().for_each(|chunk| digest.update(chunk));
+            update(&mut digest, &piece);
             digest
         };
         digest = place.run(hash).await?;
         rest = others;
     }
     Ok(digest)
+}
+
+fn update(digest: &mut Sha256, chunks: &[Bytes]) {
+    for chunk in chunks {
+        digest.update(chunk);
+    }
 }
 
 /// The items, each after a comma, in the array that the envelope ends with.

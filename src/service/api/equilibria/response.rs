@@ -37,7 +37,7 @@ pub(crate) enum EquilibriaLine<'a> {
     /// The first.
     Header(SweepHeader),
     /// One for each system, in the request's order.
-    Points(EquilibriaOfSystem<'a>),
+    Points(Box<EquilibriaOfSystem<'a>>),
     /// The last of a stream that ends well.
     Summary(SweepSummary),
     /// The last of a stream that does not.

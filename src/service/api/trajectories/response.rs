@@ -46,7 +46,7 @@ pub(super) enum TrajectoriesLine<'a> {
     /// Samples that a trajectory has beyond its last 10,000, before its own line.
     Samples(SamplesLine),
     /// A trajectory, one for each initial state in their order.
-    Trajectory(TrajectoryAnswer<'a>),
+    Trajectory(Box<TrajectoryAnswer<'a>>),
     /// The last of a stream that ends well.
     Summary(TrajectoriesSummary),
     /// The last of a stream that does not.
