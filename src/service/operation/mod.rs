@@ -78,9 +78,9 @@ impl Work {
 pub const IN_PLACE: Duration = Duration::from_micros(20);
 /// A body no longer than this is decoded, or its digest worked out, on the thread that serves HTTP.
 pub const SMALL_BODY: usize = 64 << 10;
-/// A body longer than this takes more than a few milliseconds to decode, which cannot be done in parts: another thread
+/// A body longer than this takes some tens of milliseconds to decode, which cannot be done in parts: another thread
 /// computes meanwhile.
-const LARGE_BODY: usize = 1 << 20;
+const LARGE_BODY: usize = 4 << 20;
 /// Memory granted to the tree of a body, in bytes per byte of the largest body. Numbers take 4 at most.
 const TREE_FACTOR: usize = 8;
 /// Bytes of an answer whose digest is worked out in one piece, some tenths of a millisecond.
