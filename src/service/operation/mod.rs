@@ -170,15 +170,16 @@ async fn collected(items: Arc<dyn Items>, place: Place, wall_time: Duration) -> 
     }
     let compute = run.elapsed();
     let chunks = enveloped(&*items, chunks)?;
-    let digest = match run.into_place() {
-        Some(place) => digested(&chunks, place).await?,
-        None => Sha256::new(),
-    };
+    let mut digest = Sha256::new();
+    if let Some(place) = run.into_place() {
+        digest = digested(&chunks, &place).await?;
+        place.finish();
+    }
     Ok(Answer::in_chunks(JSON, chunks, digest).computed(compute, items.effort()))
 }
 
 /// The digest of a body; that of a long one is worked out by compute threads, piece by piece.
-async fn digested(mut rest: &[Bytes], place: Place) -> Result<Sha256, Problem> {
+async fn digested(mut rest: &[Bytes], place: &Place) -> Result<Sha256, Problem> {
     let mut digest = Sha256::new();
     if rest.iter().map(Bytes::len).sum::<usize>() <= SMALL_BODY {
         update(&mut digest, rest);
