@@ -77,6 +77,20 @@ async fn wall_time_counts_from_the_grant() {
     assert_eq!(stop.unwrap(), Stop::WallTime);
 }
 
+/// As it does while a stream waits for its reader.
+#[test]
+fn a_clock_that_is_held_does_not_run_out() {
+    let place = pool(1, 0).place().unwrap();
+    let watch = place.watch();
+    watch.run_out_in(PATIENCE);
+    let left = watch.hold();
+    assert!(left > Duration::ZERO && left <= PATIENCE);
+    watch.run_out_in(Duration::ZERO);
+    assert_eq!(watch.poll(), Some(Stop::WallTime));
+    assert_eq!(watch.hold(), Duration::ZERO);
+    assert_eq!(watch.poll(), None);
+}
+
 #[tokio::test]
 async fn closing_cancels_what_runs() {
     let pool = pool(1, 0);

@@ -205,6 +205,16 @@ fn time_that_runs_out_ends_a_stream_well() {
     assert_eq!(counted, 600);
 }
 
+/// More samples within the first step than anybody can wait for: the step is given up.
+#[test]
+fn a_step_of_endless_samples_ends_too() {
+    let body = json!({ "system": { "mass_parameter": 0.01 }, "initial_states": states(1), "duration": 1.0,
+        "samples": { "count": 1_u64 << 53 }, "limits": { "wall_time_ms": 1 } });
+    let reply = stream(&Local::start(), TRAJECTORIES, &body);
+    let last = parsed(&lines(&reply.body).split_off(1)).pop().unwrap();
+    assert_eq!(last["type"], "/problems/wall-time-limit", "{last}");
+}
+
 #[test]
 fn equilibria_of_many_systems_come_a_line_each() {
     let systems: Vec<Value> =

@@ -17,7 +17,7 @@ use crate::answer::{Effort, JSON, NDJSON, written};
 use crate::config::Limits;
 use crate::decode::{Errors, Path};
 use crate::operation::{Items, LARGEST_PART, Lines, Operation, Out, Tally, Work};
-use crate::problem::Problem;
+use crate::problem::{Problem, Slug};
 use crate::wire::Conventions;
 
 /// What a trajectory may take is not known before; a thread that serves HTTP is not risked for it.
@@ -26,6 +26,9 @@ const UNKNOWN_COST: Duration = Duration::from_millis(1);
 const SAMPLES_PER_LINE: usize = 10_000;
 /// Numbers in the samples of a part: what is written of it then fits into the room that a part of a stream has.
 const VALUES_PER_PART: u64 = 16 << 10;
+/// Lines of samples that may still be written of one trajectory when the time is up: those of the step under way, if it
+/// does not hold more than anybody can use.
+const LATE_LINES: usize = 100;
 /// Samples of a trajectory that is sampled at every step, roughly.
 const STEPS: u64 = 128;
 
@@ -129,7 +132,15 @@ impl Items for Trajectories {
         interrupt: &dyn Interrupt,
     ) -> Result<(), Problem> {
         let task = &self.task;
-        let mut writer = Writer { task, out, handed_over: (0, 0), totals: Totals::default(), problem: None };
+        let mut writer = Writer {
+            task,
+            out,
+            interrupt,
+            handed_over: (0, 0),
+            late_lines: 0,
+            totals: Totals::default(),
+            problem: None,
+        };
         let propagated = propagate(&task.request, range, &self.budget, &mut writer, interrupt);
         let Writer { totals, problem, .. } = writer;
         self.totals.add(|all| all.take(&totals));
@@ -173,8 +184,11 @@ fn planned(intervals: f64) -> u64 {
 struct Writer<'a, 'o> {
     task: &'a Task,
     out: &'a mut Out<'o>,
+    interrupt: &'a dyn Interrupt,
     /// The trajectory of the last samples that were written before its end, and how many of it.
     handed_over: (usize, usize),
+    /// Lines of samples written since the time was up.
+    late_lines: usize,
     totals: Totals,
     /// What went wrong with writing.
     problem: Option<Problem>,
@@ -201,6 +215,12 @@ impl Sink for Writer<'_, '_> {
     fn samples(&mut self, index: usize, samples: Samples) -> Result<(), Failure> {
         let before = self.handed_over(index);
         self.handed_over = (index, before + samples.times.len());
+        self.late_lines += usize::from(self.interrupt.poll().is_some());
+        if self.late_lines > LATE_LINES {
+            let detail =
+                format!("The time granted was too short for the samples of one step of trajectory {index}");
+            return self.check(Err(Problem::new(Slug::WallTimeLimit, detail)));
+        }
         let written = self.out.line("samples", &self.task.samples_line(index, &samples, before));
         self.check(written)
     }
