@@ -15,7 +15,7 @@ pub trait Items: Send + Sync + 'static {
     /// How many items there are.
     fn count(&self) -> usize;
 
-    /// The most items of a part, so that what is written of one stays within some hundred kilobytes.
+    /// The most items of a part, so that what is written of one stays well below a megabyte.
     fn largest_part(&self) -> usize {
         LARGEST_PART
     }

@@ -23,7 +23,7 @@ const PART_TIME: Duration = Duration::from_millis(2);
 /// The fewest items of a part. How long an item takes is not known before the first parts are done.
 const SMALLEST_PART: usize = 16;
 /// What a part of a stream may hold for its reader, in bytes.
-const PART_ROOM: usize = 512 << 10;
+const PART_ROOM: usize = 1 << 20;
 /// Parts of a stream that may be held for its reader besides one for each thread.
 const PARTS_AHEAD: usize = 2;
 /// What the reader gets at a time, in bytes.

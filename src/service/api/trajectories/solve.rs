@@ -25,7 +25,7 @@ const UNKNOWN_COST: Duration = Duration::from_millis(1);
 /// Samples of one line of a stream.
 const SAMPLES_PER_LINE: usize = 10_000;
 /// Numbers in the samples of a part: what is written of it then fits into the room that a part of a stream has.
-const VALUES_PER_PART: u64 = 16 << 10;
+const VALUES_PER_PART: u64 = 32 << 10;
 /// Lines of samples that may still be written of one trajectory when the time is up: those of the step under way, if it
 /// does not hold more than anybody can use.
 const LATE_LINES: usize = 100;
