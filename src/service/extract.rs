@@ -22,8 +22,22 @@ use crate::state::App;
 pub struct Submission {
     body: Bytes,
     headers: HeaderMap,
+    origin: Origin,
     _memory: Vec<OwnedSemaphorePermit>,
 }
+
+/// The request that a problem arose with, where the problem is told within an answer.
+#[derive(Clone, Debug)]
+pub struct Origin {
+    /// Its path.
+    pub path: String,
+    /// Its id.
+    pub request_id: String,
+}
+
+/// The id of a request, given to it by the middleware.
+#[derive(Clone, Debug)]
+pub struct RequestId(pub HeaderValue);
 
 impl Submission {
     /// The bytes.
@@ -39,6 +53,12 @@ impl Submission {
     pub fn negotiate(&self, offered: &[&'static str]) -> Result<&'static str, Problem> {
         negotiate(&self.headers, offered)
     }
+
+    /// Lets go of the body.
+    #[must_use]
+    pub fn into_origin(self) -> Origin {
+        self.origin
+    }
 }
 
 impl FromRequest<App> for Submission {
@@ -49,7 +69,9 @@ impl FromRequest<App> for Submission {
         no_query(&parts.uri)?;
         media_type(&parts.headers)?;
         let (body, memory) = receive(app, body).await?;
-        Ok(Self { body, headers: parts.headers, _memory: memory })
+        let id = parts.extensions.get().and_then(|RequestId(id)| id.to_str().ok()).unwrap_or_default();
+        let origin = Origin { path: parts.uri.path().to_owned(), request_id: id.to_owned() };
+        Ok(Self { body, headers: parts.headers, origin, _memory: memory })
     }
 }
 

@@ -1,10 +1,11 @@
 //! What happens around every request, in one function: its id, the body of its problem, the headers that all
 //! responses have, and its line in the log.
 
-use std::borrow::Cow;
 use std::convert::Infallible;
 use std::panic::AssertUnwindSafe;
+use std::pin::Pin;
 use std::sync::Arc;
+use std::task::{Context, Poll, ready};
 use std::time::Instant;
 
 use axum::body::Body;
@@ -14,12 +15,13 @@ use axum::response::Response;
 use bytes::Bytes;
 use futures_util::FutureExt;
 use http::{HeaderMap, HeaderName, HeaderValue, Method, StatusCode, Uri, header};
-use http_body::Body as _;
+use http_body::{Body as _, Frame};
 use tower::{ServiceExt, service_fn};
 use tower_http::CompressionLevel;
 use tower_http::compression::Compression;
 
-use crate::answer::{Effort, GZIP_SUFFIX, REPR_DIGEST};
+use crate::answer::{Effort, Ending, GZIP_SUFFIX, REPR_DIGEST};
+use crate::extract::RequestId;
 use crate::problem::{self, Problem, Slug};
 use crate::state::App;
 
@@ -32,19 +34,13 @@ const LONGEST_ID: usize = 128;
 const WORTH_CODING: u64 = 1024;
 
 /// Wraps the handling of every request.
-pub async fn observe(State(_app): State<App>, request: Request, next: Next) -> Response {
+pub async fn observe(State(_app): State<App>, mut request: Request, next: Next) -> Response {
     let mut line = Line::new(&request);
+    request.extensions_mut().insert(RequestId(line.id.clone()));
     let accept_encoding = request.headers().get(header::ACCEPT_ENCODING).cloned();
     let mut response = match AssertUnwindSafe(next.run(request)).catch_unwind().await {
         Ok(response) => response,
-        Err(payload) => {
-            let cause = payload.downcast_ref::<&str>().copied().map(Cow::Borrowed);
-            let cause =
-                cause.or_else(|| payload.downcast_ref::<String>().map(|text| Cow::Borrowed(text.as_str())));
-            let problem =
-                Problem::internal(&format_args!("panic: {}", cause.as_deref().unwrap_or("unknown")));
-            axum::response::IntoResponse::into_response(problem)
-        }
+        Err(payload) => axum::response::IntoResponse::into_response(Problem::panicked(&*payload)),
     };
     if response.status().is_client_error() || response.status().is_server_error() {
         response = explain(response, &line);
@@ -59,8 +55,35 @@ pub async fn observe(State(_app): State<App>, request: Request, next: Next) -> R
     headers.append(header::VARY, HeaderValue::from_static("accept, accept-encoding"));
     headers.insert(X_REQUEST_ID, line.id.clone());
     headers.insert(header::X_CONTENT_TYPE_OPTIONS, HeaderValue::from_static("nosniff"));
-    line.write(response.status());
+    line.status = response.status().as_u16();
+    line.ending = response.extensions().get().cloned();
+    if line.ending.is_some() {
+        return response.map(|body| Body::new(Streaming { body, line }));
+    }
+    line.write();
     response
+}
+
+/// A body that is computed while it is sent. Its line in the log is written at its end.
+struct Streaming {
+    body: Body,
+    line: Line,
+}
+
+impl http_body::Body for Streaming {
+    type Data = Bytes;
+    type Error = axum::Error;
+
+    fn poll_frame(
+        mut self: Pin<&mut Self>,
+        context: &mut Context<'_>,
+    ) -> Poll<Option<Result<Frame<Bytes>, axum::Error>>> {
+        let frame = ready!(Pin::new(&mut self.body).poll_frame(context));
+        if frame.is_none() {
+            self.line.write();
+        }
+        Poll::Ready(frame)
+    }
 }
 
 /// Gives a failure its body. Failures of the framework itself come without a problem: the status tells which.
@@ -70,9 +93,7 @@ fn explain(response: Response, line: &Line) -> Response {
         .extensions
         .remove::<Arc<Problem>>()
         .unwrap_or_else(|| Arc::new(foreign(&line.method, parts.status)));
-    if let Some(cause) = problem.cause() {
-        tracing::error!(request_id = line.id.to_str().unwrap_or_default(), cause, "defect");
-    }
+    problem.log(line.id.to_str().unwrap_or_default());
     parts.status = problem.slug().status();
     let body = problem.body(line.uri.path(), line.id.to_str().unwrap_or_default());
     parts.headers.insert(header::CONTENT_TYPE, HeaderValue::from_static(problem::MEDIA_TYPE));
@@ -145,6 +166,8 @@ struct Line {
     path: Option<MatchedPath>,
     trace: Option<HeaderValue>,
     effort: Effort,
+    ending: Option<Ending>,
+    status: u16,
     written: bool,
 }
 
@@ -158,23 +181,29 @@ impl Line {
             path: request.extensions().get().cloned(),
             trace: request.headers().get(TRACEPARENT).filter(|value| is_traceparent(value)).cloned(),
             effort: Effort::default(),
+            ending: None,
+            status: CLIENT_GONE,
             written: false,
         }
     }
 
-    fn write(&mut self, status: StatusCode) {
+    fn write(&mut self) {
         self.written = true;
-        self.log(status.as_u16(), self.effort.outcome.unwrap_or("answered"));
+        self.log("answered");
     }
 
-    fn log(&self, status: u16, outcome: &str) {
+    /// The outcome is that of the computation if it has one.
+    fn log(&self, outcome: &str) {
+        let ended = self.ending.as_ref().and_then(|Ending(ending)| ending.get().copied());
+        let Effort { steps, outcome: told } = ended.unwrap_or(self.effort);
+        let outcome = told.unwrap_or(outcome);
         let trace = self.trace.as_ref().and_then(|value| value.to_str().ok());
         tracing::info!(
             method = self.method.as_str(),
             path = self.path.as_ref().map_or("", MatchedPath::as_str),
-            status,
+            status = self.status,
             duration_us = u64::try_from(self.begun.elapsed().as_micros()).unwrap_or(u64::MAX),
-            steps = self.effort.steps,
+            steps,
             outcome,
             request_id = self.id.to_str().unwrap_or_default(),
             trace_id = trace.and_then(|trace| trace.get(3..35)),
@@ -184,13 +213,13 @@ impl Line {
     }
 }
 
-/// What the log says of a request whose client went away before the answer.
+/// The status that the log gives to a request whose client went away before the answer.
 const CLIENT_GONE: u16 = 499;
 
 impl Drop for Line {
     fn drop(&mut self) {
         if !self.written {
-            self.log(CLIENT_GONE, "client_gone");
+            self.log("client_gone");
         }
     }
 }

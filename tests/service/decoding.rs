@@ -190,7 +190,8 @@ fn states_are_taken_as_a_list_and_as_columns() {
         r#"{"time": [1, 0], "position": [[1, 2, 3], [0, 0, 1]], "velocity": [[4, 5, 6], [1, 0, 0]]}"#,
     )
     .unwrap();
-    assert_eq!(list.states, columns.states);
+    let each = |states: StatesSpec| states.check(Path::ROOT, |state, _| Some(state)).unwrap();
+    assert_eq!(each(list), each(columns));
     for (body, pointer, words) in [
         ("[]", "", "at least one state"),
         (r#"[{"position": [1, 2, 3]}]"#, "/0", "exactly one of `velocity`, `momentum` and `elements`"),

@@ -16,6 +16,7 @@ mod openapi;
 mod pool;
 mod problems;
 mod router;
+mod streams;
 mod support;
 mod systems;
 mod trajectories;

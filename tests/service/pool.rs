@@ -1,6 +1,5 @@
 //! The compute threads. Cancellation is observed by polls and signals, never by time.
 
-use std::sync::atomic::{AtomicUsize, Ordering};
 use std::sync::{Arc, mpsc};
 use std::time::Duration;
 
@@ -78,6 +77,20 @@ async fn wall_time_counts_from_the_grant() {
     assert_eq!(stop.unwrap(), Stop::WallTime);
 }
 
+/// As it does while a stream waits for its reader.
+#[test]
+fn a_clock_that_is_held_does_not_run_out() {
+    let place = pool(1, 0).place().unwrap();
+    let watch = place.watch();
+    watch.run_out_in(PATIENCE);
+    let left = watch.hold();
+    assert!(left > Duration::ZERO && left <= PATIENCE);
+    watch.run_out_in(Duration::ZERO);
+    assert_eq!(watch.poll(), Some(Stop::WallTime));
+    assert_eq!(watch.hold(), Duration::ZERO);
+    assert_eq!(watch.poll(), None);
+}
+
 #[tokio::test]
 async fn closing_cancels_what_runs() {
     let pool = pool(1, 0);
@@ -98,59 +111,4 @@ async fn a_panic_reaches_the_one_who_waits_and_the_thread_lives_on() {
     let joined = tokio::spawn(async move { panicking.run(|_| panic!("planned")).await }).await;
     assert!(joined.unwrap_err().is_panic());
     assert_eq!(pool.run(|_| 1).await.unwrap(), 1);
-}
-
-#[tokio::test]
-async fn parts_come_in_order_whatever_the_threads() {
-    for threads in [1, 2, 5] {
-        let pool = pool(threads, 0);
-        let parts = pool.run(|context: &Context| {
-            context.parts(100, 7, |range, _| range.map(|index| index * index).collect::<Vec<_>>())
-        });
-        let squares: Vec<usize> = parts.await.unwrap().concat();
-        assert_eq!(squares, (0..100).map(|index| index * index).collect::<Vec<_>>());
-    }
-}
-
-#[tokio::test]
-async fn parts_are_shared_among_threads_and_with_others() {
-    let pool = pool(2, 8);
-    let most = Arc::new(AtomicUsize::new(0));
-    let (now, seen) = (Arc::new(AtomicUsize::new(0)), Arc::clone(&most));
-    let batch = pool.run(move |context: &Context| {
-        let rendezvous = Arc::new(std::sync::Barrier::new(2));
-        context.parts(2, 1, move |_, _| {
-            seen.fetch_max(now.fetch_add(1, Ordering::SeqCst) + 1, Ordering::SeqCst);
-            rendezvous.wait();
-            now.fetch_sub(1, Ordering::SeqCst);
-        })
-    });
-    assert_eq!(batch.await.unwrap().len(), 2);
-    assert_eq!(most.load(Ordering::SeqCst), 2);
-}
-
-#[tokio::test]
-async fn a_panic_in_a_part_reaches_the_one_who_waits() {
-    let pool = pool(2, 8);
-    let joined = tokio::spawn(async move {
-        let work = pool.run(|context: &Context| {
-            context.parts(20, 1, |range, _| assert_ne!(range.start, 11, "planned"));
-        });
-        work.await
-    });
-    assert!(joined.await.unwrap_err().is_panic());
-}
-
-#[tokio::test]
-async fn a_batch_whose_time_is_up_is_a_problem() {
-    for pool in [pool(1, 0), pool(2, 0)] {
-        let batch = pool.run(|context: &Context| {
-            context.grant(Duration::ZERO);
-            synodia::operation::batch(context, 1000, |index| index)
-        });
-        let problem = batch.await.unwrap().unwrap_err();
-        assert_eq!(problem.slug().name(), "wall-time-limit");
-        let whole = pool.run(|context: &Context| synodia::operation::batch(context, 1000, |index| index));
-        assert_eq!(whole.await.unwrap().unwrap(), (0..1000).collect::<Vec<_>>());
-    }
 }

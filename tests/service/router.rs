@@ -5,7 +5,10 @@ use axum::body::Body;
 use http::{HeaderMap, Method, Request, StatusCode, header};
 use http_body_util::BodyExt;
 use serde_json::{Value, json};
+use synodia::config::Config;
 use tower::ServiceExt;
+
+use super::support::config;
 
 /// A service that answers from this process.
 pub(crate) struct Local(Router);
@@ -21,7 +24,13 @@ pub(crate) struct Reply {
 impl Local {
     /// The service with its defaults.
     pub(crate) fn start() -> Self {
-        let config = synodia::config::read(["synodia".into()], []).unwrap().1;
+        Self::with(|_| ())
+    }
+
+    /// The service with something configured otherwise.
+    pub(crate) fn with(change: impl FnOnce(&mut Config)) -> Self {
+        let mut config = config();
+        change(&mut config);
         Self(synodia::api::start(config).unwrap().1)
     }
 

@@ -49,7 +49,7 @@ impl Server {
     }
 
     /// The next log line that is wanted.
-    pub(crate) fn log(&self, wanted: impl Fn(&Value) -> bool) -> Value {
+    pub(crate) fn log(&self, mut wanted: impl FnMut(&Value) -> bool) -> Value {
         loop {
             match self.logs.recv_timeout(PATIENCE) {
                 Ok(line) if wanted(&line) => return line,
@@ -57,6 +57,11 @@ impl Server {
                 Err(RecvTimeoutError::Timeout | RecvTimeoutError::Disconnected) => panic!("no such log line"),
             }
         }
+    }
+
+    /// The process.
+    pub(crate) fn id(&self) -> u32 {
+        self.child.id()
     }
 
     /// Sends a stop signal.

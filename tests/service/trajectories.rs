@@ -470,18 +470,6 @@ fn an_audit_beyond_the_limits_is_refused_before_any_work() {
 }
 
 #[test]
-fn streams_are_not_offered() {
-    let server = Server::start();
-    let body = halo().to_string();
-    let reply = server.send(&format!(
-        "POST {PATH} HTTP/1.1\r\nhost: t\r\nconnection: close\r\ncontent-type: application/json\r\n\
-         accept: application/x-ndjson\r\ncontent-length: {}\r\n\r\n{body}",
-        body.len()
-    ));
-    assert_eq!(reply.problem("not-acceptable")["offered"], json!(["application/json"]));
-}
-
-#[test]
 fn many_states_come_back_in_order() {
     let server = Server::start();
     let states: Vec<Value> = (0..200)

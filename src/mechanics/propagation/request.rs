@@ -326,23 +326,28 @@ impl Request {
         }
     }
 
-    /// Each wrong time is reported once, for the first trajectory it is wrong for; where the durations are not known,
-    /// only the order is looked at.
+    /// Each wrong time is reported once, for one of the trajectories it is wrong for: the one that begins last or the one
+    /// that ends first, so that the work does not grow with times and trajectories multiplied. Where the durations are
+    /// not known, only the order is looked at.
     fn check_times(&self, times: &[f64], spanned: bool, problems: &mut Vec<Invalid>) {
+        let each = || (0..self.count()).map(|trajectory| (trajectory, self.ends(trajectory)));
+        let begins = |(_, (from, to)): &(usize, (f64, f64))| from.min(*to);
+        let ends = |(_, (from, to)): &(usize, (f64, f64))| from.max(*to);
+        let last_to_begin = each().reduce(|a, b| if begins(&b) > begins(&a) { b } else { a });
+        let first_to_end = each().reduce(|a, b| if ends(&b) < ends(&a) { b } else { a });
+        let tightest: Vec<_> = [last_to_begin, first_to_end].into_iter().flatten().collect();
+        let backwards = (0..self.count()).any(|trajectory| self.duration(trajectory) < 0.0);
+        let forwards = (0..self.count()).any(|trajectory| self.duration(trajectory) >= 0.0);
         for (index, &time) in times.iter().enumerate() {
+            let outside = tightest.iter().find(|(trajectory, _)| !self.holds(*trajectory, time));
+            if let Some(&(trajectory, (from, to))) = outside.filter(|_| spanned) {
+                problems.push(Invalid::TimeOutside { index, time, trajectory, from, to });
+                continue;
+            }
+            let follows = |before: f64| (!forwards || time > before) && (!backwards || time < before);
             let before = index.checked_sub(1).and_then(|i| times.get(i).copied());
-            for trajectory in 0..self.count() {
-                if spanned && !self.holds(trajectory, time) {
-                    let (from, to) = self.ends(trajectory);
-                    problems.push(Invalid::TimeOutside { index, time, trajectory, from, to });
-                    break;
-                }
-                let backwards = self.duration(trajectory) < 0.0;
-                let follows = |before: f64| if backwards { time < before } else { time > before };
-                if let Some(before) = before.filter(|before| !follows(*before)) {
-                    problems.push(Invalid::TimeOrder { index, time, before });
-                    break;
-                }
+            if let Some(before) = before.filter(|before| !follows(*before)) {
+                problems.push(Invalid::TimeOrder { index, time, before });
             }
         }
     }

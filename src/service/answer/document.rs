@@ -30,7 +30,7 @@ impl Document {
         let hash = base64::Engine::encode(&base64::prelude::BASE64_URL_SAFE_NO_PAD, Sha256::digest(&bytes));
         let tag =
             HeaderValue::from_str(&format!("\"{hash}\"")).unwrap_or_else(|_| HeaderValue::from_static("*"));
-        let digest = repr_digest(&bytes);
+        let digest = repr_digest(Sha256::new_with_prefix(&bytes));
         Self { bytes, media_type, tag, digest }
     }
 

@@ -1,13 +1,14 @@
 //! Successful responses.
 
+mod chunks;
 mod document;
 mod finite;
 pub mod negotiation;
 
 use std::fmt::Write;
+use std::sync::{Arc, OnceLock};
 use std::time::Duration;
 
-use axum::body::Body;
 use axum::response::{IntoResponse, Response};
 use bytes::Bytes;
 use http::{HeaderName, HeaderValue, header};
@@ -19,6 +20,8 @@ pub use document::{Document, GZIP_SUFFIX};
 
 /// Media type of most bodies.
 pub const JSON: &str = "application/json";
+/// Media type of streams: JSON values, a line each.
+pub const NDJSON: &str = "application/x-ndjson";
 
 /// RFC 9530.
 pub const REPR_DIGEST: HeaderName = HeaderName::from_static("repr-digest");
@@ -34,10 +37,14 @@ pub struct Effort {
     pub outcome: Option<&'static str>,
 }
 
+/// Of a response that is computed while it is sent: its effort, once it has ended.
+#[derive(Clone, Debug)]
+pub struct Ending(pub Arc<OnceLock<Effort>>);
+
 /// A complete body with what goes with it.
 #[derive(Debug)]
 pub struct Answer {
-    bytes: Bytes,
+    chunks: Vec<Bytes>,
     media_type: &'static str,
     digest: HeaderValue,
     compute: Option<Duration>,
@@ -49,8 +56,15 @@ impl Answer {
     #[must_use]
     pub fn new(media_type: &'static str, bytes: impl Into<Bytes>) -> Self {
         let bytes = bytes.into();
-        let digest = repr_digest(&bytes);
-        Self { bytes, media_type, digest, compute: None, effort: Effort::default() }
+        let digest = Sha256::new_with_prefix(&bytes);
+        Self::in_chunks(media_type, vec![bytes], digest)
+    }
+
+    /// A body in several pieces, and the digest of them all.
+    #[must_use]
+    pub fn in_chunks(media_type: &'static str, chunks: Vec<Bytes>, digest: Sha256) -> Self {
+        let digest = repr_digest(digest);
+        Self { chunks, media_type, digest, compute: None, effort: Effort::default() }
     }
 
     /// The JSON of `value`.
@@ -71,29 +85,31 @@ impl Answer {
 }
 
 /// The JSON of `value`, or `internal` if a number in it is not finite.
-fn written(value: &impl Serialize) -> Result<Vec<u8>, Problem> {
+pub(crate) fn written(value: &impl Serialize) -> Result<Vec<u8>, Problem> {
     let mut bytes = Vec::with_capacity(TYPICAL);
-    let mut serializer = serde_json::Serializer::new(&mut bytes);
-    match value.serialize(finite::Finite(&mut serializer)) {
-        Ok(()) => Ok(bytes),
-        Err(error) => Err(Problem::internal(&error)),
-    }
+    append(&mut bytes, value).map(|()| bytes)
+}
+
+/// Writes the JSON of `value` after what there is, or `internal` if a number in it is not finite.
+pub(crate) fn append(bytes: &mut Vec<u8>, value: &impl Serialize) -> Result<(), Problem> {
+    let mut serializer = serde_json::Serializer::new(bytes);
+    value.serialize(finite::Finite(&mut serializer)).map_err(|error| Problem::internal(&error))
 }
 
 /// Room that most answers fit in without growing.
 const TYPICAL: usize = 2048;
 
-fn repr_digest(bytes: &[u8]) -> HeaderValue {
+fn repr_digest(digest: Sha256) -> HeaderValue {
     let mut text = String::with_capacity(64);
     text.push_str("sha-256=:");
-    base64::Engine::encode_string(&base64::prelude::BASE64_STANDARD, Sha256::digest(bytes), &mut text);
+    base64::Engine::encode_string(&base64::prelude::BASE64_STANDARD, digest.finalize(), &mut text);
     text.push(':');
     HeaderValue::from_str(&text).unwrap_or_else(|_| HeaderValue::from_static(""))
 }
 
 impl IntoResponse for Answer {
     fn into_response(self) -> Response {
-        let mut response = Response::new(Body::from(self.bytes));
+        let mut response = Response::new(chunks::body(self.chunks));
         let headers = response.headers_mut();
         headers.insert(header::CONTENT_TYPE, HeaderValue::from_static(self.media_type));
         headers.insert(REPR_DIGEST, self.digest);

@@ -11,7 +11,7 @@ use serde::de::{DeserializeSeed, Error, MapAccess, SeqAccess, Visitor};
 use super::errors::{Errors, shortened};
 use crate::problem::{Fault, Place, Problem, Slug};
 
-/// A JSON value. Members keep their order; an array of numbers only, which is what bodies mostly consist of, is
+/// A JSON value. Members keep their order; arrays of numbers and of vectors, which are what bodies mostly consist of, are
 /// held compactly.
 #[derive(Clone, Debug, PartialEq)]
 pub enum Node<'a> {
@@ -25,6 +25,8 @@ pub enum Node<'a> {
     String(Cow<'a, str>),
     /// An array of numbers, or an empty one.
     Numbers(Vec<f64>),
+    /// An array of arrays of three numbers.
+    Vectors(Vec<[f64; 3]>),
     /// Any other array.
     Array(Vec<Node<'a>>),
     /// An object.
@@ -40,7 +42,7 @@ impl Node<'_> {
             Self::Bool(_) => "a boolean",
             Self::Number(_) => "a number",
             Self::String(_) => "a string",
-            Self::Numbers(_) | Self::Array(_) => "an array",
+            Self::Numbers(_) | Self::Vectors(_) | Self::Array(_) => "an array",
             Self::Object(_) => "an object",
         }
     }
@@ -255,35 +257,19 @@ impl<'de> Visitor<'de> for Seed<'_> {
     }
 
     fn visit_seq<A: SeqAccess<'de>>(self, mut seq: A) -> Result<Node<'de>, A::Error> {
-        let mut numbers = Vec::new();
-        let mut others: Vec<Node<'de>> = Vec::new();
+        let mut items = Array::default();
         let mut index = 0_usize;
         loop {
-            let item = match seq.next_element_seed(self) {
-                Ok(Some(item)) => item,
-                Ok(None) => break,
+            match seq.next_element_seed(self) {
+                Ok(Some(item)) => items.push(item, self.0)?,
+                Ok(None) => return Ok(items.into()),
                 Err(error) => {
                     self.0.stopped_in(&index.to_string());
                     return Err(error);
                 }
-            };
-            index += 1;
-            match item {
-                Node::Number(number) if others.is_empty() => {
-                    self.0.take(size_of::<f64>())?;
-                    numbers.push(number);
-                }
-                item => {
-                    if others.is_empty() {
-                        self.0.take(numbers.len() * size_of::<Node<'_>>())?;
-                        others.extend(numbers.drain(..).map(Node::Number));
-                    }
-                    self.0.take(size_of::<Node<'_>>())?;
-                    others.push(item);
-                }
             }
+            index += 1;
         }
-        Ok(if others.is_empty() { Node::Numbers(numbers) } else { Node::Array(others) })
     }
 
     fn visit_map<A: MapAccess<'de>>(self, mut map: A) -> Result<Node<'de>, A::Error> {
@@ -311,6 +297,54 @@ impl<'de> Visitor<'de> for Seed<'_> {
             }
         }
         Ok(Node::Object(members))
+    }
+}
+
+/// An array while it grows; at most one of the three has items.
+#[derive(Default)]
+struct Array<'a> {
+    numbers: Vec<f64>,
+    vectors: Vec<[f64; 3]>,
+    others: Vec<Node<'a>>,
+}
+
+impl<'a> Array<'a> {
+    fn push<E: Error>(&mut self, item: Node<'a>, growth: &Growth) -> Result<(), E> {
+        match item {
+            Node::Number(number) if self.vectors.is_empty() && self.others.is_empty() => {
+                growth.take(size_of::<f64>())?;
+                self.numbers.push(number);
+            }
+            // Its numbers are accounted for already.
+            Node::Numbers(numbers) if self.numbers.is_empty() && self.others.is_empty() => {
+                match <[f64; 3]>::try_from(numbers) {
+                    Ok(vector) => self.vectors.push(vector),
+                    Err(numbers) => self.push_other(Node::Numbers(numbers), growth)?,
+                }
+            }
+            item => self.push_other(item, growth)?,
+        }
+        Ok(())
+    }
+
+    fn push_other<E: Error>(&mut self, item: Node<'a>, growth: &Growth) -> Result<(), E> {
+        growth.take((self.numbers.len() + self.vectors.len() + 1) * size_of::<Node<'_>>())?;
+        self.others.extend(self.numbers.drain(..).map(Node::Number));
+        self.others.extend(self.vectors.drain(..).map(|vector| Node::Numbers(vector.to_vec())));
+        self.others.push(item);
+        Ok(())
+    }
+}
+
+impl<'a> From<Array<'a>> for Node<'a> {
+    fn from(array: Array<'a>) -> Self {
+        if !array.others.is_empty() {
+            Node::Array(array.others)
+        } else if !array.vectors.is_empty() {
+            Node::Vectors(array.vectors)
+        } else {
+            Node::Numbers(array.numbers)
+        }
     }
 }
 

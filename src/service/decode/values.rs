@@ -152,36 +152,37 @@ impl Decode for Text {
     }
 }
 
-fn not_an_array(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) {
-    errors.push(at, format!("must be an array, got {}", node.kind()));
+/// How many items an array has; anything else is a fault.
+fn length(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<usize> {
+    match node {
+        Node::Numbers(numbers) => Some(numbers.len()),
+        Node::Vectors(vectors) => Some(vectors.len()),
+        Node::Array(nodes) => Some(nodes.len()),
+        _ => {
+            errors.push(at, format!("must be an array, got {}", node.kind()));
+            None
+        }
+    }
+}
+
+/// Decodes an item of an array that has it.
+fn item<T: Decode>(node: &Node<'_>, index: usize, at: Path<'_>, errors: &mut Errors) -> Option<T> {
+    let at = at.item(index);
+    match node {
+        Node::Numbers(numbers) => T::decode(&Node::Number(*numbers.get(index)?), at, errors),
+        Node::Vectors(vectors) => T::decode(&Node::Numbers(vectors.get(index)?.to_vec()), at, errors),
+        Node::Array(nodes) => T::decode(nodes.get(index)?, at, errors),
+        _ => None,
+    }
 }
 
 impl<T: Decode> Decode for Vec<T> {
     fn decode(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
         // Every item is decoded, so that all faults are found, and the list is good only if all of them are.
-        let mut good = true;
-        let mut list = Vec::new();
-        let mut keep = |item: Option<T>| match item {
-            Some(item) => list.push(item),
-            None => good = false,
-        };
-        match node {
-            Node::Numbers(numbers) => {
-                for (index, &number) in numbers.iter().enumerate() {
-                    keep(T::decode(&Node::Number(number), at.item(index), errors));
-                }
-            }
-            Node::Array(nodes) => {
-                for (index, node) in nodes.iter().enumerate() {
-                    keep(T::decode(node, at.item(index), errors));
-                }
-            }
-            _ => {
-                not_an_array(node, at, errors);
-                good = false;
-            }
-        }
-        good.then_some(list)
+        let length = length(node, at, errors)?;
+        let mut list = Vec::with_capacity(length);
+        list.extend((0..length).filter_map(|index| item(node, index, at, errors)));
+        (list.len() == length).then_some(list)
     }
 
     fn describe(named: &mut Schemas) -> RefOr<Schema> {
@@ -191,19 +192,14 @@ impl<T: Decode> Decode for Vec<T> {
 
 impl<T: Decode, const N: usize> Decode for [T; N] {
     fn decode(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
-        let length = match node {
-            Node::Numbers(numbers) => numbers.len(),
-            Node::Array(nodes) => nodes.len(),
-            _ => {
-                not_an_array(node, at, errors);
-                return None;
-            }
-        };
+        let length = length(node, at, errors)?;
         if length != N {
             errors.push(at, format!("must have exactly {N} items, got {length}"));
             return None;
         }
-        Vec::<T>::decode(node, at, errors)?.try_into().ok()
+        let items: [Option<T>; N] = std::array::from_fn(|index| item(node, index, at, errors));
+        let good = items.iter().all(Option::is_some);
+        good.then(|| items.map(|item| item.expect("all of them are good")))
     }
 
     fn describe(named: &mut Schemas) -> RefOr<Schema> {

@@ -3,6 +3,7 @@
 
 mod slug;
 
+use std::any::Any;
 use std::borrow::Cow;
 use std::sync::Arc;
 
@@ -115,12 +116,6 @@ impl Problem {
         problem
     }
 
-    /// The defect behind an `internal`, for the log.
-    #[must_use]
-    pub fn cause(&self) -> Option<&str> {
-        self.0.cause.as_deref()
-    }
-
     /// No place for the work now.
     #[must_use]
     pub fn overloaded(detail: &'static str) -> Self {
@@ -146,11 +141,32 @@ impl Problem {
         self.0.slug
     }
 
+    /// A panic of our own code.
+    #[must_use]
+    pub fn panicked(payload: &(dyn Any + Send)) -> Self {
+        let text = payload.downcast_ref::<&str>().copied();
+        let text = text.or_else(|| payload.downcast_ref::<String>().map(String::as_str));
+        Self::internal(&format_args!("panic: {}", text.unwrap_or("unknown")))
+    }
+
+    /// Writes the defect behind an `internal` to the log.
+    pub fn log(&self, request_id: &str) {
+        if let Some(cause) = &self.0.cause {
+            tracing::error!(request_id, cause, "defect");
+        }
+    }
+
     /// Writes the body for the request `instance` with the id `request_id`.
     #[must_use]
     pub fn body(&self, instance: &str, request_id: &str) -> Vec<u8> {
+        serde_json::to_vec(&self.members(instance, request_id)).unwrap_or_default()
+    }
+
+    /// The members of that body.
+    #[must_use]
+    pub fn members<'a>(&'a self, instance: &'a str, request_id: &'a str) -> ProblemBody<'a> {
         let parts = &*self.0;
-        let body = ProblemBody {
+        ProblemBody {
             kind: format!("/problems/{}", parts.slug.name()),
             title: parts.slug.title(),
             status: parts.slug.status().as_u16(),
@@ -159,8 +175,7 @@ impl Problem {
             request_id,
             errors: &parts.errors,
             members: &parts.members,
-        };
-        serde_json::to_vec(&body).unwrap_or_default()
+        }
     }
 }
 

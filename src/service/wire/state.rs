@@ -111,17 +111,33 @@ fn motion(object: StateObject, at: Path<'_>, errors: &mut Errors) -> Option<Moti
 
 /// States, as a list or as columns.
 #[derive(Clone, Debug, PartialEq)]
-pub struct StatesSpec {
-    /// The states in order.
-    pub states: Vec<StateSpec>,
-    /// Whether they came as columns, so that faults are placed in the right form.
-    columns: bool,
+pub struct StatesSpec(Form);
+
+#[derive(Clone, Debug, PartialEq)]
+enum Form {
+    List(Vec<StateSpec>),
+    /// Of equal length, but for the times, which may be absent. The rates are velocities or momenta.
+    Columns {
+        time: Option<Vec<f64>>,
+        position: Vec<[f64; 3]>,
+        rates: Vec<[f64; 3]>,
+        canonical: bool,
+    },
 }
 
 impl StatesSpec {
+    /// How many there are.
+    #[must_use]
+    pub fn count(&self) -> usize {
+        match &self.0 {
+            Form::List(states) => states.len(),
+            Form::Columns { position, .. } => position.len(),
+        }
+    }
+
     /// The states, unless there are more than `limit`.
     pub fn at_most(self, limit: u64, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
-        let asked = u64::try_from(self.states.len()).unwrap_or(u64::MAX);
+        let asked = u64::try_from(self.count()).unwrap_or(u64::MAX);
         if asked > limit {
             errors.beyond(at, "states", limit, asked);
             return None;
@@ -129,19 +145,29 @@ impl StatesSpec {
         Some(self)
     }
 
-    /// Calls `each` with the index, the state and its places of time, position and velocity.
+    /// Calls `each` with the state and its places, and gives what it makes of them if it does so of all.
     pub fn check<T>(
         self,
         at: Path<'_>,
         mut each: impl FnMut(StateSpec, &Places<'_>) -> Option<T>,
     ) -> Option<Vec<T>> {
-        let (count, columns) = (self.states.len(), self.columns);
-        let checked = self
-            .states
-            .into_iter()
-            .enumerate()
-            .filter_map(|(index, state)| each(state, &Places { at, index: Some(index), columns }));
-        let checked: Vec<T> = checked.collect();
+        let count = self.count();
+        let mut checked = Vec::with_capacity(count);
+        let mut keep = |index, columns, state| {
+            checked.extend(each(state, &Places { at, index: Some(index), columns }));
+        };
+        match self.0 {
+            Form::List(states) => {
+                states.into_iter().enumerate().for_each(|(index, state)| keep(index, false, state));
+            }
+            Form::Columns { time, position, rates, canonical } => {
+                let way = if canonical { Motion::Momentum } else { Motion::Velocity };
+                for (index, (position, rate)) in position.into_iter().zip(rates).enumerate() {
+                    let time = time.as_ref().map_or(0.0, |time| time[index]);
+                    keep(index, true, StateSpec { time, motion: way(position, rate) });
+                }
+            }
+        }
         (checked.len() == count).then_some(checked)
     }
 }
@@ -181,13 +207,15 @@ impl Named for StatesSpec {
 
 impl Decode for StatesSpec {
     fn decode(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
-        let columns = matches!(node, Node::Object(_));
-        let states = if columns { from_columns(node, at, errors)? } else { Vec::decode(node, at, errors)? };
-        if states.is_empty() {
+        let states = Self(match node {
+            Node::Object(_) => columns(node, at, errors)?,
+            _ => Form::List(Vec::decode(node, at, errors)?),
+        });
+        if states.count() == 0 {
             errors.push(at, "must hold at least one state");
             return None;
         }
-        Some(Self { states, columns })
+        Some(states)
     }
 
     fn describe(named: &mut Schemas) -> RefOr<Schema> {
@@ -195,15 +223,15 @@ impl Decode for StatesSpec {
     }
 }
 
-fn from_columns(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Vec<StateSpec>> {
+fn columns(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Form> {
     let columns = StateColumns::decode(node, at, errors)?;
     if columns.velocity.is_absent() == columns.momentum.is_absent() {
         errors.push(at, "must have exactly one of `velocity` and `momentum`");
         return None;
     }
-    let way = if columns.velocity.is_absent() { "momentum" } else { "velocity" };
-    let with_velocity = !columns.velocity.is_absent();
-    let rates = if with_velocity { columns.velocity } else { columns.momentum };
+    let canonical = columns.velocity.is_absent();
+    let (way, rates) =
+        if canonical { ("momentum", columns.momentum) } else { ("velocity", columns.velocity) };
     let position = columns.position.given()?;
     let count = position.len();
     let mut fits = |name: &str, length: usize| {
@@ -215,17 +243,9 @@ fn from_columns(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Ve
         }
         length == count
     };
-    let time = columns.time.or_else(|| vec![0.0; count])?;
-    let rates = rates.given()?;
-    if !(fits("time", time.len()) & fits(way, rates.len())) {
-        return None;
-    }
-    let states = time.into_iter().zip(position).zip(rates).map(|((time, position), rate)| {
-        let motion =
-            if with_velocity { Motion::Velocity(position, rate) } else { Motion::Momentum(position, rate) };
-        StateSpec { time, motion }
-    });
-    Some(states.collect())
+    let (time, rates) = (columns.time.optional()?, rates.given()?);
+    let times_fit = time.as_ref().is_none_or(|time| fits("time", time.len()));
+    (fits(way, rates.len()) & times_fit).then_some(Form::Columns { time, position, rates, canonical })
 }
 
 impl utoipa::PartialSchema for StatesSpec {

@@ -2,6 +2,7 @@
 
 mod request;
 mod response;
+mod sweep;
 
 use std::sync::Arc;
 use std::time::Duration;
@@ -9,19 +10,18 @@ use std::time::Duration;
 use axum::extract::State;
 use axum::response::Response;
 use http::HeaderMap;
-use mechanics::equilibria::Equilibria;
 
-use crate::answer::{Answer, Document, Effort, JSON, negotiation::negotiate};
+use crate::answer::{Document, Effort, JSON, NDJSON, negotiation::negotiate};
 use crate::config::Limits;
 use crate::decode::Errors;
 use crate::extract::{Query, Segment, Submission};
-use crate::operation::{self, Operation, Solved};
-use crate::pool::Context;
+use crate::operation::{self, Operation, Work};
 use crate::problem::Problem;
 use crate::state::App;
 use crate::wire::{Axes, Conventions, JacobiForm, LengthUnit, Origin, TimeUnit, VelocityUnit, XAxis};
 use request::{EquilibriaOptions, EquilibriaRequest, Subject, Task};
-use response::{EquilibriaOfOne, EquilibriaOfSystem, EquilibriaOutput, EquilibriaSweep, Solution};
+use response::{EquilibriaLine, EquilibriaOfOne, EquilibriaOutput, Solution};
+use sweep::Sweep;
 
 /// Equilibria of a system of the catalogue
 ///
@@ -48,23 +48,24 @@ pub(crate) async fn of_system(
     let Query(EquilibriaOptions { units, frame, form }) = options?;
     let scale = units.scale(&system).map_err(|missing| Problem::internal(&missing))?;
     let conventions = Conventions { system, units, scale, frame };
-    let solution = Solution::new(&Equilibria::of(conventions.system.mass_parameter()), &conventions, form);
+    let solution = Solution::of(&conventions, form);
     Ok(Document::json(&EquilibriaOfOne::new(conventions, form, solution))?.respond(&headers))
 }
 
 /// Equilibria of any system, or of many
 ///
 /// L1 to L5 with their Jacobi constants and the linear motion about them. With `systems` in place of `system`, for
-/// sweeps over the mass parameter, those of each.
+/// sweeps over the mass parameter, those of each; as `application/x-ndjson` a line for each, sent once it is computed.
 #[utoipa::path(post, path = "/v1/equilibria", tag = "systems", request_body = EquilibriaRequest,
-    responses((status = 200, body = EquilibriaOutput, description = "The five points, of one system or of each")))]
-pub(crate) async fn equilibria(State(app): State<App>, submission: Submission) -> Result<Answer, Problem> {
+    responses((status = 200, description = "The five points, of one system or of each", content(
+        (EquilibriaOutput = "application/json"), (EquilibriaLine = "application/x-ndjson")))))]
+pub(crate) async fn equilibria(State(app): State<App>, submission: Submission) -> Result<Response, Problem> {
     operation::answer::<EquilibriaRequest>(app, submission).await
 }
 
 impl Operation for EquilibriaRequest {
     type Task = Task;
-    type Output = EquilibriaOutput;
+    const OFFERED: &'static [&'static str] = &[JSON, NDJSON];
 
     fn check(self, limits: &Limits, errors: &mut Errors) -> Option<Task> {
         self.task(limits, errors)
@@ -80,30 +81,22 @@ impl Operation for EquilibriaRequest {
         Some(task.wall_time)
     }
 
-    fn solve(task: Task, context: &Context) -> Result<Solved<EquilibriaOutput>, Problem> {
+    fn work(task: Task, streamed: bool) -> Work {
         let Task { subject, form, .. } = task;
-        let steps = u64::try_from(subject.count()).unwrap_or(u64::MAX);
-        let output = match subject {
+        match subject {
+            Subject::One(conventions) if !streamed => Work::whole(move |_| {
+                let solution = Solution::of(&conventions, form);
+                let output = EquilibriaOfOne::new(*conventions, form, solution);
+                Ok((output, Effort { steps: 1, outcome: None }))
+            }),
             Subject::One(conventions) => {
-                let conventions = *conventions;
-                let solution =
-                    Solution::new(&Equilibria::of(conventions.system.mass_parameter()), &conventions, form);
-                EquilibriaOutput::One(Box::new(EquilibriaOfOne::new(conventions, form, solution)))
+                let Conventions { units, frame, .. } = *conventions;
+                Work::Lines(Arc::new(Sweep::new(vec![*conventions], units, frame, form)))
             }
             Subject::Many { each, units, frame } => {
-                let each = Arc::new(each);
-                let shared = Arc::clone(&each);
-                let solutions = operation::batch(context, each.len(), move |index| {
-                    let conventions = &shared[index];
-                    Solution::new(&Equilibria::of(conventions.system.mass_parameter()), conventions, form)
-                })?;
-                let systems = each.iter().zip(solutions);
-                let systems = systems.map(|(conventions, solution)| {
-                    EquilibriaOfSystem::new(conventions.system.clone(), solution)
-                });
-                EquilibriaOutput::Many(EquilibriaSweep::new(units, frame, form, systems.collect()))
+                let sweep = Arc::new(Sweep::new(each, units, frame, form));
+                if streamed { Work::Lines(sweep) } else { Work::Items(sweep) }
             }
-        };
-        Ok(Solved { output, effort: Effort { steps, outcome: None } })
+        }
     }
 }

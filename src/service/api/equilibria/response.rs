@@ -1,3 +1,5 @@
+use std::collections::BTreeMap;
+
 use mechanics::equilibria::{Equilibria, Equilibrium, Point, ROUTH};
 use mechanics::frame::Frame;
 use mechanics::system::System;
@@ -7,7 +9,8 @@ use serde::Serialize;
 use utoipa::ToSchema;
 
 use crate::decode::choices;
-use crate::wire::{Conventions, FrameEcho, JacobiForm, SystemEcho, UnitsEcho, as_system_echo};
+use crate::problem::ProblemBody;
+use crate::wire::{Conventions, FrameEcho, JacobiForm, SystemEcho, UnitsEcho};
 
 choices! {
     /// An equilibrium by name, which goes with the bodies and not with the frame: L1 between the primaries, L2 beyond
@@ -16,13 +19,53 @@ choices! {
 }
 
 /// Equilibria of one system, or of each of many.
-#[derive(Debug, Serialize, ToSchema)]
+#[derive(ToSchema)]
 #[serde(untagged)]
-pub(crate) enum EquilibriaOutput {
+#[expect(dead_code, reason = "describes what is written")]
+pub(crate) enum EquilibriaOutput<'a> {
     /// Where the request has `system`.
     One(Box<EquilibriaOfOne>),
     /// Where the request has `systems`.
-    Many(EquilibriaSweep),
+    Many(EquilibriaSweep<'a>),
+}
+
+/// A line of the equilibria of many systems.
+#[derive(ToSchema)]
+#[serde(tag = "kind", rename_all = "snake_case")]
+#[expect(dead_code, reason = "describes what is written")]
+pub(crate) enum EquilibriaLine<'a> {
+    /// The first.
+    Header(SweepHeader),
+    /// One for each system, in the request's order.
+    Points(Box<EquilibriaOfSystem<'a>>),
+    /// The last of a stream that ends well.
+    Summary(SweepSummary),
+    /// The last of a stream that does not.
+    Problem(ProblemBody<'a>),
+}
+
+/// What the equilibria of all systems have in common.
+#[derive(Serialize, ToSchema)]
+#[schema(as = EquilibriaHeader)]
+pub(crate) struct SweepHeader {
+    /// The units of all numbers.
+    units: UnitsEcho,
+    /// The frame of all positions.
+    frame: FrameEcho,
+    /// Which Jacobi constant is meant.
+    jacobi_form: JacobiForm,
+}
+
+/// How the computation for all systems ended.
+#[derive(Serialize, ToSchema)]
+#[schema(as = EquilibriaSummary)]
+pub(crate) struct SweepSummary {
+    /// `complete`.
+    outcome: &'static str,
+    /// How many systems ended in which way.
+    outcomes: BTreeMap<&'static str, usize>,
+    /// The worst of all systems.
+    evidence: EquilibriaEvidence,
 }
 
 /// Equilibria of one system.
@@ -37,8 +80,8 @@ pub(crate) struct EquilibriaOfOne {
 }
 
 /// Equilibria of each of many systems.
-#[derive(Debug, Serialize, ToSchema)]
-pub(crate) struct EquilibriaSweep {
+#[derive(Serialize, ToSchema)]
+pub(crate) struct EquilibriaSweep<'a> {
     /// The units of all numbers.
     units: UnitsEcho,
     /// The frame of all positions.
@@ -48,16 +91,16 @@ pub(crate) struct EquilibriaSweep {
     /// The worst of all systems.
     evidence: EquilibriaEvidence,
     /// The systems in the request's order, each with its equilibria.
-    systems: Vec<EquilibriaOfSystem>,
+    systems: Vec<EquilibriaOfSystem<'a>>,
 }
 
 /// One system of many, with its equilibria.
-#[derive(Debug, Serialize, ToSchema)]
-pub(crate) struct EquilibriaOfSystem {
+#[derive(Serialize, ToSchema)]
+pub(crate) struct EquilibriaOfSystem<'a> {
+    /// Its index in the request.
+    index: usize,
     /// The system.
-    #[serde(serialize_with = "as_system_echo")]
-    #[schema(value_type = SystemEcho)]
-    system: System,
+    system: SystemEcho<'a>,
     #[serde(flatten)]
     solution: Solution,
 }
@@ -124,32 +167,47 @@ impl EquilibriaOfOne {
     }
 }
 
-impl EquilibriaSweep {
-    pub(super) fn new(
-        units: Units,
-        frame: Frame,
-        jacobi_form: JacobiForm,
-        systems: Vec<EquilibriaOfSystem>,
-    ) -> Self {
-        let residuals = systems.iter().map(|system| system.solution.evidence.largest_residual);
-        let evidence = EquilibriaEvidence { largest_residual: residuals.fold(0.0, f64::max) };
-        Self { units: UnitsEcho(units), frame: frame.into(), jacobi_form, evidence, systems }
+impl EquilibriaSweep<'_> {
+    /// The answer without its systems.
+    pub(super) fn new(units: Units, frame: Frame, jacobi_form: JacobiForm, largest_residual: f64) -> Self {
+        let SweepHeader { units, frame, jacobi_form } = SweepHeader::new(units, frame, jacobi_form);
+        let evidence = EquilibriaEvidence { largest_residual };
+        Self { units, frame, jacobi_form, evidence, systems: Vec::new() }
     }
 }
 
-impl EquilibriaOfSystem {
-    pub(super) fn new(system: System, solution: Solution) -> Self {
-        Self { system, solution }
+impl SweepHeader {
+    pub(super) fn new(units: Units, frame: Frame, jacobi_form: JacobiForm) -> Self {
+        Self { units: UnitsEcho(units), frame: frame.into(), jacobi_form }
+    }
+}
+
+impl SweepSummary {
+    pub(super) fn new(count: usize, largest_residual: f64) -> Self {
+        const COMPLETE: &str = "complete";
+        let evidence = EquilibriaEvidence { largest_residual };
+        Self { outcome: COMPLETE, outcomes: BTreeMap::from([(COMPLETE, count)]), evidence }
+    }
+}
+
+impl<'a> EquilibriaOfSystem<'a> {
+    pub(super) fn new(index: usize, system: &'a System, solution: Solution) -> Self {
+        Self { index, system: system.into(), solution }
     }
 }
 
 impl Solution {
-    pub(super) fn new(equilibria: &Equilibria, conventions: &Conventions, form: JacobiForm) -> Self {
+    pub(super) fn of(conventions: &Conventions, form: JacobiForm) -> Self {
+        let equilibria = Equilibria::of(conventions.system.mass_parameter());
         Self {
             critical_mass_parameter: ROUTH,
             evidence: EquilibriaEvidence { largest_residual: equilibria.largest_residual() },
             points: Point::ALL.map(|point| PointEcho::new(equilibria.get(point), conventions, form)),
         }
+    }
+
+    pub(super) fn largest_residual(&self) -> f64 {
+        self.evidence.largest_residual
     }
 }
 

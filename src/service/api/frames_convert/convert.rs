@@ -3,7 +3,7 @@ use mechanics::frame::Frame;
 use mechanics::state::State;
 
 use super::request::Variables;
-use super::response::ConvertedState;
+use super::response::{ConvertedState, FramesConvertEvidence};
 use crate::wire::{About, Conventions, ElementsEcho};
 
 /// A state in the frame that it was given in, with its elements if they are asked.
@@ -26,10 +26,7 @@ pub(crate) struct Target {
 #[derive(Debug)]
 pub(crate) struct Converted {
     pub(super) state: ConvertedState,
-    pub(super) position_error: f64,
-    pub(super) velocity_error: f64,
-    /// Absent if elements are not asked or do not determine the state.
-    pub(super) elements_error: Option<f64>,
+    pub(super) evidence: FramesConvertEvidence,
 }
 
 impl Target {
@@ -51,9 +48,11 @@ impl Target {
         let back = frame.convert(given.frame, mu, &back);
         let elements = given.elements.as_ref();
         Converted {
-            position_error: (back.position - given.state.position).norm(),
-            velocity_error: (back.velocity - given.state.velocity).norm(),
-            elements_error: elements.and_then(|elements| self.elements_error(elements, given)),
+            evidence: FramesConvertEvidence {
+                position_error: (back.position - given.state.position).norm(),
+                velocity_error: (back.velocity - given.state.velocity).norm(),
+                elements_error: elements.and_then(|elements| self.elements_error(elements, given)),
+            },
             state: self.state(&answer, momentum.is_some(), elements),
         }
     }

@@ -4,21 +4,23 @@ mod convert;
 mod request;
 mod response;
 
+use std::ops::Range;
 use std::sync::Arc;
 use std::time::Duration;
 
 use axum::extract::State;
+use axum::response::Response;
+use mechanics::interrupt::Interrupt;
 
-use crate::answer::{Answer, Effort};
+use crate::answer::{Effort, written};
 use crate::config::Limits;
 use crate::decode::Errors;
 use crate::extract::Submission;
-use crate::operation::{self, Operation, Solved};
-use crate::pool::Context;
+use crate::operation::{self, Items, Operation, Out, Tally, Work};
 use crate::problem::Problem;
 use crate::state::App;
 use request::{FramesConvertRequest, Task};
-use response::FramesConvertAnswer;
+use response::{FramesConvertAnswer, FramesConvertEvidence};
 
 /// States between units, frames, velocity, momentum and elements
 ///
@@ -28,13 +30,12 @@ use response::FramesConvertAnswer;
 pub(crate) async fn frames_convert(
     State(app): State<App>,
     submission: Submission,
-) -> Result<Answer, Problem> {
+) -> Result<Response, Problem> {
     operation::answer::<FramesConvertRequest>(app, submission).await
 }
 
 impl Operation for FramesConvertRequest {
     type Task = Task;
-    type Output = FramesConvertAnswer;
 
     fn check(self, limits: &Limits, errors: &mut Errors) -> Option<Task> {
         self.task(limits, errors)
@@ -50,14 +51,43 @@ impl Operation for FramesConvertRequest {
         Some(task.wall_time)
     }
 
-    fn solve(task: Task, context: &Context) -> Result<Solved<FramesConvertAnswer>, Problem> {
-        let Task { from, to, states, .. } = task;
-        let count = states.len();
-        let (states, shared) = (Arc::new(states), Arc::new(to));
-        let to = Arc::clone(&shared);
-        let converted = operation::batch(context, count, move |index| to.convert(&states[index]))?;
-        let output = FramesConvertAnswer::new(&from, &shared, converted);
-        let effort = Effort { steps: u64::try_from(count).unwrap_or(u64::MAX), outcome: None };
-        Ok(Solved { output, effort })
+    fn work(task: Task, _: bool) -> Work {
+        Work::Items(Arc::new(Conversion { task, largest: Tally::default() }))
+    }
+}
+
+/// The states, to be converted.
+struct Conversion {
+    task: Task,
+    largest: Tally<FramesConvertEvidence>,
+}
+
+impl Items for Conversion {
+    fn count(&self) -> usize {
+        self.task.states.len()
+    }
+
+    fn compute(
+        &self,
+        range: Range<usize>,
+        out: &mut Out<'_>,
+        interrupt: &dyn Interrupt,
+    ) -> Result<(), Problem> {
+        let mut largest = FramesConvertEvidence::default();
+        operation::each(range, interrupt, |index| {
+            let converted = self.task.to.convert(&self.task.states[index]);
+            largest.take(&converted.evidence);
+            out.item("state", &converted.state)
+        })?;
+        self.largest.add(|all| all.take(&largest));
+        Ok(())
+    }
+
+    fn envelope(&self) -> Result<Vec<u8>, Problem> {
+        written(&FramesConvertAnswer::new(&self.task.from, &self.task.to, self.largest.sum()))
+    }
+
+    fn effort(&self) -> Effort {
+        Effort { steps: u64::try_from(self.count()).unwrap_or(u64::MAX), outcome: None }
     }
 }

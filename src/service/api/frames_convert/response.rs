@@ -1,15 +1,15 @@
 use serde::Serialize;
 use utoipa::ToSchema;
 
-use super::convert::{Converted, Target};
+use super::convert::Target;
 use super::request::Variables;
-use crate::wire::{About, Conventions, ElementsEcho, FrameEcho, UnitsEcho};
+use crate::wire::{About, Conventions, ConventionsEcho, ElementsEcho, FrameEcho, UnitsEcho};
 
 /// Converted states.
 #[derive(Debug, Serialize, ToSchema)]
-pub(crate) struct FramesConvertAnswer {
+pub(crate) struct FramesConvertAnswer<'a> {
     #[serde(flatten)]
-    conventions: Conventions,
+    conventions: ConventionsEcho<'a>,
     /// What goes with the positions.
     variables: Variables,
     /// What the given states were in.
@@ -30,16 +30,16 @@ pub(crate) struct ConvertedFrom {
 }
 
 /// How good the conversion is, measured by converting the answer back; normalised, whatever the units.
-#[derive(Debug, Serialize, ToSchema)]
+#[derive(Clone, Copy, Debug, Default, Serialize, ToSchema)]
 #[expect(clippy::struct_field_names, reason = "the names are those of the published members")]
 pub(crate) struct FramesConvertEvidence {
     /// Largest distance between a given position and the answer's, converted back, in separations.
-    position_error: f64,
+    pub(super) position_error: f64,
     /// Largest difference between a given velocity and the answer's, converted back, in separations times mean motion.
-    velocity_error: f64,
+    pub(super) velocity_error: f64,
     /// Largest distance between a given position and that of the answer's elements, in separations; null if there are no
     /// elements, or none that determine a state.
-    elements_error: Option<f64>,
+    pub(super) elements_error: Option<f64>,
 }
 
 /// A state in the units and the frame of the answer.
@@ -73,21 +73,27 @@ pub(crate) struct ConvertedState {
     pub(super) tisserand_parameter: Option<f64>,
 }
 
-impl FramesConvertAnswer {
-    pub(super) fn new(from: &Conventions, to: &Target, converted: Vec<Converted>) -> Self {
-        let largest =
-            |error: fn(&Converted) -> Option<f64>| converted.iter().filter_map(error).reduce(f64::max);
-        let evidence = FramesConvertEvidence {
-            position_error: largest(|one| Some(one.position_error)).unwrap_or_default(),
-            velocity_error: largest(|one| Some(one.velocity_error)).unwrap_or_default(),
-            elements_error: largest(|one| one.elements_error),
+impl FramesConvertEvidence {
+    /// Takes over whatever is larger there.
+    pub(super) fn take(&mut self, other: &Self) {
+        self.position_error = self.position_error.max(other.position_error);
+        self.velocity_error = self.velocity_error.max(other.velocity_error);
+        self.elements_error = match (self.elements_error, other.elements_error) {
+            (Some(a), Some(b)) => Some(a.max(b)),
+            (a, b) => a.or(b),
         };
+    }
+}
+
+impl<'a> FramesConvertAnswer<'a> {
+    /// The answer without its states.
+    pub(super) fn new(from: &Conventions, to: &'a Target, evidence: FramesConvertEvidence) -> Self {
         Self {
-            conventions: to.conventions.clone(),
+            conventions: to.conventions.echo(),
             variables: to.variables,
             from: ConvertedFrom { units: UnitsEcho(from.units), frame: from.frame.into() },
             evidence,
-            states: converted.into_iter().map(|one| one.state).collect(),
+            states: Vec::new(),
         }
     }
 }

@@ -3,18 +3,20 @@
 mod request;
 mod response;
 
+use std::ops::Range;
 use std::sync::Arc;
 use std::time::Duration;
 
 use axum::extract::State;
+use axum::response::Response;
 use mechanics::equilibria::Equilibria;
+use mechanics::interrupt::Interrupt;
 
-use crate::answer::{Answer, Effort};
+use crate::answer::{Effort, written};
 use crate::config::Limits;
 use crate::decode::Errors;
 use crate::extract::Submission;
-use crate::operation::{self, Operation, Solved};
-use crate::pool::Context;
+use crate::operation::{self, Items, Operation, Out, Tally, Work};
 use crate::problem::Problem;
 use crate::state::App;
 use request::{JacobiRequest, Task};
@@ -26,13 +28,12 @@ use response::{Energetics, JacobiAnswer};
 /// opens, and which regions it can reach through them.
 #[utoipa::path(post, path = "/v1/jacobi", tag = "states", request_body = JacobiRequest,
     responses((status = 200, body = JacobiAnswer, description = "The states' constants, in the request's order")))]
-pub(crate) async fn jacobi(State(app): State<App>, submission: Submission) -> Result<Answer, Problem> {
+pub(crate) async fn jacobi(State(app): State<App>, submission: Submission) -> Result<Response, Problem> {
     operation::answer::<JacobiRequest>(app, submission).await
 }
 
 impl Operation for JacobiRequest {
     type Task = Task;
-    type Output = JacobiAnswer;
 
     fn check(self, limits: &Limits, errors: &mut Errors) -> Option<Task> {
         self.task(limits, errors)
@@ -48,17 +49,47 @@ impl Operation for JacobiRequest {
         Some(task.wall_time)
     }
 
-    fn solve(task: Task, context: &Context) -> Result<Solved<JacobiAnswer>, Problem> {
-        let Task { conventions, form, states, .. } = task;
-        let effort = Effort { steps: u64::try_from(states.len()).unwrap_or(u64::MAX), outcome: None };
-        let equilibria = Equilibria::of(conventions.system.mass_parameter());
-        let scale = conventions.scale;
-        let states = Arc::new(states);
-        let each = Arc::clone(&states);
-        let energetics = operation::batch(context, states.len(), move |index| {
-            Energetics::new(&each[index], &equilibria, &scale, form.into())
+    fn work(task: Task, _: bool) -> Work {
+        let equilibria = Equilibria::of(task.conventions.system.mass_parameter());
+        Work::Items(Arc::new(Energies { task, equilibria, largest_departure: Tally::default() }))
+    }
+}
+
+/// The states' constants, to be computed.
+struct Energies {
+    task: Task,
+    equilibria: Equilibria,
+    largest_departure: Tally<f64>,
+}
+
+impl Items for Energies {
+    fn count(&self) -> usize {
+        self.task.states.len()
+    }
+
+    fn compute(
+        &self,
+        range: Range<usize>,
+        out: &mut Out<'_>,
+        interrupt: &dyn Interrupt,
+    ) -> Result<(), Problem> {
+        let Task { conventions, form, states, .. } = &self.task;
+        let mut largest = 0.0_f64;
+        operation::each(range, interrupt, |index| {
+            let state = &states[index];
+            largest = largest.max(state.departure_from_definition());
+            out.item("state", &Energetics::new(state, &self.equilibria, &conventions.scale, (*form).into()))
         })?;
-        let output = JacobiAnswer::new(conventions, form, &equilibria, &states, energetics);
-        Ok(Solved { output, effort })
+        self.largest_departure.add(|sum| *sum = sum.max(largest));
+        Ok(())
+    }
+
+    fn envelope(&self) -> Result<Vec<u8>, Problem> {
+        let Task { conventions, form, .. } = &self.task;
+        written(&JacobiAnswer::new(conventions, *form, &self.equilibria, self.largest_departure.sum()))
+    }
+
+    fn effort(&self) -> Effort {
+        Effort { steps: u64::try_from(self.count()).unwrap_or(u64::MAX), outcome: None }
     }
 }

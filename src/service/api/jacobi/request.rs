@@ -46,6 +46,13 @@ pub(crate) struct Subject {
     pub(super) at_rest: JacobiConstant,
 }
 
+impl Subject {
+    /// How far the definition's terms, summed in double precision, are from its constant, relative to the largest.
+    pub(super) fn departure_from_definition(&self) -> f64 {
+        self.at_rest.moving(&self.state.velocity).departure_from_definition(self.origin, &self.state)
+    }
+}
+
 impl JacobiRequest {
     pub(super) fn task(self, limits: &Limits, errors: &mut Errors) -> Option<Task> {
         let granted = LimitsSpec::check(self.limits, limits, errors);

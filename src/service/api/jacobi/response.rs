@@ -8,7 +8,7 @@ use utoipa::ToSchema;
 
 use super::request::Subject;
 use crate::decode::choices;
-use crate::wire::{Conventions, JacobiForm};
+use crate::wire::{Conventions, ConventionsEcho, JacobiForm};
 
 choices! {
     /// Where steepest ascent of the effective potential from a position ends; with closed passages that is the connected
@@ -54,9 +54,9 @@ impl PerPoint {
 
 /// Jacobi constants of states, beside those of the equilibria.
 #[derive(Debug, Serialize, ToSchema)]
-pub(crate) struct JacobiAnswer {
+pub(crate) struct JacobiAnswer<'a> {
     #[serde(flatten)]
-    conventions: Conventions,
+    conventions: ConventionsEcho<'a>,
     /// Which Jacobi constant is meant.
     jacobi_form: JacobiForm,
     /// How good the numbers are.
@@ -103,27 +103,24 @@ pub(crate) struct Energetics {
     above: PerPoint,
 }
 
-impl JacobiAnswer {
+impl<'a> JacobiAnswer<'a> {
+    /// The answer without its states.
     pub(super) fn new(
-        conventions: Conventions,
+        conventions: &'a Conventions,
         jacobi_form: JacobiForm,
         equilibria: &Equilibria,
-        given: &[Subject],
-        states: Vec<Energetics>,
+        largest_departure_from_definition: f64,
     ) -> Self {
         let energy = conventions.scale.energy();
-        let departures = given.iter().map(|Subject { origin, state, at_rest }| {
-            at_rest.moving(&state.velocity).departure_from_definition(*origin, state)
-        });
         Self {
             evidence: JacobiEvidence {
-                largest_departure_from_definition: departures.fold(0.0, f64::max),
+                largest_departure_from_definition,
                 largest_residual: equilibria.largest_residual(),
             },
             equilibria: PerPoint::new(equilibria, |constant| constant.value(jacobi_form.into()) * energy),
-            conventions,
+            conventions: conventions.echo(),
             jacobi_form,
-            states,
+            states: Vec::new(),
         }
     }
 }

@@ -181,7 +181,7 @@ fn count_states(states: &Field<StatesSpec>, extended: bool, limits: &Limits, err
     } else {
         (limits.states, "states")
     };
-    let count = states.states.len() as u64;
+    let count = states.count() as u64;
     if count > most {
         errors.beyond(Path::ROOT.member("initial_states"), what, most, count);
     }

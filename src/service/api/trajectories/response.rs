@@ -1,26 +1,17 @@
 //! The answer: trajectories in the units and the frame of the request.
 
 use std::collections::BTreeMap;
-use std::sync::Arc;
 
-use mechanics::propagation::{Audit, Evidence, Outcome, Sampling, Trajectory};
+use mechanics::propagation::{Audit, Evidence, Outcome, Samples, Sampling, Trajectory};
 use mechanics::units::Scale;
 use nalgebra::{Matrix6, Vector3};
-use serde::{Serialize, Serializer};
+use serde::Serialize;
 use utoipa::ToSchema;
 
-use super::solve::Task;
+use super::solve::{Task, Totals};
 use super::span::{DurationSpec, SamplesSpec};
+use crate::problem::ProblemBody;
 use crate::wire::{FrameEcho, StateEcho, SystemEcho, UnitsEcho};
-
-/// What was computed.
-#[derive(Debug)]
-pub(super) struct Solution {
-    pub task: Arc<Task>,
-    pub outcome: Outcome,
-    pub steps: u64,
-    pub trajectories: Vec<Trajectory>,
-}
 
 /// Trajectories, in the order of their initial states.
 #[derive(Serialize, ToSchema)]
@@ -42,8 +33,60 @@ pub(super) struct TrajectoriesAnswer<'a> {
     /// How good all of them are.
     evidence: TotalEvidence,
     /// The trajectories.
-    #[schema(value_type = Vec<TrajectoryAnswer>)]
-    trajectories: Each<'a>,
+    trajectories: Vec<TrajectoryAnswer<'a>>,
+}
+
+/// A line of the trajectories of a stream.
+#[derive(ToSchema)]
+#[serde(tag = "kind", rename_all = "snake_case")]
+#[expect(dead_code, reason = "describes what is written")]
+pub(super) enum TrajectoriesLine<'a> {
+    /// The first.
+    Header(TrajectoriesEcho<'a>),
+    /// Samples that a trajectory has beyond its last 10,000, before its own line.
+    Samples(SamplesLine),
+    /// A trajectory, one for each initial state in their order.
+    Trajectory(Box<TrajectoryAnswer<'a>>),
+    /// The last of a stream that ends well.
+    Summary(TrajectoriesSummary),
+    /// The last of a stream that does not.
+    Problem(ProblemBody<'a>),
+}
+
+/// What trajectories have in common.
+#[derive(Serialize, ToSchema)]
+#[schema(as = TrajectoriesHeader)]
+pub(super) struct TrajectoriesEcho<'a> {
+    /// The system that was computed in.
+    system: SystemEcho<'a>,
+    /// The units of all numbers.
+    units: UnitsEcho,
+    /// The frame of all states and matrices.
+    frame: FrameEcho,
+    /// Relative local error per step.
+    tolerance: f64,
+    /// The primaries whose surfaces end a trajectory.
+    contact_bodies: Vec<&'static str>,
+}
+
+/// How all trajectories ended.
+#[derive(Serialize, ToSchema)]
+pub(super) struct TrajectoriesSummary {
+    /// `complete`, or `wall_time_limit` where some trajectories were cut short by it.
+    outcome: &'static str,
+    /// How many trajectories ended in which way.
+    outcomes: BTreeMap<&'static str, u64>,
+    /// How good all of them are.
+    evidence: TotalEvidence,
+}
+
+/// Samples of a trajectory that are sent before its end.
+#[derive(Serialize, ToSchema)]
+pub(super) struct SamplesLine {
+    /// Index of its initial state.
+    index: usize,
+    #[serde(flatten)]
+    samples: SamplesAnswer,
 }
 
 /// How good all trajectories are.
@@ -140,42 +183,48 @@ struct AuditAnswer {
     velocity_error: Option<f64>,
 }
 
-/// The trajectories, put into the client's units one at a time as they are written.
-struct Each<'a>(&'a Solution);
-
-impl Serialize for Each<'_> {
-    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
-        serializer.collect_seq(self.0.trajectories.iter().map(|trajectory| self.0.task.answer(trajectory)))
-    }
-}
-
-impl Serialize for Solution {
-    fn serialize<S: Serializer>(&self, serializer: S) -> Result<S::Ok, S::Error> {
-        let conventions = &self.task.conventions;
-        let parts = self.task.request.parts();
-        let mut outcomes = BTreeMap::new();
-        for trajectory in &self.trajectories {
-            *outcomes.entry(outcome_name(trajectory.outcome)).or_default() += 1;
-        }
-        let drift = self.trajectories.iter().map(|t| t.evidence.jacobi_drift).fold(0.0, f64::max);
+impl Task {
+    pub(super) fn echo(&self) -> TrajectoriesEcho<'_> {
+        let (conventions, parts) = (&self.conventions, self.request.parts());
         let bodies = [("larger", parts.contact.larger), ("smaller", parts.contact.smaller)];
-        TrajectoriesAnswer {
+        TrajectoriesEcho {
             system: (&conventions.system).into(),
             units: UnitsEcho(conventions.units),
             frame: conventions.frame.into(),
-            tolerance: self.task.request.tolerance(),
+            tolerance: self.request.tolerance(),
             contact_bodies: bodies.into_iter().filter_map(|(name, radius)| radius.map(|_| name)).collect(),
-            outcome: outcome_name(self.outcome),
-            outcomes,
-            evidence: TotalEvidence { steps: self.steps, jacobi_drift: drift * conventions.scale.energy() },
-            trajectories: Each(self),
         }
-        .serialize(serializer)
     }
-}
 
-impl Task {
-    fn answer<'a>(&'a self, trajectory: &Trajectory) -> TrajectoryAnswer<'a> {
+    pub(super) fn summary(&self, totals: &Totals) -> TrajectoriesSummary {
+        let jacobi_drift = totals.jacobi_drift * self.conventions.scale.energy();
+        TrajectoriesSummary {
+            outcome: outcome_name(totals.outcome()),
+            outcomes: totals.outcomes.clone(),
+            evidence: TotalEvidence { steps: totals.steps, jacobi_drift },
+        }
+    }
+
+    /// The answer without its trajectories.
+    pub(super) fn envelope(&self, totals: &Totals) -> TrajectoriesAnswer<'_> {
+        let TrajectoriesEcho { system, units, frame, tolerance, contact_bodies } = self.echo();
+        let TrajectoriesSummary { outcome, outcomes, evidence } = self.summary(totals);
+        let trajectories = Vec::new();
+        TrajectoriesAnswer {
+            system,
+            units,
+            frame,
+            tolerance,
+            contact_bodies,
+            outcome,
+            outcomes,
+            evidence,
+            trajectories,
+        }
+    }
+
+    /// A trajectory in the client's units, of whose samples so many have been given before.
+    pub(super) fn answer<'a>(&'a self, trajectory: &Trajectory, before: usize) -> TrajectoryAnswer<'a> {
         let scale = &self.conventions.scale;
         let mut last = StateEcho::from(scale.state_out(&trajectory.last));
         match trajectory.outcome {
@@ -191,7 +240,8 @@ impl Task {
             outcome: outcome_name(trajectory.outcome),
             r#final: last,
             stopped_by: trajectory.stopped_by,
-            samples: self.samples(trajectory),
+            samples: (self.request.parts().sampling != Sampling::None)
+                .then(|| self.samples(trajectory.index, &trajectory.samples, before)),
             events: trajectory
                 .events
                 .iter()
@@ -207,13 +257,14 @@ impl Task {
     }
 
     /// The instants of samples in the client's own digits where it planned them, as it would count them.
-    fn sample_times(&self, index: usize, computed: &[f64]) -> Vec<f64> {
+    fn sample_times(&self, index: usize, computed: &[f64], before: usize) -> Vec<f64> {
         let (start, duration) = (self.given_times[index], self.duration(index));
-        #[expect(clippy::cast_precision_loss, reason = "the limit of samples is far below 2^53")]
-        let planned = |at: &dyn Fn(f64) -> f64| (0..computed.len()).map(|i| start + at(i as f64)).collect();
+        let numbers = before..before + computed.len();
+        #[expect(clippy::cast_precision_loss, reason = "nobody has the time to compute 2^53 samples")]
+        let planned = |at: &dyn Fn(f64) -> f64| numbers.clone().map(|i| start + at(i as f64)).collect();
         match &self.given_samples {
-            Some(SamplesSpec::Times(times)) => times[..computed.len()].to_vec(),
-            #[expect(clippy::cast_precision_loss, reason = "the limit of samples is far below 2^53")]
+            Some(SamplesSpec::Times(times)) => times[numbers].to_vec(),
+            #[expect(clippy::cast_precision_loss, reason = "a count is at most 2^53")]
             Some(SamplesSpec::Count(count)) => {
                 let last = (count - 1) as f64;
                 planned(&|i| if i < last { duration * (i / last) } else { duration })
@@ -235,23 +286,22 @@ impl Task {
         }
     }
 
-    fn samples(&self, trajectory: &Trajectory) -> Option<SamplesAnswer> {
-        if self.request.parts().sampling == Sampling::None {
-            return None;
-        }
+    pub(super) fn samples_line(&self, index: usize, samples: &Samples, before: usize) -> SamplesLine {
+        SamplesLine { index, samples: self.samples(index, samples, before) }
+    }
+
+    fn samples(&self, index: usize, samples: &Samples, before: usize) -> SamplesAnswer {
         let scale = &self.conventions.scale;
-        let samples = &trajectory.samples;
         let scaled = |vectors: &[Vector3<f64>], factor: f64| {
             vectors.iter().map(|vector| (vector * factor).into()).collect::<Vec<[f64; 3]>>()
         };
-        let time = self.sample_times(trajectory.index, &samples.times);
-        Some(SamplesAnswer {
-            time,
+        SamplesAnswer {
+            time: self.sample_times(index, &samples.times, before),
             position: scaled(&samples.positions, scale.length),
             velocity: scaled(&samples.velocities, scale.velocity),
             state_transition_matrix: (!samples.matrices.is_empty())
                 .then(|| samples.matrices.iter().map(|matrix| rows(scale, matrix)).collect()),
-        })
+        }
     }
 }
 

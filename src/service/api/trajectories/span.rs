@@ -29,7 +29,9 @@ impl Named for DurationSpec {
 impl Decode for DurationSpec {
     fn decode(node: &Node<'_>, at: Path<'_>, errors: &mut Errors) -> Option<Self> {
         match node {
-            Node::Numbers(_) | Node::Array(_) => Decode::decode(node, at, errors).map(Self::Each),
+            Node::Numbers(_) | Node::Vectors(_) | Node::Array(_) => {
+                Decode::decode(node, at, errors).map(Self::Each)
+            }
             Node::Number(all) => Some(Self::All(*all)),
             _ => {
                 errors.push(at, format!("must be a finite number or an array of them, got {}", node.kind()));

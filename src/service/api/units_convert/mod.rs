@@ -6,13 +6,13 @@ mod response;
 use std::time::Duration;
 
 use axum::extract::State;
+use axum::response::Response;
 
-use crate::answer::{Answer, Effort};
+use crate::answer::Effort;
 use crate::config::Limits;
 use crate::decode::Errors;
 use crate::extract::Submission;
-use crate::operation::{self, Operation, Solved};
-use crate::pool::Context;
+use crate::operation::{self, Operation, Work};
 use crate::problem::Problem;
 use crate::state::App;
 use request::{Task, UnitsConvertRequest};
@@ -23,13 +23,15 @@ use response::UnitsConvertAnswer;
 /// Physical units convert among themselves without any scale; to or from normalised ones the system must have it.
 #[utoipa::path(post, path = "/v1/units/convert", tag = "states", request_body = UnitsConvertRequest,
     responses((status = 200, body = UnitsConvertAnswer, description = "The values, each with its result")))]
-pub(crate) async fn units_convert(State(app): State<App>, submission: Submission) -> Result<Answer, Problem> {
+pub(crate) async fn units_convert(
+    State(app): State<App>,
+    submission: Submission,
+) -> Result<Response, Problem> {
     operation::answer::<UnitsConvertRequest>(app, submission).await
 }
 
 impl Operation for UnitsConvertRequest {
     type Task = Task;
-    type Output = UnitsConvertAnswer;
 
     fn check(self, limits: &Limits, errors: &mut Errors) -> Option<Task> {
         self.task(limits, errors)
@@ -40,8 +42,10 @@ impl Operation for UnitsConvertRequest {
         Duration::ZERO
     }
 
-    fn solve(task: Task, _: &Context) -> Result<Solved<UnitsConvertAnswer>, Problem> {
-        let steps = u64::try_from(task.values.len()).unwrap_or(u64::MAX);
-        Ok(Solved { output: UnitsConvertAnswer::new(task), effort: Effort { steps, outcome: None } })
+    fn work(task: Task, _: bool) -> Work {
+        Work::whole(|_| {
+            let steps = u64::try_from(task.values.len()).unwrap_or(u64::MAX);
+            Ok((UnitsConvertAnswer::new(task), Effort { steps, outcome: None }))
+        })
     }
 }
