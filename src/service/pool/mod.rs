@@ -217,7 +217,7 @@ impl Place {
         let context = Context { watch: Arc::clone(&self.held.watch) };
         let mut work = Some((work, answer));
         self.enlist(move || {
-            if let Some((work, answer)) = work.take() {
+            if let Some((work, answer)) = work.take().filter(|_| !context.is_cancelled()) {
                 let _ = answer.send(catch_unwind(AssertUnwindSafe(|| work(&context))));
             }
             false
@@ -231,16 +231,14 @@ impl Place {
         }
     }
 
-    /// Has a compute thread do `piece` after `piece` as long as it says that there is more, unless the computation is
-    /// cancelled before it begins.
+    /// Has a compute thread do `piece` after `piece` as long as it says that there is more; cancelled or not.
     pub fn enlist(&self, mut piece: impl FnMut() -> bool + Send + 'static) {
         let held = Arc::clone(&self.held);
         held.busy.store(true, Ordering::Relaxed);
         self.pool.send(Box::new(move || {
-            if !held.begun.load(Ordering::Relaxed) && held.watch.is_cancelled() {
-                return false;
+            if !held.watch.is_cancelled() {
+                held.begin();
             }
-            held.begin();
             piece()
         }));
     }
