@@ -20,6 +20,12 @@ pub trait Items: Send + Sync + 'static {
         LARGEST_PART
     }
 
+    /// The fewest items of a part but the last, fewer where each is known to take long. How long they take shows with the
+    /// first parts.
+    fn smallest_part(&self) -> usize {
+        SMALLEST_PART
+    }
+
     /// Computes a range of the items, writes them to `out` in ascending order, and takes note of what they took and how
     /// good they are.
     ///
@@ -60,6 +66,9 @@ pub trait Lines: Items {
 
 /// The most items of a part where nothing makes them large: the grain at which computing them together pays.
 pub const LARGEST_PART: usize = 512;
+
+/// The fewest items of a part where an item takes some microseconds.
+pub const SMALLEST_PART: usize = 16;
 
 /// Bytes that are handed over at a time.
 const CHUNK: usize = 32 << 10;

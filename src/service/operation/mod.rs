@@ -21,7 +21,7 @@ use crate::pool::{Context, Place};
 use crate::problem::Problem;
 use crate::state::App;
 
-pub use items::{Items, LARGEST_PART, Lines, Out, Tally, each};
+pub use items::{Items, LARGEST_PART, Lines, Out, SMALLEST_PART, Tally, each};
 use run::Run;
 
 /// A computation that can be asked for.

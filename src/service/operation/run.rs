@@ -20,8 +20,6 @@ use crate::problem::Problem;
 
 /// How long a part should take: that long others wait for a thread. Longer ones would hardly be computed faster.
 const PART_TIME: Duration = Duration::from_millis(2);
-/// The fewest items of a part. How long an item takes is not known before the first parts are done.
-const SMALLEST_PART: usize = 16;
 /// What a part of a stream may hold for its reader, in bytes.
 const PART_ROOM: usize = 1 << 20;
 /// Parts of a stream that may be held for its reader besides one for each thread.
@@ -158,7 +156,7 @@ impl Run {
 
     /// Calls as many threads as find something to do.
     fn call_hands(&self, state: &mut State) {
-        let left = (self.0.items.count() - state.next).div_ceil(SMALLEST_PART);
+        let left = (self.0.items.count() - state.next).div_ceil(self.0.items.smallest_part());
         let free = self.0.pool.threads().saturating_sub(state.hands - state.idle);
         for _ in 0..free.min(left).min(self.0.room_for_parts(state)) {
             let (Some(place), shared) = (&state.place, Arc::clone(&self.0)) else { return };
@@ -275,7 +273,7 @@ impl Shared {
         let timely = state.pace.map_or(0, |pace| PART_TIME.as_nanos() / pace.as_nanos().max(1));
         let timely = usize::try_from(timely).unwrap_or(usize::MAX);
         let share = left.div_ceil(2 * self.pool.threads());
-        timely.min(share).max(SMALLEST_PART).min(self.items.largest_part()).clamp(1, left)
+        timely.min(share).max(self.items.smallest_part()).min(self.items.largest_part()).clamp(1, left)
     }
 
     fn push(&self, number: usize, chunk: Bytes) -> Result<(), Problem> {

@@ -17,7 +17,7 @@ use super::span::{DurationSpec, SamplesSpec};
 use crate::answer::{Effort, JSON, NDJSON, written};
 use crate::config::Limits;
 use crate::decode::{Errors, Path};
-use crate::operation::{Items, LARGEST_PART, Lines, Operation, Out, Tally, Work};
+use crate::operation::{Items, LARGEST_PART, Lines, Operation, Out, SMALLEST_PART, Tally, Work};
 use crate::problem::{Problem, Slug};
 use crate::wire::Conventions;
 
@@ -30,6 +30,8 @@ const VALUES_PER_PART: u64 = 32 << 10;
 /// Lines of samples that may still be written of one trajectory when the time is up: those of the step under way, if it
 /// does not hold more than anybody can use.
 const LATE_LINES: usize = 100;
+/// Trajectories of a part that take long: so many that they may be computed side by side.
+const FEWEST_TOGETHER: usize = 4;
 /// Samples of a trajectory that is sampled at every step, roughly.
 const STEPS: u64 = 128;
 
@@ -106,16 +108,22 @@ impl Totals {
     }
 }
 
+impl Trajectories {
+    /// About how many times as long a trajectory takes as it would in double precision.
+    fn weight(&self) -> usize {
+        let parts = self.task.request.parts();
+        let extended = parts.audit || parts.arithmetic == Arithmetic::DoubleDouble;
+        if extended { usize::try_from(EXTENDED_WEIGHT).unwrap_or(1) } else { 1 }
+    }
+}
+
 impl Items for Trajectories {
     fn count(&self) -> usize {
         self.task.request.count()
     }
 
     fn largest_part(&self) -> usize {
-        let parts = self.task.request.parts();
-        let extended = parts.audit || parts.arithmetic == Arithmetic::DoubleDouble;
-        let weight = if extended { usize::try_from(EXTENDED_WEIGHT).unwrap_or(1) } else { 1 };
-        let most = LARGEST_PART / weight;
+        let (parts, most) = (self.task.request.parts(), LARGEST_PART / self.weight());
         let samples = match &parts.sampling {
             Sampling::None => return most,
             Sampling::EveryStep => STEPS,
@@ -127,6 +135,10 @@ impl Items for Trajectories {
         let values = if parts.matrix == MatrixOutput::Samples { 7 + 36 } else { 7 };
         let trajectories = VALUES_PER_PART / samples.saturating_mul(values).max(1);
         usize::try_from(trajectories).unwrap_or(1).clamp(1, most)
+    }
+
+    fn smallest_part(&self) -> usize {
+        (SMALLEST_PART / self.weight()).max(FEWEST_TOGETHER)
     }
 
     fn compute(
