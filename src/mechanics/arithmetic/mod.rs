@@ -57,7 +57,7 @@ pub trait Real:
     #[must_use]
     fn select_less(self, other: Self, yes: Self, no: Self) -> Self;
 
-    /// log₂ of a positive value to about 1e-7: enough to choose a step.
+    /// log₂ of a positive value within 4e-6: enough to choose a step.
     #[must_use]
     fn log2_coarse(self) -> Self;
 

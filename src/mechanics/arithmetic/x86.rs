@@ -23,7 +23,7 @@ use std::arch::x86_64::{
 };
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
-use super::double::{BIAS, EXP2, FRACTION_BITS, LOG2_ODD, ROUNDER, TO_ONE};
+use super::double::{BIAS, EXP2, FRACTION_BITS, LOG2, ROUNDER, TO_ONE};
 use super::{Lanes, Packed, Quad, Real};
 
 macro_rules! wide {
@@ -168,12 +168,11 @@ macro_rules! coarse {
             };
             #[expect(clippy::cast_precision_loss, reason = "exact")]
             let exponent = exponent - Self::from_f64(WHOLE + BIAS as f64);
-            let one = Self::from_f64(1.0);
-            let t = (mantissa - one) / (mantissa + one);
-            let square = t * t;
-            let [a, b, c, d] = LOG2_ODD.map(Self::from_f64);
-            let odd = d.mul_add(square, c).mul_add(square, b).mul_add(square, a);
-            odd.mul_add(t, exponent)
+            let rest = mantissa - Self::from_f64(1.0);
+            let [a, b, c, d, e, g] = LOG2.map(Self::from_f64);
+            let ratio =
+                g.mul_add(rest, e).mul_add(rest, d).mul_add(rest, c).mul_add(rest, b).mul_add(rest, a);
+            ratio.mul_add(rest, exponent)
         }
 
         #[inline(always)]

@@ -84,6 +84,17 @@ impl Path {
     }
 }
 
+/// A line of the cache.
+#[repr(align(64))]
+struct Line(#[expect(dead_code, reason = "its place is what matters")] u8);
+
+/// Makes the function that this is inlined into begin its stack at a line of the cache. Registers that are spilled across
+/// two lines make a kernel up to twice as slow.
+#[inline(always)]
+pub(super) fn align_stack() {
+    std::hint::black_box(&Line(0));
+}
+
 /// Defines a function that runs its body compiled for the path given.
 macro_rules! on_path {
     ($($(#[$doc:meta])* $visibility:vis fn $name:ident<$lanes:ident: $trait:path = $plain:ty | $four:ty | $eight:ty>

@@ -347,7 +347,7 @@ fn read<L: Lanes, const N: usize>(from: &[L::Array; N]) -> [L; N] {
 pub(super) fn twice_integrated<R: Real>(k: usize, acceleration: R) -> R {
     let (factor, rest) = TWICE_INTEGRATED[k];
     let factor = R::from_f64(factor);
-    if k < REST_MATTERS {
+    if REST_MATTERS.contains(&k) {
         acceleration.mul_add(factor, acceleration * R::from_f64(rest))
     } else {
         acceleration * factor

@@ -64,6 +64,7 @@ impl Place {
         sizes: StepSize,
         stride: &Stride,
     ) -> Halt {
+        super::dispatch::align_stack();
         let Stride { target, direction, most, watched } = *stride;
         for _ in 0..most {
             packed::expand::<P>(primaries, &self.state, series);

@@ -291,7 +291,7 @@ fn turn<P: Packed>(k: usize) -> P {
 fn twice_integrated<P: Packed>(k: usize, pull: P) -> P {
     let (factor, rest) = TWICE_INTEGRATED[k];
     let factor = P::from_f64(factor);
-    if k < REST_MATTERS { pull.mul_add(factor, pull * P::from_f64(rest)) } else { pull * factor }
+    if REST_MATTERS.contains(&k) { pull.mul_add(factor, pull * P::from_f64(rest)) } else { pull * factor }
 }
 
 /// What position and velocity change by within `time`.

@@ -200,6 +200,7 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
         sizes: StepSize,
         most: u64,
     ) -> Pause {
+        super::dispatch::align_stack();
         let zero = L::from_f64(0.0);
         let (centre, centre_rest) = (primaries.smaller_x().value, primaries.smaller_x().rest);
         for steps in 0..most {

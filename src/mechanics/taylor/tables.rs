@@ -57,8 +57,9 @@ pub(super) const TWICE_INTEGRATED: [(f64, f64); TERMS] = {
     factors
 };
 
-/// Beyond this order what the factors lost is far below the round-off of the sum of the series.
-pub(super) const REST_MATTERS: usize = 10;
+/// From this order on what the factors lost is far below the round-off of the sum of the series; at order 0, where the factor
+/// is a half, it is nothing.
+pub(super) const REST_MATTERS: std::ops::Range<usize> = 1..5;
 
 /// 2 (k + 1): from coefficient k + 1 of the position to coefficient k of the Coriolis acceleration.
 pub(super) const CORIOLIS: PerOrder = {

@@ -20,6 +20,7 @@ pub(crate) struct LaneColumns<A> {
 struct InLanes<L>(PhantomData<L>);
 
 impl<L: Lanes> Layout for InLanes<L> {
+    const BOTH: bool = L::COUNT == 8;
     type Value = L;
     type Gradient = [L::Array; 6];
     type Column = [L::Array; 3];

@@ -60,6 +60,8 @@ impl Registers for Eight {
 
 /// How the coefficients lie in memory.
 trait Layout {
+    /// Whether there are registers enough for the sums of two orders at once.
+    const BOTH: bool;
     type Value: Real;
     type Gradient;
     type Column;
@@ -92,9 +94,11 @@ fn expand_column<T: Layout>(layout: &T, gradient: &[T::Gradient; TERMS], column:
     let (first, second) = (layout.gradient(&gradient[0]), layout.gradient(&gradient[1]));
     for k in (0..ORDER).step_by(2) {
         let (mut even, mut odd) = (Sums::new(), Sums::new());
-        let mut older = layout.read(&column[0]);
-        odd.add(layout.gradient(&gradient[k + 1]), older);
-        if k > 0 {
+        if k == 0 {
+            odd.add(second, newest);
+        } else if T::BOTH {
+            let mut older = layout.read(&column[0]);
+            odd.add(layout.gradient(&gradient[k + 1]), older);
             for (gradient, column) in gradient[2..=k].iter().rev().zip(&column[1..k]) {
                 let (gradient, newer) = (layout.gradient(gradient), layout.read(column));
                 even.add(gradient, older);
@@ -102,6 +106,14 @@ fn expand_column<T: Layout>(layout: &T, gradient: &[T::Gradient; TERMS], column:
                 older = newer;
             }
             even.add(second, older);
+            odd.add(second, newest);
+        } else {
+            for (gradient, column) in gradient[1..=k].iter().rev().zip(&column[..k]) {
+                even.add(layout.gradient(gradient), layout.read(column));
+            }
+            for (gradient, column) in gradient[2..=k + 1].iter().rev().zip(&column[..k]) {
+                odd.add(layout.gradient(gradient), layout.read(column));
+            }
             odd.add(second, newest);
         }
         even.add(first, newest);
@@ -116,36 +128,38 @@ fn expand_column<T: Layout>(layout: &T, gradient: &[T::Gradient; TERMS], column:
 /// Coefficient k + 2 of a column from coefficient k of the forces and k + 1 of the column.
 #[inline(always)]
 fn integrated<R: Real>(k: usize, forces: Sums<R>, [rate_x, rate_y, _]: [R; 3]) -> [R; 3] {
-    let Sums { in_plane: [x, y, z], vertical: [by_x, by_y, by_z] } = forces;
     let (factor, turn) = (R::from_f64(INTEGRATED[k][0]), R::from_f64(INTEGRATED[k][1]));
-    [
-        rate_y.mul_add(turn, (x + by_x) * factor),
-        rate_x.neg_mul_add(turn, (y + by_y) * factor),
-        (z + by_z) * factor,
-    ]
+    let [x, y, z] = forces.total();
+    [rate_y.mul_add(turn, x * factor), rate_x.neg_mul_add(turn, y * factor), z * factor]
 }
 
-/// Sums of the products of the gradient with a column: two an axis, so that neither waits for itself.
+/// Sums of the products of the gradient with a column, by axis and component: none waits for another.
 #[derive(Clone, Copy)]
-struct Sums<R> {
-    in_plane: [R; 3],
-    vertical: [R; 3],
-}
+struct Sums<R>([[R; 3]; 3]);
 
 impl<R: Real> Sums<R> {
     #[inline(always)]
     fn new() -> Self {
-        let zero = R::from_f64(0.0);
-        Self { in_plane: [zero; 3], vertical: [zero; 3] }
+        Self([[R::from_f64(0.0); 3]; 3])
     }
 
     #[inline(always)]
     fn add(&mut self, [xx, xy, xz, yy, yz, zz]: [R; 6], [x, y, z]: [R; 3]) {
-        self.in_plane[0] = xy.mul_add(y, xx.mul_add(x, self.in_plane[0]));
-        self.in_plane[1] = yy.mul_add(y, xy.mul_add(x, self.in_plane[1]));
-        self.in_plane[2] = yz.mul_add(y, xz.mul_add(x, self.in_plane[2]));
-        self.vertical[0] = xz.mul_add(z, self.vertical[0]);
-        self.vertical[1] = yz.mul_add(z, self.vertical[1]);
-        self.vertical[2] = zz.mul_add(z, self.vertical[2]);
+        let [along_x, along_y, along_z] = &mut self.0;
+        along_x[0] = xx.mul_add(x, along_x[0]);
+        along_y[0] = xy.mul_add(x, along_y[0]);
+        along_z[0] = xz.mul_add(x, along_z[0]);
+        along_x[1] = xy.mul_add(y, along_x[1]);
+        along_y[1] = yy.mul_add(y, along_y[1]);
+        along_z[1] = yz.mul_add(y, along_z[1]);
+        along_x[2] = xz.mul_add(z, along_x[2]);
+        along_y[2] = yz.mul_add(z, along_y[2]);
+        along_z[2] = zz.mul_add(z, along_z[2]);
+    }
+
+    #[inline(always)]
+    fn total(&self) -> [R; 3] {
+        let [x, y, z] = self.0;
+        [(x[0] + x[1]) + x[2], (y[0] + y[1]) + y[2], (z[0] + z[1]) + z[2]]
     }
 }

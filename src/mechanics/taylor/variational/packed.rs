@@ -58,6 +58,7 @@ struct SideBySide<L> {
 }
 
 impl<L: Lanes> Layout for SideBySide<L> {
+    const BOTH: bool = L::COUNT == 8;
     type Value = L;
     type Gradient = [f64; 6];
     type Column = [Row; 3];
@@ -83,6 +84,7 @@ impl<L: Lanes> Layout for SideBySide<L> {
 /// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
 #[inline(always)]
 pub(in super::super) fn expand<T: Registers>(series: &Series, matrix: &[[f64; 6]; 6], columns: &mut Columns) {
+    super::super::dispatch::align_stack();
     for axis in 0..3 {
         columns.position[0][axis][..6].copy_from_slice(&matrix[axis]);
         columns.position[1][axis][..6].copy_from_slice(&matrix[axis + 3]);
@@ -103,16 +105,21 @@ fn gradient<P: Packed>(s: &Series, c: &mut Columns) {
     let [near, far] = s.half_square(0).map(|half_square| 1.0 / half_square);
     let inverse = P::twice(&[near, far]);
     let bend = P::twice(&s.half_square(1));
+    // One after the other, for only the first of the three waits for itself.
     for k in (0..ORDER).step_by(2) {
-        let [even, odd] = steepen::<P>(s, c, k, inverse, bend);
-        pull_levers::<P>(s, c, k, [even, odd]);
+        steepen::<P>(s, c, k, inverse, bend);
+    }
+    for k in (0..ORDER).step_by(2) {
+        pull_levers::<P>(s, c, k);
+    }
+    for k in (0..ORDER).step_by(2) {
         grade::<P>(s, c, k);
     }
 }
 
-/// Orders `k` and `k` + 1 of q and p, each twice.
+/// Orders `k` and `k` + 1 of q and p.
 #[inline(always)]
-fn steepen<P: Packed>(s: &Series, c: &mut Columns, k: usize, inverse: P, bend: P) -> [P; 2] {
+fn steepen<P: Packed>(s: &Series, c: &mut Columns, k: usize, inverse: P, bend: P) {
     let mut sums = P::from_f64(0.0);
     for (squares, steep) in s.squares[1..=k].iter().rev().zip(&c.steep[..k]) {
         sums = P::load(squares).mul_add(P::twice(steep), sums);
@@ -123,11 +130,10 @@ fn steepen<P: Packed>(s: &Series, c: &mut Columns, k: usize, inverse: P, bend: P
     even.low_with_low(odd).store_pairs(&mut c.steep, k);
     c.total[k] = (even + even.swap()).first();
     c.total[k + 1] = (odd + odd.swap()).first();
-    [even, odd]
 }
 
 #[inline(always)]
-fn pull_levers<P: Packed>(s: &Series, c: &mut Columns, k: usize, steep: [P; 2]) {
+fn pull_levers<P: Packed>(s: &Series, c: &mut Columns, k: usize) {
     let (mut even, mut odd) = (P::from_f64(0.0), P::from_f64(0.0));
     for (&total, positions) in c.total[..=k].iter().zip(s.position[..k + 2].windows(2).rev()) {
         let total = P::from_f64(total);
@@ -135,8 +141,8 @@ fn pull_levers<P: Packed>(s: &Series, c: &mut Columns, k: usize, steep: [P; 2]) 
         odd = total.mul_add(P::load(&positions[1]), odd);
     }
     odd = P::from_f64(c.total[k + 1]).mul_add(P::load(&s.position[0]), odd);
-    for (k, lever, steep) in [(k, even, steep[0]), (k + 1, odd, steep[1])] {
-        let far = steep.seconds();
+    for (k, lever) in [(k, even), (k + 1, odd)] {
+        let far = P::from_f64(c.steep[k][1]);
         let lever = lever.with::<0b0001>(P::from_f64(s.side).mul_add(far, lever));
         lever.store(&mut c.lever[k]);
         lever.bbcd().with::<0b1000>(far).store(&mut c.others[k]);
