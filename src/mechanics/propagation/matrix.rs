@@ -50,7 +50,7 @@ impl Transition {
     }
 
     pub(super) fn advance(&mut self, path: Path, columns: &Columns, at: f64) {
-        self.leg = self.leg_at(path, columns, at);
+        taylor::advance_variational(path, columns, &mut self.leg, at);
     }
 
     /// Takes the leg's defects into account.

@@ -189,6 +189,20 @@ on_path! {
         variational::change::<P>(columns, time)
     }
 
+    /// Moves a matrix on by `time` along its columns.
+    pub fn advance_variational<P: Registers = variational::Plain | variational::Four | variational::Eight>(
+        columns: &Columns,
+        matrix: &mut [[Compensated; 6]; 6],
+        time: f64,
+    ) {
+        let change = variational::change::<P>(columns, time);
+        for (row, change) in matrix.iter_mut().zip(change) {
+            for (element, change) in row.iter_mut().zip(change) {
+                *element = element.plus(change);
+            }
+        }
+    }
+
     /// The Jacobi constant 2Ω − v² of (x, y, z, vx, vy, vz).
     pub fn jacobi_constant<P: Packed = Quad<f64> | Wide4 | Wide4>(
         primaries: &Primaries,

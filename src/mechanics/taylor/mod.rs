@@ -18,7 +18,10 @@ mod variational;
 
 use crate::arithmetic::{Quad, Real};
 
-pub use dispatch::{Path, advance, expand, expand_variational, flow, flow_variational, jacobi_constant, run};
+pub use dispatch::{
+    Path, advance, advance_variational, expand, expand_variational, flow, flow_variational, jacobi_constant,
+    run,
+};
 pub(crate) use dispatch::{advance_four, eight, run_four};
 pub use motion::{Halt, Place, Stride};
 pub use primaries::Primaries;

@@ -105,14 +105,9 @@ fn gradient<P: Packed>(s: &Series, c: &mut Columns) {
     let [near, far] = s.half_square(0).map(|half_square| 1.0 / half_square);
     let inverse = P::twice(&[near, far]);
     let bend = P::twice(&s.half_square(1));
-    // One after the other, for only the first of the three waits for itself.
     for k in (0..ORDER).step_by(2) {
         steepen::<P>(s, c, k, inverse, bend);
-    }
-    for k in (0..ORDER).step_by(2) {
         pull_levers::<P>(s, c, k);
-    }
-    for k in (0..ORDER).step_by(2) {
         grade::<P>(s, c, k);
     }
 }
