@@ -44,7 +44,7 @@ fn main() -> ExitCode {
         ["time", name, seconds] => request(name).and_then(|request| timed(&request, seconds)),
         ["time", name, seconds, path] => request_on(name, path).and_then(|request| timed(&request, seconds)),
         ["effort"] => Some(effort::table().trim_end().to_owned()),
-        ["golden"] => Some(golden::table().trim_end().to_owned()),
+        ["golden"] => Some(golden::table(Path::fastest()).trim_end().to_owned()),
         _ => None,
     };
     let Some(answer) = answer else {

@@ -45,11 +45,11 @@ pub trait Real:
     #[must_use]
     fn abs(self) -> Self;
 
-    /// The larger of two ordered values.
+    /// The larger of two values; the second where they are equal or one is no number.
     #[must_use]
     fn max(self, other: Self) -> Self;
 
-    /// The smaller of two ordered values.
+    /// The smaller of two values; the second where they are equal or one is no number.
     #[must_use]
     fn min(self, other: Self) -> Self;
 

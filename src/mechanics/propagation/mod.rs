@@ -31,6 +31,9 @@ pub use invalid::Invalid;
 pub use manoeuvre::{BurnAxes, Manoeuvre};
 pub use request::{Contact, Durations, Limits, MatrixOutput, Request, RequestParts, Sampling};
 
+/// Numbers of an event in the answer: which, its time, position and velocity.
+pub const VALUES_PER_EVENT: u64 = 8;
+
 /// Why a trajectory ended.
 #[derive(Clone, Copy, Debug, Eq, PartialEq)]
 pub enum Outcome {
@@ -135,7 +138,7 @@ pub enum Failure {
     #[error("the computation was cancelled")]
     Cancelled,
     /// A manoeuvre is given along an axis that the state before it does not define.
-    #[error("the state of trajectory {trajectory} before it leaves an axis of this manoeuvre undefined")]
+    #[error("the state before it leaves an axis of this manoeuvre undefined")]
     UndefinedAxes {
         /// The manoeuvre.
         manoeuvre: usize,
@@ -209,7 +212,8 @@ impl Sink for Vec<Trajectory> {
 /// All trajectories of a request, in its order.
 ///
 /// # Errors
-/// [`Failure`] where the computation was cancelled or outgrew its sample budget.
+/// [`Failure`] where the computation was cancelled, outgrew its sample budget, or met a burn along axes that are not
+/// defined.
 pub fn solve(request: &Request, interrupt: &dyn Interrupt) -> Result<Vec<Trajectory>, Failure> {
     let budget = SampleBudget::new(request.limits().sample_values);
     let mut trajectories = Vec::with_capacity(request.count());
@@ -221,7 +225,8 @@ pub fn solve(request: &Request, interrupt: &dyn Interrupt) -> Result<Vec<Traject
 /// changes no bit of any of them.
 ///
 /// # Errors
-/// [`Failure`] where the computation was cancelled or outgrew the sample budget, and what the sink answers.
+/// [`Failure`] where the computation was cancelled, outgrew the sample budget, or met a burn along axes that are not
+/// defined, and what the sink answers.
 pub fn propagate(
     request: &Request,
     range: Range<usize>,

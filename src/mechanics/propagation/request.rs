@@ -184,7 +184,9 @@ impl Request {
         self.parts.matrix != MatrixOutput::None
     }
 
-    pub(super) fn is_extended(&self) -> bool {
+    /// Whether it is computed in double-double, one trajectory after the other.
+    #[must_use]
+    pub fn is_extended(&self) -> bool {
         self.parts.arithmetic == Arithmetic::DoubleDouble
     }
 
@@ -219,12 +221,14 @@ impl Request {
     }
 
     /// Numbers of one sample.
-    pub(super) fn values_per_sample(&self) -> u64 {
+    #[must_use]
+    pub fn values_per_sample(&self) -> u64 {
         STATE_VALUES + if self.parts.matrix == MatrixOutput::Samples { MATRIX_VALUES } else { 0 }
     }
 
     /// Samples of a trajectory that runs to its end; none where the steps decide.
-    pub(super) fn planned_samples(&self, trajectory: usize) -> Option<u64> {
+    #[must_use]
+    pub fn planned_samples(&self, trajectory: usize) -> Option<u64> {
         match &self.parts.sampling {
             Sampling::None => Some(0),
             Sampling::EveryStep => None,

@@ -1,6 +1,7 @@
 //! Trajectories side by side, one a lane, each with its own steps. A lane whose trajectory ends takes the next one at
 //! once; the last few, for which the lanes would be too empty, go on alone.
 
+use std::collections::VecDeque;
 use std::ops::{ControlFlow, Range};
 
 use super::alone::{self, DoubleStep, STEPS_PER_POLL, Workspace};
@@ -45,7 +46,7 @@ pub(super) fn propagate(
     interrupt: &dyn Interrupt,
 ) -> Result<(), Failure> {
     let school = School { request, budget, interrupt, next: range.start, end: range.end };
-    let mut order = Order { sink, next: range.start, waiting: Vec::new() };
+    let mut order = Order { sink, next: range.start, waiting: VecDeque::new() };
     if request.path().has_eight() {
         school.run(&mut Swarm::<[f64; 8]>::new(request.with_matrix()), &mut order)
     } else {
@@ -58,7 +59,7 @@ struct Order<'a> {
     sink: &'a mut dyn Sink,
     next: usize,
     /// Those that have ended before one with a smaller index, by what they are ahead.
-    waiting: Vec<Option<Trajectory>>,
+    waiting: VecDeque<Option<Trajectory>>,
 }
 
 impl Order<'_> {
@@ -71,14 +72,14 @@ impl Order<'_> {
             self.waiting[ahead] = Some(trajectory);
             return Ok(());
         }
+        self.waiting.pop_front();
         self.sink.trajectory(trajectory)?;
-        let mut count = 1;
-        while let Some(trajectory) = self.waiting.get_mut(count).and_then(Option::take) {
+        self.next += 1;
+        while let Some(trajectory) = self.waiting.front_mut().and_then(Option::take) {
+            self.waiting.pop_front();
             self.sink.trajectory(trajectory)?;
-            count += 1;
+            self.next += 1;
         }
-        self.next += count;
-        self.waiting.drain(..count.min(self.waiting.len()));
         Ok(())
     }
 }
@@ -137,30 +138,34 @@ impl<'a> School<'a> {
             self.fill(swarm, lane, &mut members[lane], order)?;
         }
         let fewest = fewest(N, request.with_matrix());
+        let mut before_poll = STEPS_PER_POLL;
         loop {
             let active = members.iter().flatten().count();
             if active <= fewest && self.next == self.end {
                 break;
             }
-            let most = members.iter().flatten().map(|member| limit - member.course.motion.steps).min();
-            let pause = swarm.run(
-                path,
-                request.primaries(),
-                request.step_size(),
-                most.map_or(0, |n| n.min(STEPS_PER_POLL)),
-            );
+            let granted = members.iter().flatten().map(|member| limit - member.course.motion.steps).min();
+            let most = granted.unwrap_or(0).min(before_poll);
+            if most == 0 {
+                self.look_round(swarm, &mut members, order)?;
+                before_poll = STEPS_PER_POLL;
+                continue;
+            }
+            let pause = swarm.run(path, request.primaries(), request.step_size(), most);
             for member in members.iter_mut().flatten() {
                 member.course.motion.steps += pause.steps;
             }
+            before_poll -= pause.steps;
             if pause.lanes == 0 {
-                self.look_round(swarm, &mut members, order)?;
                 continue;
             }
+            before_poll -= 1;
             let mut ends: [Option<(bool, Option<Outcome>)>; N] = [None; N];
             for lane in 0..N {
                 let Some(member) = &mut members[lane] else { continue };
                 if pause.floor >> lane & 1 == 1 {
-                    // It ends where it is.
+                    // It ends where it is: a series that has overflowed can't be evaluated, not even at 0.
+                    fetch(swarm, lane, &mut member.course);
                     swarm.length[lane] = 0.0;
                     ends[lane] = Some((false, Some(Outcome::StepFloor)));
                     continue;
@@ -186,7 +191,9 @@ impl<'a> School<'a> {
             for lane in 0..N {
                 let Some((last, stop)) = ends[lane] else { continue };
                 let Some(member) = &mut members[lane] else { continue };
-                fetch(swarm, lane, &mut member.course);
+                if pause.floor >> lane & 1 == 0 {
+                    fetch(swarm, lane, &mut member.course);
+                }
                 let flow = match stop {
                     Some(outcome) => ControlFlow::Break(outcome),
                     None => member.course.arrive(last, &mut Outlet(None))?,

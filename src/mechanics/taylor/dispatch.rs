@@ -67,14 +67,7 @@ impl Path {
 
     /// Whether its registers hold eight doubles.
     pub(crate) fn has_eight(self) -> bool {
-        #[cfg(target_arch = "x86_64")]
-        {
-            self.0 == Instructions::Avx512
-        }
-        #[cfg(not(target_arch = "x86_64"))]
-        {
-            false
-        }
+        self.name() == "avx512"
     }
 
     /// Whether it multiplies and adds in one instruction.
@@ -103,7 +96,6 @@ macro_rules! on_path {
         #[inline]
         $visibility fn $name(path: $crate::taylor::Path, $($argument: $type),*) $(-> $result)? {
             #[inline(always)]
-            #[cfg_attr(not(target_arch = "x86_64"), expect(unused, reason = "one path"))]
             fn body<$lanes: $trait>(_: std::marker::PhantomData<$lanes>, $($argument: $type),*) $(-> $result)? $body
 
             #[cfg(target_arch = "x86_64")]
@@ -121,10 +113,10 @@ macro_rules! on_path {
                 #[expect(unsafe_code, reason = "functions compiled for instructions of this CPU")]
                 match path.0 {
                     // SAFETY: a path is only made where `Path::available` has found the features it is compiled for.
-                    Instructions::Avx2 => return unsafe { on_avx2($($argument),*) },
+                    $crate::taylor::dispatch::Instructions::Avx2 => return unsafe { on_avx2($($argument),*) },
                     // SAFETY: the same.
-                    Instructions::Avx512 => return unsafe { on_avx512($($argument),*) },
-                    Instructions::Portable => {}
+                    $crate::taylor::dispatch::Instructions::Avx512 => return unsafe { on_avx512($($argument),*) },
+                    $crate::taylor::dispatch::Instructions::Portable => {}
                 }
             }
             let _ = path;
@@ -136,8 +128,6 @@ pub(super) use on_path;
 
 #[cfg(target_arch = "x86_64")]
 pub(super) use crate::arithmetic::x86::Wide4;
-#[cfg(not(target_arch = "x86_64"))]
-pub(super) type Wide4 = Quad<f64>;
 
 on_path! {
     /// Expands the solution through `state` (x, y, z, vx, vy, vz) into `series`.
@@ -240,22 +230,18 @@ trait Four: Lanes<Array = [f64; 4]> {}
 
 impl<L: Lanes<Array = [f64; 4]>> Four for L {}
 
-/// What [`run_four`] and [`advance_four`] do for eight lanes, where there are registers for that.
-#[cfg(target_arch = "x86_64")]
+/// What [`run_four`] and [`advance_four`] do for eight lanes, where there are registers for that; elsewhere nothing.
 pub(crate) mod eight {
-    use super::{Instructions, Path, Pause, Primaries, StepSize, Swarm};
-    use crate::arithmetic::x86::Wide8;
+    use super::{Path, Pause, Primaries, StepSize, Swarm};
 
-    /// Steps of several trajectories at once: see [`Swarm::run`]. On a path without such registers no step at all.
-    pub(crate) fn run(
-        path: Path,
-        primaries: &Primaries,
-        sizes: StepSize,
-        swarm: &mut Swarm<[f64; 8]>,
-        most: u64,
-    ) -> Pause {
+    #[cfg(target_arch = "x86_64")]
+    mod on_avx512 {
+        use crate::arithmetic::x86::Wide8;
+        use crate::taylor::swarm::{Pause, Swarm};
+        use crate::taylor::{Primaries, StepSize};
+
         #[target_feature(enable = "avx512f,avx512dq,avx512vl,avx2,fma,bmi2")]
-        fn on_avx512(
+        pub(super) fn run(
             primaries: &Primaries,
             sizes: StepSize,
             swarm: &mut Swarm<[f64; 8]>,
@@ -264,29 +250,40 @@ pub(crate) mod eight {
             swarm.run::<Wide8>(primaries, sizes, most)
         }
 
-        if path.0 != Instructions::Avx512 {
-            return Pause::default();
+        #[target_feature(enable = "avx512f,avx512dq,avx512vl,avx2,fma,bmi2")]
+        pub(super) fn advance(swarm: &mut Swarm<[f64; 8]>) {
+            swarm.advance::<Wide8>();
         }
-        #[expect(unsafe_code, reason = "a function compiled for instructions of this CPU")]
-        // SAFETY: the path has them.
-        unsafe {
-            on_avx512(primaries, sizes, swarm, most)
+    }
+
+    /// Steps of several trajectories at once: see [`Swarm::run`].
+    pub(crate) fn run(
+        path: Path,
+        primaries: &Primaries,
+        sizes: StepSize,
+        swarm: &mut Swarm<[f64; 8]>,
+        most: u64,
+    ) -> Pause {
+        #[cfg(target_arch = "x86_64")]
+        if path.has_eight() {
+            #[expect(unsafe_code, reason = "a function compiled for instructions of this CPU")]
+            // SAFETY: the path has them.
+            return unsafe { on_avx512::run(primaries, sizes, swarm, most) };
         }
+        let _ = (path, primaries, sizes, swarm, most);
+        Pause::default()
     }
 
     /// Moves every lane on by its length.
     pub(crate) fn advance(path: Path, swarm: &mut Swarm<[f64; 8]>) {
-        #[target_feature(enable = "avx512f,avx512dq,avx512vl,avx2,fma,bmi2")]
-        fn on_avx512(swarm: &mut Swarm<[f64; 8]>) {
-            swarm.advance::<Wide8>();
-        }
-
-        if path.0 == Instructions::Avx512 {
+        #[cfg(target_arch = "x86_64")]
+        if path.has_eight() {
             #[expect(unsafe_code, reason = "a function compiled for instructions of this CPU")]
             // SAFETY: the path has them.
             unsafe {
-                on_avx512(swarm);
+                on_avx512::advance(swarm);
             }
         }
+        let _ = (path, swarm);
     }
 }

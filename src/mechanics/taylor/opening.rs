@@ -1,7 +1,8 @@
 //! The first coefficients, which begin the recurrences.
 //!
 //! Every sum begins with +0 and takes its products away, and what it is multiplied with is positive: so it is never −0,
-//! and adding a product that is 0 changes no bit. The kernel that packs a trajectory's components relies on that.
+//! and adding a product that is 0 changes no bit. The kernel that packs a trajectory's components relies on that. (A product
+//! below 1e-323 rounds to 0 of its own sign; coefficients so small belong to no place within the bounds of a state.)
 
 use super::Primaries;
 use super::lanes::twice_integrated;

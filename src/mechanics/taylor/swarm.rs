@@ -14,8 +14,7 @@ pub(crate) struct Accumulators<A> {
     rest: A,
 }
 
-/// Where the trajectories are. What belongs to a lane without a trajectory is that of a body at rest at a triangular
-/// point, which has nowhere to go and takes its steps for ever.
+/// Where the trajectories are. A lane without one holds a body that takes steps of no length, having no direction, for ever.
 #[derive(Clone, Debug)]
 #[repr(C, align(64))]
 pub(crate) struct Swarm<A> {
@@ -147,15 +146,14 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
 
     /// Empties a lane.
     pub(crate) fn rest(&mut self, lane: usize) {
-        const HALF_ROOT_3: f64 = 0.866_025_403_784_438_6;
-        let still = [0.5, HALF_ROOT_3, 0.0, 0.0, 0.0, 0.0].map(Compensated::new);
+        let far_from_both = [0.5, 1.0, 0.0, 0.0, 0.0, 0.0].map(Compensated::new);
         self.put(
             lane,
             &Lane {
-                state: still,
+                state: far_from_both,
                 elapsed: Compensated::default(),
                 target: Compensated::new(f64::INFINITY),
-                direction: 1.0,
+                direction: 0.0,
                 reference: None,
                 drift: 0.0,
                 watched: false,
@@ -210,13 +208,6 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
                 .map(|(value, rest)| (state[0] - L::from_f64(value)) + (x_rest - L::from_f64(rest)));
             lanes::expand::<L>(primaries, &state, away, &mut self.series);
 
-            let jacobi = L::from_array(&self.series.jacobi);
-            let reference = L::from_array(&self.reference);
-            let reference = reference.select_less(L::from_f64(f64::INFINITY), reference, jacobi);
-            self.reference = reference.to_array();
-            // The scalar comparison keeps the old one where the new one is no number.
-            self.drift = (jacobi - reference).abs().max(L::from_array(&self.drift)).to_array();
-
             let remaining =
                 self.target.minus(L::from_array(&self.elapsed.value), L::from_array(&self.elapsed.rest));
             let step = sizes.at_log2_radius(L::from_array(&self.series.log2_radius));
@@ -225,6 +216,13 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
             let spread = self.series.newest::<L>();
             let infinite = !spread.abs().less(L::from_f64(f64::INFINITY)) & all;
             let floor = infinite | (step.less(L::from_f64(STEP_FLOOR)) & !last);
+            // Where there is no step nothing is measured.
+            let (reference, drift) = (self.reference, self.drift);
+            self.measure::<L>();
+            for lane in (0..L::COUNT).filter(|lane| floor >> lane & 1 == 1) {
+                self.reference.as_mut()[lane] = reference.as_ref()[lane];
+                self.drift.as_mut()[lane] = drift.as_ref()[lane];
+            }
             let lanes = last | floor | zero.less(L::from_array(&self.watched));
             let length = step * L::from_array(&self.direction);
             let length = step.select_less(remaining.abs(), length, remaining);
@@ -238,6 +236,17 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
             self.move_on(length);
         }
         Pause { steps: most, ..Pause::default() }
+    }
+
+    /// Takes the Jacobi constants at the start of the step into account.
+    #[inline(always)]
+    fn measure<L: Lanes<Array = A>>(&mut self) {
+        let jacobi = L::from_array(&self.series.jacobi);
+        let reference = L::from_array(&self.reference);
+        let reference = reference.select_less(L::from_f64(f64::INFINITY), reference, jacobi);
+        self.reference = reference.to_array();
+        // The scalar comparison keeps the old one where the new one is no number.
+        self.drift = (jacobi - reference).abs().max(L::from_array(&self.drift)).to_array();
     }
 
     /// Moves every lane on by its length.

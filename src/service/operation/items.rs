@@ -20,10 +20,14 @@ pub trait Items: Send + Sync + 'static {
         LARGEST_PART
     }
 
-    /// The fewest items of a part but the last, fewer where each is known to take long. How long they take shows with the
-    /// first parts.
+    /// The fewest items of a part but the last, as long as it is not known how long they take.
     fn smallest_part(&self) -> usize {
         SMALLEST_PART
+    }
+
+    /// How many are computed together: a part of fewer would take about as long.
+    fn fewest_together(&self) -> usize {
+        1
     }
 
     /// Computes a range of the items, writes them to `out` in ascending order, and takes note of what they took and how

@@ -138,6 +138,7 @@ impl Run {
                 Some(Ok(())) => {
                     state.parts.pop_front();
                     state.read += 1;
+                    self.call_hands(state);
                 }
             }
         }
@@ -273,7 +274,10 @@ impl Shared {
         let timely = state.pace.map_or(0, |pace| PART_TIME.as_nanos() / pace.as_nanos().max(1));
         let timely = usize::try_from(timely).unwrap_or(usize::MAX);
         let share = left.div_ceil(2 * self.pool.threads());
-        timely.min(share).max(self.items.smallest_part()).min(self.items.largest_part()).clamp(1, left)
+        // How long an item takes is not known before the first part has ended.
+        let least =
+            if state.pace.is_some() { self.items.fewest_together() } else { self.items.smallest_part() };
+        timely.min(share).max(least).min(self.items.largest_part()).clamp(1, left)
     }
 
     fn push(&self, number: usize, chunk: Bytes) -> Result<(), Problem> {
@@ -297,7 +301,9 @@ impl Shared {
         let mut state = self.lock();
         state.idle += 1;
         self.hold_clock_if_idle(&mut state);
-        let waiting = self.room.wait_while(state, |state| self.is_full(state, number));
+        // Not for a single piece, or a thread would come and go for each.
+        let waits = |state: &mut State| state.part(number).is_some_and(|part| part.size > PART_ROOM / 2);
+        let waiting = self.room.wait_while(state, waits);
         let mut state = waiting.unwrap_or_else(PoisonError::into_inner);
         state.idle -= 1;
         self.let_clock_run(&mut state);

@@ -119,16 +119,23 @@ impl Pool {
         if let Err(error) = &replaced {
             tracing::warn!(%error, "no thread stands in for another");
         }
-        let value = work();
-        if replaced.is_ok() {
-            self.0.surplus.fetch_add(1, Ordering::Relaxed);
-        }
-        value
+        // One thread is too many from then on, even if the work panics.
+        let _back = replaced.is_ok().then_some(Back(&self.0.surplus));
+        work()
     }
 
     fn send(&self, job: Job) {
         // The queue cannot be closed: both of its ends live as long as the pool.
         let _ = self.0.jobs.send(job);
+    }
+}
+
+/// Says, when dropped, that a thread is back that another one stood in for.
+struct Back<'a>(&'a AtomicUsize);
+
+impl Drop for Back<'_> {
+    fn drop(&mut self) {
+        self.0.fetch_add(1, Ordering::Relaxed);
     }
 }
 
@@ -140,7 +147,7 @@ fn compute(shared: &Shared) {
     }
     while let Ok(mut job) = shared.waiting.recv() {
         while job() {
-            if !shared.waiting.is_empty() {
+            if !shared.waiting.is_empty() || shared.surplus.load(Ordering::Relaxed) > 0 {
                 let _ = shared.jobs.send(job);
                 break;
             }

@@ -32,25 +32,27 @@ fn the_time_granted_ends_a_trajectory_with_what_there_is() {
 fn the_time_granted_ends_trajectories_side_by_side() {
     let mut many = parts(MU, HALO, 1000.0);
     many.states = vec![many.states[0]; 20];
-    let request = Request::new(many).expect("valid");
-    let lanes = request.lanes();
-    // Each start polls once, then all of them together after 64 steps of each.
-    let polls = u64::try_from(lanes).expect("few") + 3;
-    let all = solve(&request, &AfterPolls::new(polls, Stop::WallTime)).expect("not cancelled");
-    for (index, trajectory) in all.iter().enumerate() {
-        assert_eq!(trajectory.index, index);
-        if index < lanes {
-            assert_eq!((trajectory.outcome, trajectory.evidence.steps), (Outcome::WallTimeLimit, 64 * 4));
-            assert_eq!(trajectory.last, all[0].last);
-        } else {
-            assert_eq!((trajectory.outcome, trajectory.evidence.steps), (Outcome::NotStarted, 0));
+    // Each step is looked at for samples.
+    let mut watched = many.clone();
+    watched.sampling = Sampling::Count(10);
+    for parts in [many, watched] {
+        let request = Request::new(parts).expect("valid");
+        let lanes = request.lanes();
+        // Each start polls once, then all of them together after 64 steps of each.
+        let polls = u64::try_from(lanes).expect("few") + 3;
+        let all = solve(&request, &AfterPolls::new(polls, Stop::WallTime)).expect("not cancelled");
+        for (index, trajectory) in all.iter().enumerate() {
+            assert_eq!(trajectory.index, index);
+            if index < lanes {
+                assert_eq!((trajectory.outcome, trajectory.evidence.steps), (Outcome::WallTimeLimit, 64 * 4));
+                assert_eq!(trajectory.last, all[0].last);
+            } else {
+                assert_eq!((trajectory.outcome, trajectory.evidence.steps), (Outcome::NotStarted, 0));
+            }
         }
+        let cancelled = solve(&request, &AfterPolls::new(polls, Stop::Cancelled));
+        assert_eq!(cancelled, Err(Failure::Cancelled), "nobody waits for it");
     }
-    assert_eq!(
-        solve(&request, &AfterPolls::new(polls, Stop::Cancelled)),
-        Err(Failure::Cancelled),
-        "nobody waits for it"
-    );
 }
 
 #[test]

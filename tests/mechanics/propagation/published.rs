@@ -43,7 +43,7 @@ fn members_of_the_ensemble() {
     assert_eq!(hashed(bytes), 0xdb8e_8bff_9a7d_2f97, "the states are those that the truth starts from");
     // Those between the members of the table add nothing to what is compared.
     request.states.truncate(members().last().expect("there are some") + 1);
-    let error = ensemble_error(&solved(request));
+    let error = ensemble_error(&solved(mechanics::taylor::Path::fastest(), request));
     assert!(error <= 2e-13, "{error}");
 }
 

@@ -8,6 +8,7 @@ use mechanics::propagation::event::{Direction, Event, Plane, When};
 use mechanics::propagation::{MatrixOutput, Request, RequestParts, Trajectory, solve};
 use mechanics::state::State;
 use mechanics::system::Primary;
+use mechanics::taylor::Path;
 
 use super::cases::{case, parts};
 
@@ -52,14 +53,14 @@ pub(crate) fn bits(state: &State) -> String {
 }
 
 /// Final states and matrices of two hundred trajectories over all mass parameters, close approaches included.
-fn sweep() -> u64 {
+fn sweep(path: Path) -> u64 {
     let mut all = Vec::new();
     for i in 0..200 {
         let i = f64::from(i);
         let mu = libm::exp2(-1.0 - 0.1 * i);
         let state = [0.3 + 0.003 * i, 0.01 * i - 1.0, 0.002 * i - 0.2, 0.1, 1.2 - 0.01 * i, 0.05];
         let request = RequestParts { matrix: MatrixOutput::Final, ..parts(mu, state, 3.0) };
-        for trajectory in solved(request) {
+        for trajectory in solved(path, request) {
             all.extend(trajectory.last.components().iter());
             all.extend(trajectory.matrix.expect("asked for").iter());
         }
@@ -68,16 +69,16 @@ fn sweep() -> u64 {
 }
 
 /// All trajectories of a request.
-pub(crate) fn solved(parts: RequestParts) -> Vec<Trajectory> {
-    solve(&Request::new(parts).expect("valid"), &Never).expect("not cancelled")
+pub(crate) fn solved(path: Path, parts: RequestParts) -> Vec<Trajectory> {
+    solve(&Request::new(parts).expect("valid").on(path), &Never).expect("not cancelled")
 }
 
 /// The table: a hash of a sweep of mass parameters, then members of the ensemble.
-pub(crate) fn table() -> String {
+pub(crate) fn table(path: Path) -> String {
     let mut table =
         String::from("# sweep, or x y z vx vy vz of a member at its end, matrix and events (hashed)\n");
-    writeln!(table, "{:016x}", sweep()).expect("a string has room");
-    for trajectory in solved(request()) {
+    writeln!(table, "{:016x}", sweep(path)).expect("a string has room");
+    for trajectory in solved(path, request()) {
         writeln!(table, "{}", line(&trajectory)).expect("a string has room");
     }
     table

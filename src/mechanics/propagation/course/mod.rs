@@ -13,7 +13,9 @@ use super::extended::ExtendedTransition;
 use super::matrix::{Legs, Transition};
 use super::request::{Contact, Request, Sampling};
 use super::watch::{Hit, Stretch, Watch};
-use super::{Audit, Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Sink, Trajectory};
+use super::{
+    Audit, Evidence, Failure, Occurrence, Outcome, SampleBudget, Samples, Sink, Trajectory, VALUES_PER_EVENT,
+};
 use crate::arithmetic::DoubleDouble;
 use crate::arithmetic::sum::Compensated;
 use crate::interrupt::{Interrupt, Stop};
@@ -25,8 +27,6 @@ use crate::taylor::{self, Place, Series};
 
 /// A start this near to a surface is on it: coordinates of the order of 1 are rounded to about this.
 const SURFACE: f64 = 8.0 * f64::EPSILON;
-/// Numbers of an event in the answer: which, its time, position and velocity.
-const VALUES_PER_EVENT: u64 = 8;
 
 /// The trajectory of an initial state that nobody had time for.
 pub(super) fn not_started(request: &Request, index: usize) -> Trajectory {

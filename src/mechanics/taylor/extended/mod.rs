@@ -10,7 +10,9 @@ mod recurrence;
 mod step;
 mod variational;
 
-use super::dispatch::{Instructions, Wide4, on_path};
+#[cfg(target_arch = "x86_64")]
+use super::dispatch::Wide4;
+use super::dispatch::on_path;
 use super::{Primaries, Series as RoundedSeries, TERMS as ROUNDED_TERMS};
 use crate::arithmetic::{DoubleDouble, Packed, Quad};
 

@@ -1,5 +1,4 @@
-//! The recurrences of [`super::super::recurrence`], in the same order, with sums of products that keep what their
-//! rounding loses.
+//! The recurrences of [`crate::taylor`], with sums of products that keep what their rounding loses.
 
 use super::{ORDER, Pairs, Series, TERMS, Wide, step};
 use crate::arithmetic::{DoubleDouble, Packed, Quad, SumOfProducts};

@@ -7,8 +7,8 @@ use std::time::Duration;
 
 use mechanics::interrupt::Interrupt;
 use mechanics::propagation::{
-    Arithmetic, EXTENDED_WEIGHT, Failure, MatrixOutput, Outcome, Request, SampleBudget, Samples, Sampling,
-    Sink, Trajectory, propagate,
+    Arithmetic, EXTENDED_WEIGHT, Failure, Outcome, Request, SampleBudget, Samples, Sampling, Sink,
+    Trajectory, VALUES_PER_EVENT, propagate,
 };
 
 use super::request::TrajectoriesRequest;
@@ -30,9 +30,7 @@ const VALUES_PER_PART: u64 = 32 << 10;
 /// Lines of samples that may still be written of one trajectory when the time is up: those of the step under way, if it
 /// does not hold more than anybody can use.
 const LATE_LINES: usize = 100;
-/// Trajectories of a part that take long: so many that they may be computed side by side.
-const FEWEST_TOGETHER: usize = 4;
-/// Samples of a trajectory that is sampled at every step, roughly.
+/// Samples or events of a trajectory that has one at every step, roughly.
 const STEPS: u64 = 128;
 
 /// A checked request, and what of it the answer repeats in the client's own digits.
@@ -123,22 +121,22 @@ impl Items for Trajectories {
     }
 
     fn largest_part(&self) -> usize {
-        let (parts, most) = (self.task.request.parts(), LARGEST_PART / self.weight());
-        let samples = match &parts.sampling {
-            Sampling::None => return most,
-            Sampling::EveryStep => STEPS,
-            Sampling::Count(count) => *count,
-            Sampling::Times(times) => times.len() as u64,
-            // The first trajectory stands for all: nothing but the size of the parts hangs on it.
-            Sampling::Interval(interval) => planned(self.task.request.duration(0).abs() / interval),
-        };
-        let values = if parts.matrix == MatrixOutput::Samples { 7 + 36 } else { 7 };
-        let trajectories = VALUES_PER_PART / samples.saturating_mul(values).max(1);
-        usize::try_from(trajectories).unwrap_or(1).clamp(1, most)
+        let (request, most) = (&self.task.request, LARGEST_PART / self.weight());
+        // The first trajectory stands for all: nothing but the size of the parts hangs on it.
+        let samples = request.planned_samples(0).unwrap_or(STEPS).saturating_mul(request.values_per_sample());
+        let events = if request.parts().events.is_empty() { 0 } else { STEPS * VALUES_PER_EVENT };
+        match samples.saturating_add(events) {
+            0 => most,
+            values => usize::try_from(VALUES_PER_PART / values).unwrap_or(1).clamp(1, most),
+        }
     }
 
     fn smallest_part(&self) -> usize {
-        (SMALLEST_PART / self.weight()).max(FEWEST_TOGETHER)
+        (SMALLEST_PART / self.weight()).max(self.fewest_together())
+    }
+
+    fn fewest_together(&self) -> usize {
+        if self.task.request.is_extended() { 1 } else { self.task.request.lanes() }
     }
 
     fn compute(
@@ -185,15 +183,6 @@ impl Lines for Trajectories {
     fn summary(&self, out: &mut Out<'_>) -> Result<(), Problem> {
         out.line("summary", &self.task.summary(&self.totals.sum()))
     }
-}
-
-#[expect(
-    clippy::cast_possible_truncation,
-    clippy::cast_sign_loss,
-    reason = "positive, and a number too large saturates"
-)]
-fn planned(intervals: f64) -> u64 {
-    (intervals as u64).saturating_add(1)
 }
 
 /// Writes trajectories as they are computed.
