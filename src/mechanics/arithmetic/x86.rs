@@ -29,7 +29,9 @@ use super::{Lanes, Packed, Quad, Real};
 macro_rules! wide {
     ($name:ident, $register:ty, $count:literal, $set:literal,
      $add:ident $sub:ident $mul:ident $div:ident $fmadd:ident $fnmadd:ident $sqrt:ident $max:ident $min:ident $splat:ident
-     $load:ident $store:ident $less:ident) => {
+     $load:ident $store:ident $less:ident $abs:ident $select:ident;
+     $immediate:expr, $set1:ident $add_i:ident $sub_i:ident $or_i:ident $shift_left:ident $shift_right:ident
+     $to_bits:ident $from_bits:ident) => {
         #[doc = concat!("Doubles in a register of ", $set, ".")]
         #[derive(Clone, Copy, Debug)]
         #[repr(transparent)]
@@ -90,42 +92,89 @@ macro_rules! wide {
             }
         }
 
-        impl $name {
+        impl Real for $name {
             #[inline(always)]
-            fn real_mul_add(self, factor: Self, addend: Self) -> Self {
+            fn from_f64(value: f64) -> Self {
+                // SAFETY: the module's.
+                Self(unsafe { $splat(value) })
+            }
+
+            #[inline(always)]
+            fn mul_add(self, factor: Self, addend: Self) -> Self {
                 // SAFETY: the module's.
                 Self(unsafe { $fmadd(self.0, factor.0, addend.0) })
             }
 
             #[inline(always)]
-            fn real_neg_mul_add(self, factor: Self, addend: Self) -> Self {
+            fn neg_mul_add(self, factor: Self, addend: Self) -> Self {
                 // SAFETY: the module's.
                 Self(unsafe { $fnmadd(self.0, factor.0, addend.0) })
             }
 
             #[inline(always)]
-            fn real_sqrt(self) -> Self {
+            fn sqrt(self) -> Self {
                 // SAFETY: the module's.
                 Self(unsafe { $sqrt(self.0) })
             }
 
             #[inline(always)]
-            fn real_max(self, other: Self) -> Self {
-                // SAFETY: the module's. Where the values are equal or one is no number, both instructions and the
-                // scalar code give the second.
+            fn abs(self) -> Self {
+                // SAFETY: the module's.
+                Self(unsafe { $abs(self.0) })
+            }
+
+            #[inline(always)]
+            fn max(self, other: Self) -> Self {
+                // SAFETY: the module's. Where the values are equal or one is no number, the instruction gives the second.
                 Self(unsafe { $max(self.0, other.0) })
             }
 
             #[inline(always)]
-            fn real_min(self, other: Self) -> Self {
-                // SAFETY: as for `real_max`.
+            fn min(self, other: Self) -> Self {
+                // SAFETY: as for `max`.
                 Self(unsafe { $min(self.0, other.0) })
             }
 
             #[inline(always)]
-            fn real_splat(value: f64) -> Self {
+            fn select_less(self, other: Self, yes: Self, no: Self) -> Self {
                 // SAFETY: the module's.
-                Self(unsafe { $splat(value) })
+                Self(unsafe { $select(self.0, other.0, yes.0, no.0) })
+            }
+
+            #[inline(always)]
+            fn log2_coarse(self) -> Self {
+                /// 2^52, whose last 52 bits hold a whole number as it is.
+                const WHOLE: f64 = 4_503_599_627_370_496.0;
+                // SAFETY: the module's.
+                let (exponent, mantissa) = unsafe {
+                    let bits = $to_bits(self.0);
+                    let shifted = $add_i(bits, $set1(TO_ONE.cast_signed()));
+                    let biased = $shift_right::<{ $immediate }>(shifted);
+                    let exponent = $from_bits($or_i(biased, $set1(WHOLE.to_bits().cast_signed())));
+                    let whole = $shift_left::<{ $immediate }>($sub_i(biased, $set1(BIAS)));
+                    (Self(exponent), Self($from_bits($sub_i(bits, whole))))
+                };
+                #[expect(clippy::cast_precision_loss, reason = "exact")]
+                let exponent = exponent - Self::from_f64(WHOLE + BIAS as f64);
+                let rest = mantissa - Self::from_f64(1.0);
+                let [a, b, c, d, e, g] = LOG2.map(Self::from_f64);
+                let ratio =
+                    g.mul_add(rest, e).mul_add(rest, d).mul_add(rest, c).mul_add(rest, b).mul_add(rest, a);
+                ratio.mul_add(rest, exponent)
+            }
+
+            #[inline(always)]
+            fn exp2_coarse(self) -> Self {
+                let rounder = Self::from_f64(ROUNDER);
+                let rounded = self + rounder;
+                let f = self - (rounded - rounder);
+                let [a, b, c, d, e, g] = EXP2.map(Self::from_f64);
+                let fraction = g.mul_add(f, e).mul_add(f, d).mul_add(f, c).mul_add(f, b).mul_add(f, a);
+                // SAFETY: the module's. The last bits of the sum are the whole number, those above are shifted out.
+                let power = Self(unsafe {
+                    $from_bits($shift_left::<{ $immediate }>($add_i($to_bits(rounded.0), $set1(BIAS))))
+                });
+                fraction * power
             }
         }
     };
@@ -144,146 +193,14 @@ macro_rules! wide {
 
 wide!(Wide4, __m256d, 4, "AVX2 and FMA",
     _mm256_add_pd _mm256_sub_pd _mm256_mul_pd _mm256_div_pd _mm256_fmadd_pd _mm256_fnmadd_pd _mm256_sqrt_pd
-    _mm256_max_pd _mm256_min_pd _mm256_set1_pd _mm256_loadu_pd _mm256_storeu_pd less4);
+    _mm256_max_pd _mm256_min_pd _mm256_set1_pd _mm256_loadu_pd _mm256_storeu_pd less4 abs4 select4;
+    FRACTION_BITS.cast_signed(), _mm256_set1_epi64x _mm256_add_epi64 _mm256_sub_epi64 _mm256_or_si256 _mm256_slli_epi64
+    _mm256_srli_epi64 _mm256_castpd_si256 _mm256_castsi256_pd);
 wide!(Wide8, __m512d, 8, "AVX-512 F and DQ",
     _mm512_add_pd _mm512_sub_pd _mm512_mul_pd _mm512_div_pd _mm512_fmadd_pd _mm512_fnmadd_pd _mm512_sqrt_pd
-    _mm512_max_pd _mm512_min_pd _mm512_set1_pd _mm512_loadu_pd _mm512_storeu_pd less8);
-
-/// What `log2_coarse` and `exp2_coarse` share between the widths: the steps of the scalar code, one by one.
-macro_rules! coarse {
-    ($immediate:expr, $set1:ident $add_i:ident $sub_i:ident $or_i:ident $shift_left:ident $shift_right:ident
-     $to_bits:ident $from_bits:ident) => {
-        #[inline(always)]
-        fn log2_coarse(self) -> Self {
-            /// 2^52, whose last 52 bits hold a whole number as it is.
-            const WHOLE: f64 = 4_503_599_627_370_496.0;
-            // SAFETY: the module's.
-            let (exponent, mantissa) = unsafe {
-                let bits = $to_bits(self.0);
-                let shifted = $add_i(bits, $set1(TO_ONE.cast_signed()));
-                let biased = $shift_right::<{ $immediate }>(shifted);
-                let exponent = $from_bits($or_i(biased, $set1(WHOLE.to_bits().cast_signed())));
-                let whole = $shift_left::<{ $immediate }>($sub_i(biased, $set1(BIAS)));
-                (Self(exponent), Self($from_bits($sub_i(bits, whole))))
-            };
-            #[expect(clippy::cast_precision_loss, reason = "exact")]
-            let exponent = exponent - Self::from_f64(WHOLE + BIAS as f64);
-            let rest = mantissa - Self::from_f64(1.0);
-            let [a, b, c, d, e, g] = LOG2.map(Self::from_f64);
-            let ratio =
-                g.mul_add(rest, e).mul_add(rest, d).mul_add(rest, c).mul_add(rest, b).mul_add(rest, a);
-            ratio.mul_add(rest, exponent)
-        }
-
-        #[inline(always)]
-        fn exp2_coarse(self) -> Self {
-            let rounder = Self::from_f64(ROUNDER);
-            let rounded = self + rounder;
-            let f = self - (rounded - rounder);
-            let [a, b, c, d, e, g] = EXP2.map(Self::from_f64);
-            let fraction = g.mul_add(f, e).mul_add(f, d).mul_add(f, c).mul_add(f, b).mul_add(f, a);
-            // SAFETY: the module's. The last bits of the sum are the whole number, those above are shifted out.
-            let power = Self(unsafe {
-                $from_bits($shift_left::<{ $immediate }>($add_i($to_bits(rounded.0), $set1(BIAS))))
-            });
-            fraction * power
-        }
-    };
-}
-
-impl Real for Wide4 {
-    #[inline(always)]
-    fn from_f64(value: f64) -> Self {
-        Self::real_splat(value)
-    }
-
-    #[inline(always)]
-    fn mul_add(self, factor: Self, addend: Self) -> Self {
-        self.real_mul_add(factor, addend)
-    }
-
-    #[inline(always)]
-    fn neg_mul_add(self, factor: Self, addend: Self) -> Self {
-        self.real_neg_mul_add(factor, addend)
-    }
-
-    #[inline(always)]
-    fn sqrt(self) -> Self {
-        self.real_sqrt()
-    }
-
-    #[inline(always)]
-    fn abs(self) -> Self {
-        // SAFETY: the module's.
-        Self(unsafe { _mm256_andnot_pd(_mm256_set1_pd(-0.0), self.0) })
-    }
-
-    #[inline(always)]
-    fn max(self, other: Self) -> Self {
-        self.real_max(other)
-    }
-
-    #[inline(always)]
-    fn min(self, other: Self) -> Self {
-        self.real_min(other)
-    }
-
-    #[inline(always)]
-    fn select_less(self, other: Self, yes: Self, no: Self) -> Self {
-        // SAFETY: the module's.
-        Self(unsafe { _mm256_blendv_pd(no.0, yes.0, _mm256_cmp_pd::<_CMP_LT_OQ>(self.0, other.0)) })
-    }
-
-    coarse!(FRACTION_BITS.cast_signed(), _mm256_set1_epi64x _mm256_add_epi64 _mm256_sub_epi64 _mm256_or_si256
-        _mm256_slli_epi64 _mm256_srli_epi64 _mm256_castpd_si256 _mm256_castsi256_pd);
-}
-
-impl Real for Wide8 {
-    #[inline(always)]
-    fn from_f64(value: f64) -> Self {
-        Self::real_splat(value)
-    }
-
-    #[inline(always)]
-    fn mul_add(self, factor: Self, addend: Self) -> Self {
-        self.real_mul_add(factor, addend)
-    }
-
-    #[inline(always)]
-    fn neg_mul_add(self, factor: Self, addend: Self) -> Self {
-        self.real_neg_mul_add(factor, addend)
-    }
-
-    #[inline(always)]
-    fn sqrt(self) -> Self {
-        self.real_sqrt()
-    }
-
-    #[inline(always)]
-    fn abs(self) -> Self {
-        // SAFETY: the module's.
-        Self(unsafe { _mm512_abs_pd(self.0) })
-    }
-
-    #[inline(always)]
-    fn max(self, other: Self) -> Self {
-        self.real_max(other)
-    }
-
-    #[inline(always)]
-    fn min(self, other: Self) -> Self {
-        self.real_min(other)
-    }
-
-    #[inline(always)]
-    fn select_less(self, other: Self, yes: Self, no: Self) -> Self {
-        // SAFETY: the module's.
-        Self(unsafe { _mm512_mask_blend_pd(_mm512_cmp_pd_mask::<_CMP_LT_OQ>(self.0, other.0), no.0, yes.0) })
-    }
-
-    coarse!(FRACTION_BITS, _mm512_set1_epi64 _mm512_add_epi64 _mm512_sub_epi64 _mm512_or_si512
-        _mm512_slli_epi64 _mm512_srli_epi64 _mm512_castpd_si512 _mm512_castsi512_pd);
-}
+    _mm512_max_pd _mm512_min_pd _mm512_set1_pd _mm512_loadu_pd _mm512_storeu_pd less8 _mm512_abs_pd select8;
+    FRACTION_BITS, _mm512_set1_epi64 _mm512_add_epi64 _mm512_sub_epi64 _mm512_or_si512 _mm512_slli_epi64 _mm512_srli_epi64
+    _mm512_castpd_si512 _mm512_castsi512_pd);
 
 impl Packed for Wide4 {
     #[inline(always)]
@@ -429,4 +346,22 @@ fn less4(a: __m256d, b: __m256d) -> u32 {
 #[target_feature(enable = "avx512f")]
 fn less8(a: __m512d, b: __m512d) -> u32 {
     u32::from(_mm512_cmp_pd_mask::<_CMP_LT_OQ>(a, b))
+}
+
+#[inline]
+#[target_feature(enable = "avx")]
+fn abs4(value: __m256d) -> __m256d {
+    _mm256_andnot_pd(_mm256_set1_pd(-0.0), value)
+}
+
+#[inline]
+#[target_feature(enable = "avx")]
+fn select4(a: __m256d, b: __m256d, yes: __m256d, no: __m256d) -> __m256d {
+    _mm256_blendv_pd(no, yes, _mm256_cmp_pd::<_CMP_LT_OQ>(a, b))
+}
+
+#[inline]
+#[target_feature(enable = "avx512f")]
+fn select8(a: __m512d, b: __m512d, yes: __m512d, no: __m512d) -> __m512d {
+    _mm512_mask_blend_pd(_mm512_cmp_pd_mask::<_CMP_LT_OQ>(a, b), no, yes)
 }

@@ -54,6 +54,18 @@ pub(super) fn propagate(
     interrupt: &dyn Interrupt,
 ) -> Result<(), Failure> {
     let mut workspace = Workspace::new(request.with_matrix());
+    one_by_one(request, range, budget, sink, interrupt, |course, outlet| run(course, &mut workspace, outlet))
+}
+
+/// Opens and closes one trajectory after the other, which `run` takes to its end in between.
+pub(super) fn one_by_one(
+    request: &Request,
+    range: Range<usize>,
+    budget: &SampleBudget,
+    sink: &mut dyn Sink,
+    interrupt: &dyn Interrupt,
+    mut run: impl FnMut(&mut Course, &mut Outlet) -> Result<Outcome, Failure>,
+) -> Result<(), Failure> {
     for index in range {
         let trajectory = match interrupt.poll() {
             Some(Stop::Cancelled) => return Err(Failure::Cancelled),
@@ -63,7 +75,7 @@ pub(super) fn propagate(
                 let mut outlet = Outlet(Some(&mut *sink));
                 let outcome = match course.open(&mut outlet)? {
                     ControlFlow::Break(outcome) => outcome,
-                    ControlFlow::Continue(()) => run(&mut course, &mut workspace, &mut outlet)?,
+                    ControlFlow::Continue(()) => run(&mut course, &mut outlet)?,
                 };
                 course.close(outcome)?
             }

@@ -7,12 +7,13 @@ use std::ops::{ControlFlow, Range};
 
 use nalgebra::Matrix6;
 
+use super::alone::one_by_one;
 use super::audit::STEPS_PER_POLL;
-use super::course::{Ahead, Course, Outlet, Step, not_started};
+use super::course::{Ahead, Course, Outlet, Step};
 use super::{Failure, Outcome, Request, SampleBudget, Sink};
 use crate::arithmetic::DoubleDouble;
 use crate::arithmetic::sum::Compensated;
-use crate::interrupt::{Interrupt, Stop};
+use crate::interrupt::Interrupt;
 use crate::taylor::extended::Motion;
 use crate::taylor::{Halt, Path, Series, Stride};
 
@@ -46,23 +47,7 @@ pub(super) fn propagate(
     sink: &mut dyn Sink,
     interrupt: &dyn Interrupt,
 ) -> Result<(), Failure> {
-    for index in range {
-        let trajectory = match interrupt.poll() {
-            Some(Stop::Cancelled) => return Err(Failure::Cancelled),
-            Some(Stop::WallTime) => not_started(request, index),
-            None => {
-                let mut course = Course::new(request, index, budget, interrupt);
-                let mut outlet = Outlet(Some(&mut *sink));
-                let outcome = match course.open(&mut outlet)? {
-                    ControlFlow::Break(outcome) => outcome,
-                    ControlFlow::Continue(()) => run(&mut course, &mut outlet)?,
-                };
-                course.close(outcome)?
-            }
-        };
-        sink.trajectory(trajectory)?;
-    }
-    Ok(())
+    one_by_one(request, range, budget, sink, interrupt, run)
 }
 
 /// A trajectory that has been opened, from where it is to its end.
