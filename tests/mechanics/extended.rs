@@ -14,11 +14,7 @@ const TRUTH: &str = include_str!("reference/trajectories.txt");
 /// More final states. `make.py` made them and says how.
 const EXTRAPOLATIONS: &str = include_str!("reference/extrapolations.txt");
 
-pub(crate) const RECTILINEAR: [f64; 6] = [1.022026179865368, 0.0, -0.1821, 0.0, -0.10326652171473427, 0.0];
-/// Hairer, Nørsett & Wanner, *Solving Ordinary Differential Equations I*, §II.0.
-pub(crate) const ARENSTORF_MU: f64 = 0.012277471;
-pub(crate) const ARENSTORF: [f64; 6] = [0.994, 0.0, 0.0, 0.0, -2.00158510637908252240537862224, 0.0];
-pub(crate) const ARENSTORF_PERIOD: f64 = 17.0652165601579625588917206249;
+pub(crate) use crate::reference::cases::{ARENSTORF, ARENSTORF_MU, ARENSTORF_PERIOD, RECTILINEAR};
 
 /// A printed number with all the digits that double-double has.
 pub(crate) fn precise(printed: &str) -> DoubleDouble {

@@ -16,7 +16,7 @@ pub(crate) use macros::{choices, request};
 pub use members::{Field, Members, choice, did_you_mean};
 pub use node::{Malformed, Node, parse, parse_query};
 pub use schema::{ClosedObject, Named, Schemas, by_name, nullable, one_of_names, plain, with_description};
-pub use values::{Integer, Scalar, Text, quantity, refusal, written};
+pub use values::{Integer, MANY, Scalar, Text, quantity, refusal, written};
 
 use utoipa::openapi::{RefOr, Schema};
 

@@ -70,6 +70,9 @@ impl<Q: Quantity> Decode for Scalar<Q> {
     }
 }
 
+/// Counts beyond this are beyond every limit; a double still tells them apart.
+pub const MANY: u64 = 1 << 53;
+
 /// An integer from `MIN` to `MAX`; `5.0` is one, `5.5` is not.
 #[derive(Clone, Copy, Debug, Eq, PartialEq)]
 pub struct Integer<const MIN: u64, const MAX: u64>(pub u64);

@@ -3,10 +3,7 @@
 use std::time::Duration;
 
 use crate::config::Limits;
-use crate::decode::{Errors, Field, Integer, Path, request};
-
-/// Beyond this, any number means "as much as can be".
-const MANY: u64 = 1 << 53;
+use crate::decode::{Errors, Field, Integer, MANY, Path, request};
 
 request! {
     /// How much the computation may take. More than the server's own limits is refused, see /v1/limits.

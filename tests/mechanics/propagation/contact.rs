@@ -78,10 +78,8 @@ fn a_start_on_the_surface_may_leave() {
 
 #[test]
 fn a_fall_into_the_centre_ends_at_the_step_floor() {
-    // Straight down from rest in an inertial sense is not straight in rotating axes, so fall along the spin axis.
-    let down = [1.0 - MU, 0.0, 1e-6, 0.0, 0.0, 0.0];
-    let trajectory = run(parts(MU, down, 1.0));
-    assert!(matches!(trajectory.outcome, Outcome::StepFloor | Outcome::Complete));
+    let trajectory = run(parts(MU, [1.0 - MU, 0.0, 1e-6, 0.0, 0.0, 0.0], 1e-3));
+    assert_eq!(trajectory.outcome, Outcome::StepFloor);
     assert!(trajectory.last.position.iter().all(|c| c.is_finite()));
     assert!(trajectory.evidence.steps < 100_000);
 }
@@ -119,6 +117,7 @@ fn a_start_next_to_a_centre_ends_at_the_step_floor_however_near() {
 
 #[test]
 fn a_trajectory_that_ended_on_a_surface_does_not_go_on_inside() {
+    let mut fallen = 0;
     for i in 0..100 {
         let angle = 0.0628 * f64::from(i);
         let start = [0.2 * libm::cos(angle) - MU, 0.2 * libm::sin(angle), 0.01, 0.0, 0.0, 0.0];
@@ -128,11 +127,13 @@ fn a_trajectory_that_ended_on_a_surface_does_not_go_on_inside() {
         if first.outcome != Outcome::ContactLarger {
             continue;
         }
+        fallen += 1;
         request.states[0] = first.last;
         let second = run(request);
         assert_eq!(second.outcome, Outcome::ContactLarger);
         assert!(second.last.time - first.last.time < 1e-12, "{angle}");
     }
+    assert!(fallen > 10, "{fallen} fall onto the larger primary");
 }
 
 #[test]

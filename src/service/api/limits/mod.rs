@@ -20,7 +20,7 @@ pub(crate) struct ServerLimits {
     steps: u64,
     /// Events per trajectory.
     events: u64,
-    /// Numbers in the samples of a buffered answer.
+    /// Numbers in the samples and events of a buffered answer.
     sample_values: u64,
     /// Time for a computation that asks for none, in milliseconds.
     wall_time_ms: u128,

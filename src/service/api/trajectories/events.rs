@@ -10,8 +10,8 @@ use utoipa::openapi::schema::OneOfBuilder;
 use utoipa::openapi::{RefOr, Schema};
 
 use crate::decode::{
-    Decode, Errors, Field, Integer, Named, Node, Path, Schemas, Text, by_name, choice, choices, request,
-    with_description,
+    Decode, Errors, Field, Integer, MANY, Named, Node, Path, Schemas, Text, by_name, choice, choices,
+    request, with_description,
 };
 use crate::wire::{About, Conventions, scaled};
 
@@ -146,9 +146,6 @@ request! {
         optional below: f64,
     }
 }
-
-/// Occurrences beyond this are beyond every limit.
-const MANY: u64 = 1 << 53;
 
 request! {
     /// Something to watch for. Touching without a change of sign is no event, nor is a zero within 1e-12 normalised time

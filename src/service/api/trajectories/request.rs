@@ -15,16 +15,13 @@ use super::events::{EventSpec, MOST_EVENTS};
 use super::solve::Task;
 use super::span::{COUNT, DurationSpec, INTERVAL, SamplesSpec, TIMES, durations, sampling};
 use crate::config::Limits;
-use crate::decode::{Errors, Field, Integer, Path, Scalar, choices, request};
+use crate::decode::{Errors, Field, Integer, MANY, Path, Scalar, choices, request};
 use crate::wire::{Conventions, FrameSpec, LimitsSpec, StatesSpec, SystemSpec, UnitsSpec, scaled};
 
 /// Default of `tolerance`.
 const TOLERANCE: f64 = 1e-15;
 /// The most manoeuvres of a request: each is looked at for every trajectory.
 const MOST_MANOEUVRES: usize = 1000;
-/// Counts beyond this are beyond every limit.
-const MANY: u64 = 1 << 53;
-
 choices! {
     /// The state transition matrices to return: none, that of the final state, or those of the samples as well.
     pub(super) enum MatrixSpec = MatrixOutput { None = "none", Final = "final", Samples = "samples" }

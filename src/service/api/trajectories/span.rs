@@ -7,13 +7,10 @@ use utoipa::openapi::schema::{AdditionalProperties, ArrayBuilder, ObjectBuilder,
 use utoipa::openapi::{RefOr, Schema};
 
 use crate::decode::{
-    Decode, Errors, Field, Integer, Named, Node, Path, Schemas, by_name, choice, one_of_names,
+    Decode, Errors, Field, Integer, MANY, Named, Node, Path, Schemas, by_name, choice, one_of_names,
     with_description,
 };
 use crate::wire::{Conventions, scaled};
-
-/// Counts beyond this are beyond every limit.
-const MANY: u64 = 1 << 53;
 
 /// One duration for all, or one for each.
 #[derive(Clone, Debug, PartialEq)]
