@@ -105,7 +105,7 @@ fn run(course: &mut Course, workspace: &mut Workspace, outlet: &mut Outlet) -> R
             }
             before_poll = STEPS_PER_POLL;
         }
-        let taken = course.motion.steps;
+        let (taken, before) = (course.motion.steps, (course.motion.reference, course.motion.drift));
         if taken == limit {
             return Ok(Outcome::StepLimit);
         }
@@ -125,6 +125,12 @@ fn run(course: &mut Course, workspace: &mut Workspace, outlet: &mut Outlet) -> R
         };
         if let (Some(transition), Some(columns)) = (&course.transition, columns.as_deref_mut()) {
             transition.expand(path, series, columns);
+            if !columns.is_finite() {
+                // No step for the matrix is no step at all.
+                course.motion.steps = taken;
+                (course.motion.reference, course.motion.drift) = before;
+                return Ok(Outcome::StepFloor);
+            }
         }
         let ahead = DoubleStep { path, series, columns: columns.as_deref() };
         let (end, stop) = course.observe(&ahead, step, outlet)?;

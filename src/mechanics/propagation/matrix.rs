@@ -56,9 +56,11 @@ impl Transition {
     /// Takes the leg's defects into account.
     fn measure(&mut self) {
         let m = canonical(&rounded(&self.leg));
-        self.determinant_defect = self.determinant_defect.max((m.determinant() - 1.0).abs());
+        self.determinant_defect = worse(self.determinant_defect, (m.determinant() - 1.0).abs());
         let j = symplectic_unit();
-        self.symplectic_defect = self.symplectic_defect.max((m.transpose() * j * m - j).amax());
+        let residual = m.transpose() * j * m - j;
+        self.symplectic_defect =
+            residual.iter().fold(self.symplectic_defect, |defect, element| worse(defect, element.abs()));
     }
 }
 
@@ -80,6 +82,11 @@ impl Legs for Transition {
         self.measure();
         (self.determinant_defect, self.symplectic_defect)
     }
+}
+
+/// The larger of two defects; one that is no number is beyond all numbers.
+pub(super) fn worse(defect: f64, found: f64) -> f64 {
+    if found.is_nan() { f64::INFINITY } else { defect.max(found) }
 }
 
 fn identity() -> [[Compensated; 6]; 6] {

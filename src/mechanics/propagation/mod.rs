@@ -86,9 +86,9 @@ pub struct Evidence {
     pub steps: u64,
     /// Largest departure of the Jacobi constant from its value at the start of the leg between two manoeuvres.
     pub jacobi_drift: f64,
-    /// |det − 1| of the normalised rotating canonical matrix, the largest of the legs.
+    /// |det − 1| of the normalised rotating canonical matrix, the largest of the legs; none where it is beyond all doubles.
     pub determinant_defect: Option<f64>,
-    /// Largest element of `|MᵀJM − J|` of that matrix, the largest of the legs.
+    /// Largest element of `|MᵀJM − J|` of that matrix, the largest of the legs; none where it is beyond all doubles.
     pub symplectic_defect: Option<f64>,
     /// The true error of the last state, where asked for.
     pub audit: Option<Audit>,
@@ -125,7 +125,7 @@ pub struct Trajectory {
     pub samples: Samples,
     /// The events that happened, in the order of the integration.
     pub events: Vec<Occurrence>,
-    /// d(last)/d(initial).
+    /// d(last)/d(initial); none where an element is beyond all doubles, on the way into a centre.
     pub matrix: Option<Matrix6<f64>>,
     /// How good it is.
     pub evidence: Evidence,

@@ -213,8 +213,14 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
             let step = sizes.at_log2_radius(L::from_array(&self.series.log2_radius));
             let all = (1 << L::COUNT) - 1;
             let last = !step.less(remaining.abs()) & all;
-            let spread = self.series.newest::<L>();
-            let infinite = !spread.abs().less(L::from_f64(f64::INFINITY)) & all;
+            let finite = |sum: L| sum.abs().less(L::from_f64(f64::INFINITY));
+            let mut infinite = !finite(self.series.newest::<L>()) & all;
+            if let Some(matrices) = &mut self.matrix {
+                matrices.expand::<L>(&self.series);
+                for column in 0..6 {
+                    infinite |= !finite(matrices.columns.newest::<L>(column)) & all;
+                }
+            }
             let floor = infinite | (step.less(L::from_f64(STEP_FLOOR)) & !last);
             // Where there is no step nothing is measured.
             let (reference, drift) = (self.reference, self.drift);
@@ -226,9 +232,6 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
             let lanes = last | floor | zero.less(L::from_array(&self.watched));
             let length = step * L::from_array(&self.direction);
             let length = step.select_less(remaining.abs(), length, remaining);
-            if let Some(matrices) = &mut self.matrix {
-                matrices.expand::<L>(&self.series);
-            }
             if lanes != 0 {
                 self.length = length.to_array();
                 return Pause { steps, lanes, last, floor };

@@ -1,16 +1,17 @@
 //! The compute threads: niced, so that answers that need no computing stay quick; fed from a queue whose length is
 //! bounded by places; and told to stop when nobody waits for the answer any more.
 //!
-//! Work is done in pieces of a few milliseconds. Between two of them a computation goes to the end of the queue, so
-//! that a huge one keeps no other waiting, however few threads there are.
+//! Work is done in pieces of a few milliseconds. Between two of them a computation goes to the end of the queue, and a piece
+//! that takes longer gives way when it polls, so that a huge one keeps no other waiting, however few threads there are.
 
 mod watch;
 
 use std::any::Any;
+use std::cell::Cell;
 use std::panic::{AssertUnwindSafe, catch_unwind, resume_unwind};
 use std::sync::atomic::{AtomicBool, AtomicUsize, Ordering};
 use std::sync::{Arc, Mutex, PoisonError};
-use std::time::Duration;
+use std::time::{Duration, Instant};
 
 use crossbeam_channel::{Receiver, Sender};
 use mechanics::interrupt::Interrupt;
@@ -22,6 +23,14 @@ pub use watch::Watch;
 
 /// The niceness of compute threads: the lowest priority.
 const NICENESS: i32 = 19;
+
+/// A piece of work that has taken so long gives way to others: longer than a piece is meant to take.
+const TURN_TIME: Duration = Duration::from_millis(4);
+
+thread_local! {
+    /// When the piece of work under way on this compute thread had its turn.
+    static TURN: Cell<Option<Instant>> = const { Cell::new(None) };
+}
 
 /// Does the next piece of some work and tells whether there is more to do. It catches its own panics.
 type Job = Box<dyn FnMut() -> bool + Send>;
@@ -74,10 +83,12 @@ impl Pool {
     /// `overloaded` at once if every place is taken.
     pub fn place(&self) -> Result<Place, Problem> {
         let Ok(permit) = Arc::clone(&self.0.places).try_acquire_owned() else {
-            return Err(Problem::overloaded("Every compute thread is busy and the queue is full"));
+            return Err(Problem::overloaded(
+                "As many computations as the server takes are under way or wait for a thread or for their readers",
+            ));
         };
         let held = Held {
-            watch: Arc::new(Watch::new(&self.0.closing)),
+            watch: Arc::new(Watch::new(self)),
             permit: Mutex::new(Some(permit)),
             begun: AtomicBool::new(false),
             busy: AtomicBool::new(false),
@@ -124,6 +135,30 @@ impl Pool {
         work()
     }
 
+    fn is_closing(&self) -> bool {
+        self.0.closing.load(Ordering::Relaxed)
+    }
+
+    /// On a compute thread whose piece of work has taken its turn while others wait: lets each of these have its turn
+    /// before it goes on.
+    fn give_way(&self) {
+        let had_its_turn = TURN.get().is_some_and(|begun| begun.elapsed() >= TURN_TIME);
+        // Without a thread to take this one's place it cannot wait: it may be the only one.
+        if !had_its_turn || self.0.waiting.is_empty() || self.spawn("compute-stand-in".to_owned()).is_err() {
+            return;
+        }
+        let (done, back) = crossbeam_channel::bounded(1);
+        let shared = Arc::clone(&self.0);
+        // At the end of the queue. The thread that comes to it ends, and this one goes on.
+        self.send(Box::new(move || {
+            shared.surplus.fetch_add(1, Ordering::Relaxed);
+            let _ = done.send(());
+            false
+        }));
+        let _ = back.recv();
+        TURN.set(Some(Instant::now()));
+    }
+
     fn send(&self, job: Job) {
         // The queue cannot be closed: both of its ends live as long as the pool.
         let _ = self.0.jobs.send(job);
@@ -146,7 +181,13 @@ fn compute(shared: &Shared) {
         tracing::warn!(%error, "compute threads run at normal priority");
     }
     while let Ok(mut job) = shared.waiting.recv() {
-        while job() {
+        loop {
+            TURN.set(Some(Instant::now()));
+            let more = job();
+            TURN.set(None);
+            if !more {
+                break;
+            }
             if !shared.waiting.is_empty() || shared.surplus.load(Ordering::Relaxed) > 0 {
                 let _ = shared.jobs.send(job);
                 break;
@@ -275,7 +316,7 @@ impl Context {
     /// For a computation on the thread that asks, of a few microseconds.
     #[must_use]
     pub fn in_place(pool: &Pool) -> Self {
-        Self { watch: Arc::new(Watch::new(&pool.0.closing)) }
+        Self { watch: Arc::new(Watch::new(pool)) }
     }
 
     /// Starts the clock: `wall_time` from now on, polling says that the time is up. Only the first call counts.

@@ -1,16 +1,19 @@
-//! What a computation is told while it runs: whether its client still waits, and whether its time is up.
+//! What a computation is told while it runs: whether its client still waits, and whether its time is up. A piece of work
+//! that takes long gives way to others while it asks.
 
+use std::sync::LazyLock;
 use std::sync::atomic::{AtomicBool, AtomicU64, Ordering};
-use std::sync::{Arc, LazyLock};
 use std::time::{Duration, Instant};
 
 use mechanics::interrupt::{Interrupt, Stop};
+
+use super::Pool;
 
 /// What a computation polls: its time and its client's presence.
 #[derive(Debug)]
 pub struct Watch {
     cancelled: AtomicBool,
-    closing: Arc<AtomicBool>,
+    pool: Pool,
     /// Nanoseconds since [`ORIGIN`] at which the time is up; [`NEVER`] while no clock runs.
     deadline: AtomicU64,
     polls: AtomicU64,
@@ -26,10 +29,10 @@ fn now() -> u64 {
 }
 
 impl Watch {
-    pub(super) fn new(closing: &Arc<AtomicBool>) -> Self {
+    pub(super) fn new(pool: &Pool) -> Self {
         Self {
             cancelled: AtomicBool::new(false),
-            closing: Arc::clone(closing),
+            pool: pool.clone(),
             deadline: AtomicU64::new(NEVER),
             polls: AtomicU64::new(0),
         }
@@ -56,7 +59,7 @@ impl Watch {
     /// Whether the answer is of no use any more, or the server stops.
     #[must_use]
     pub fn is_cancelled(&self) -> bool {
-        self.cancelled.load(Ordering::Relaxed) || self.closing.load(Ordering::Relaxed)
+        self.cancelled.load(Ordering::Relaxed) || self.pool.is_closing()
     }
 
     /// How often it has been asked.
@@ -69,6 +72,7 @@ impl Watch {
 impl Interrupt for Watch {
     fn poll(&self) -> Option<Stop> {
         self.polls.fetch_add(1, Ordering::Relaxed);
+        self.pool.give_way();
         if self.is_cancelled() {
             return Some(Stop::Cancelled);
         }

@@ -109,6 +109,6 @@ slugs! {
          request again will most likely meet it again; please report it with that id.";
     /// No place for the work now.
     Overloaded "overloaded" SERVICE_UNAVAILABLE "No place for the work now"
-        "All compute threads are busy and the queue is full, or the server is about to stop. The request was not \
-         begun; send it again after the time in `Retry-After`.";
+        "As many computations as the server takes are under way, waiting for a thread or for their readers, or the \
+         server is about to stop. The request was not begun; send it again after the time in `Retry-After`.";
 }

@@ -2,6 +2,7 @@
 
 use mechanics::frame::{Axes, Frame, Origin, XAxis};
 use mechanics::propagation::{BurnAxes, Manoeuvre, MatrixOutput, RequestParts, Sampling};
+use mechanics::quantity::{Quantity, Tolerance};
 use nalgebra::{Matrix6, Vector3, Vector6};
 use proptest::prelude::*;
 
@@ -116,5 +117,30 @@ proptest! {
         let defect = trajectory.evidence.symplectic_defect.expect("measured");
         prop_assert!(defect < 1e-12 * scale * scale, "{defect} {scale}");
         prop_assert!(trajectory.evidence.determinant_defect.expect("measured") < 1e-9 * scale * scale);
+    }
+}
+
+#[test]
+fn matrices_on_the_way_into_a_centre_are_finite_or_none() {
+    for (mu, state, duration, tolerance) in [
+        (0.2, [-0.188_244_005_433_575_4, 0.0, 0.0, 0.0, 0.0, 0.0], -3.0, 1e-15),
+        (
+            0.5,
+            [0.505_617_994_972_893_8, 0.0, -0.004_526_297_828_117_165, 0.0, 0.006_333_593_353_681_137, 0.0],
+            -3.0,
+            1e-15,
+        ),
+        (0.2, [-0.25, 0.0, 0.0, 0.0, 0.0, 0.0], 0.5, 1e-3),
+    ] {
+        let mut request = parts(mu, state, duration);
+        request.tolerance = Tolerance::new(tolerance).expect("in range");
+        request.matrix = MatrixOutput::Final;
+        let trajectory = run(request);
+        assert!(trajectory.matrix.is_none_or(|matrix| matrix.iter().all(|element| element.is_finite())));
+        let evidence = trajectory.evidence;
+        for defect in [evidence.determinant_defect, evidence.symplectic_defect, Some(evidence.jacobi_drift)] {
+            assert!(defect.is_none_or(f64::is_finite), "{evidence:?}");
+        }
+        assert!(trajectory.last.components().iter().all(|component| component.is_finite()));
     }
 }

@@ -114,6 +114,22 @@ fn a_huge_request_keeps_no_small_one_waiting() {
     assert_eq!(nothing.kind(), std::io::ErrorKind::WouldBlock, "the huge one is still computed");
 }
 
+/// With one thread, a small request is answered beside a single trajectory that takes very long.
+#[test]
+fn a_long_trajectory_keeps_no_small_one_waiting() {
+    let server = server(&[("SYNODIA_MAX_STEPS", "1000000000000")]);
+    let body = endless(1);
+    let mut long = server.connect();
+    long.write_all(post(TRAJECTORIES, "application/json", &body.to_string()).as_bytes()).unwrap();
+    server.log(|line| line["message"] == "computation begun");
+    for _ in 0..3 {
+        small(&server);
+    }
+    long.set_nonblocking(true).unwrap();
+    let nothing = long.read(&mut [0]).unwrap_err();
+    assert_eq!(nothing.kind(), std::io::ErrorKind::WouldBlock, "the long one is still computed");
+}
+
 /// A connection of HTTP/2, with the window of its streams.
 async fn http2(server: &Server) -> hyper::client::conn::http2::SendRequest<Full<bytes::Bytes>> {
     let stream = tokio::net::TcpStream::connect(server.address).await.unwrap();

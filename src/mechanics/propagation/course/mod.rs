@@ -234,10 +234,13 @@ impl<'a> Course<'a> {
         }
         let matrix = self.legs().map(|legs| {
             let (determinant, symplectic) = legs.defects();
-            evidence.determinant_defect = Some(determinant);
-            evidence.symplectic_defect = Some(symplectic);
+            evidence.determinant_defect = Some(determinant).filter(|defect| defect.is_finite());
+            evidence.symplectic_defect = Some(symplectic).filter(|defect| defect.is_finite());
             legs.here()
         });
+        let matrix = matrix
+            .map(|matrix| in_frame(self.request, &matrix, self.start, last.time))
+            .filter(|matrix| matrix.iter().all(|element| element.is_finite()));
         Ok(Trajectory {
             index: self.index,
             outcome,
@@ -245,7 +248,7 @@ impl<'a> Course<'a> {
             stopped_by: self.stopped_by,
             samples: self.samples,
             events: self.events,
-            matrix: matrix.map(|m| in_frame(self.request, &m, self.start, last.time)),
+            matrix,
             evidence,
         })
     }

@@ -3,7 +3,7 @@
 use nalgebra::Matrix6;
 
 use crate::arithmetic::{DoubleDouble, Matrix};
-use crate::propagation::matrix::Legs;
+use crate::propagation::matrix::{Legs, worse};
 use crate::taylor::Path;
 use crate::taylor::extended::{self, Columns, Series};
 
@@ -54,9 +54,9 @@ impl ExtendedTransition {
         let j = symplectic_unit();
         let product = m.transposed().times(&j).times(&m);
         let symplectic = product.0.iter().flatten().zip(j.0.iter().flatten());
-        let symplectic = symplectic.map(|(a, b)| (*a - *b).abs().to_f64()).fold(0.0, f64::max);
-        self.determinant_defect = self.determinant_defect.max(determinant);
-        self.symplectic_defect = self.symplectic_defect.max(symplectic);
+        let symplectic = symplectic.map(|(a, b)| (*a - *b).abs().to_f64()).fold(0.0, worse);
+        self.determinant_defect = worse(self.determinant_defect, determinant);
+        self.symplectic_defect = worse(self.symplectic_defect, symplectic);
     }
 }
 

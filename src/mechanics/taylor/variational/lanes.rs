@@ -54,6 +54,16 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> LaneColumns<A> {
         }
     }
 
+    /// The sum of a column's last coefficients: one that has overflowed spoils all later ones.
+    #[inline(always)]
+    pub(in super::super) fn newest<L: Lanes<Array = A>>(&self, column: usize) -> L {
+        let size = |k: usize| {
+            let [x, y, z] = &self.position[column][k];
+            (L::from_array(x) + L::from_array(y)) + L::from_array(z)
+        };
+        size(TERMS - 2) + size(TERMS - 1)
+    }
+
     /// Expands the column through (x, y, z, vx, vy, vz) along the gradient.
     #[inline(always)]
     pub(in super::super) fn expand_column<L: Lanes<Array = A>>(&mut self, column: usize, start: [L; 6]) {

@@ -45,6 +45,18 @@ impl Columns {
     }
 }
 
+impl Columns {
+    /// Whether no coefficient has overflowed: one that has spoils all later ones.
+    #[must_use]
+    pub fn is_finite(&self) -> bool {
+        let size = |k: usize, column: usize| {
+            let [x, y, z] = &self.position[k];
+            (x[column] + y[column]) + z[column]
+        };
+        (0..6).all(|column| (size(TERMS - 2, column) + size(TERMS - 1, column)).is_finite())
+    }
+}
+
 impl Default for Columns {
     fn default() -> Self {
         Self::new()

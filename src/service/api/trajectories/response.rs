@@ -115,7 +115,8 @@ pub(super) struct TrajectoryAnswer<'a> {
     samples: Option<SamplesAnswer>,
     /// The events, in the order of the integration.
     events: Vec<Occurrence<'a>>,
-    /// d(final)/d(initial), rows and columns (x, y, z, vx, vy, vz); null if not asked for.
+    /// d(final)/d(initial), rows and columns (x, y, z, vx, vy, vz); null if not asked for, or where an element is
+    /// beyond all doubles, on the way into a centre.
     state_transition_matrix: Option<[[f64; 6]; 6]>,
     /// How good it is, measured along it.
     evidence: EvidenceAnswer,
@@ -160,9 +161,11 @@ struct EvidenceAnswer {
     steps: u64,
     /// Largest drift of the Jacobi constant within one leg between manoeuvres, in the velocity unit squared.
     jacobi_drift: f64,
-    /// |det - 1| of the normalised rotating canonical matrix, the largest of the legs; null without a matrix.
+    /// |det - 1| of the normalised rotating canonical matrix, the largest of the legs; null without a matrix, or
+    /// where it is beyond all doubles.
     determinant_defect: Option<f64>,
-    /// Largest element of `|M^T J M - J|` of that matrix, the largest of the legs; null without a matrix.
+    /// Largest element of `|M^T J M - J|` of that matrix, the largest of the legs; null without a matrix, or
+    /// where it is beyond all doubles.
     symplectic_defect: Option<f64>,
     /// The true error of the final state; null if not asked for.
     audit: Option<AuditAnswer>,
