@@ -2,7 +2,6 @@
 
 use nalgebra::{Matrix3, Matrix6};
 
-use crate::arithmetic::sum::Compensated;
 use crate::taylor::{self, Columns, Path, Series};
 
 /// A matrix leg by leg, in whichever arithmetic.
@@ -20,7 +19,7 @@ pub(super) trait Legs {
 /// The matrix of the leg under way, and of all before it.
 pub(super) struct Transition {
     /// Of the leg under way, at the last place reached.
-    pub leg: [[Compensated; 6]; 6],
+    pub leg: taylor::Transition,
     before: Matrix6<f64>,
     determinant_defect: f64,
     symplectic_defect: f64,
@@ -28,25 +27,24 @@ pub(super) struct Transition {
 
 impl Transition {
     pub(super) fn new() -> Self {
-        Self { leg: identity(), before: Matrix6::identity(), determinant_defect: 0.0, symplectic_defect: 0.0 }
+        Self {
+            leg: taylor::Transition::identity(),
+            before: Matrix6::identity(),
+            determinant_defect: 0.0,
+            symplectic_defect: 0.0,
+        }
     }
 
     /// Prepares a step along `series`.
     pub(super) fn expand(&self, path: Path, series: &Series, columns: &mut Columns) {
-        taylor::expand_variational(path, series, &self.leg.map(|row| row.map(|c| c.value)), columns);
-    }
-
-    /// The leg's matrix `at` a time after the start of the step.
-    fn leg_at(&self, path: Path, columns: &Columns, at: f64) -> [[Compensated; 6]; 6] {
-        let change = taylor::flow_variational(path, columns, at);
-        std::array::from_fn(|row| {
-            std::array::from_fn(|column| self.leg[row][column].plus(change[row][column]))
-        })
+        taylor::expand_variational(path, series, &self.leg, columns);
     }
 
     /// d(state)/d(initial state) `at` a time after the start of the step.
     pub(super) fn at(&self, path: Path, columns: &Columns, at: f64) -> Matrix6<f64> {
-        rounded(&self.leg_at(path, columns, at)) * self.before
+        let mut leg = self.leg.clone();
+        taylor::advance_variational(path, columns, &mut leg, at);
+        rounded(&leg) * self.before
     }
 
     pub(super) fn advance(&mut self, path: Path, columns: &Columns, at: f64) {
@@ -75,7 +73,7 @@ impl Legs for Transition {
         if let Some(jump) = jump {
             self.before = jump * self.before;
         }
-        self.leg = identity();
+        self.leg = taylor::Transition::identity();
     }
 
     fn defects(&mut self) -> (f64, f64) {
@@ -89,14 +87,8 @@ pub(super) fn worse(defect: f64, found: f64) -> f64 {
     if found.is_nan() { f64::INFINITY } else { defect.max(found) }
 }
 
-fn identity() -> [[Compensated; 6]; 6] {
-    std::array::from_fn(|row| {
-        std::array::from_fn(|column| Compensated::new(if row == column { 1.0 } else { 0.0 }))
-    })
-}
-
-fn rounded(matrix: &[[Compensated; 6]; 6]) -> Matrix6<f64> {
-    Matrix6::from_fn(|row, column| matrix[row][column].value)
+fn rounded(matrix: &taylor::Transition) -> Matrix6<f64> {
+    Matrix6::from_fn(|row, column| matrix.get(row, column).value)
 }
 
 /// The matrix of canonical momenta p = v + ẑ × r instead of velocities.

@@ -287,8 +287,8 @@ fn fetch<const N: usize>(swarm: &Swarm<[f64; N]>, lane: usize, course: &mut Cour
     course.motion.state = swarm.state(lane);
     course.motion.elapsed = swarm.elapsed(lane);
     (course.motion.reference, course.motion.drift) = swarm.drift(lane);
-    if let (Some(transition), Some(matrix)) = (&mut course.transition, swarm.matrix(lane)) {
-        transition.leg = matrix;
+    if let Some(transition) = &mut course.transition {
+        swarm.get_matrix(lane, &mut transition.leg);
     }
 }
 

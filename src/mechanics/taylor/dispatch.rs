@@ -6,7 +6,7 @@ use std::sync::OnceLock;
 
 use super::swarm::{Pause, Swarm};
 use super::variational::Registers;
-use super::{Columns, Halt, Place, Primaries, Series, StepSize, Stride, packed, variational};
+use super::{Columns, Halt, Place, Primaries, Series, StepSize, Stride, Transition, packed, variational};
 use crate::arithmetic::sum::Compensated;
 use crate::arithmetic::{Lanes, Packed, Quad};
 
@@ -158,10 +158,19 @@ on_path! {
     /// Expands the columns of `matrix` along `series`.
     pub fn expand_variational<P: Registers = variational::Plain | variational::Four | variational::Eight>(
         series: &Series,
-        matrix: &[[f64; 6]; 6],
+        matrix: &Transition,
         columns: &mut Columns,
     ) {
         variational::expand::<P>(series, matrix, columns);
+    }
+
+    /// Moves `matrix`, that of the series' instant, on by `time` along its columns.
+    pub fn advance_variational<P: Registers = variational::Plain | variational::Four | variational::Eight>(
+        columns: &Columns,
+        matrix: &mut Transition,
+        time: f64,
+    ) {
+        variational::advance::<P>(columns, matrix, time);
     }
 
     /// What position and velocity change by within `time` of the series' instant.
@@ -169,28 +178,6 @@ on_path! {
         let [place, rate] = packed::change::<P>(&series.position, time);
         let ([x, y, z, _], [vx, vy, vz, _]) = (place.0, rate.0);
         [x, y, z, vx, vy, vz]
-    }
-
-    /// What the columns of the matrix (rows x, y, z, vx, vy, vz) change by within `time` of the series' instant.
-    pub fn flow_variational<P: Registers = variational::Plain | variational::Four | variational::Eight>(
-        columns: &Columns,
-        time: f64,
-    ) -> [[f64; 6]; 6] {
-        variational::change::<P>(columns, time)
-    }
-
-    /// Moves a matrix on by `time` along its columns.
-    pub fn advance_variational<P: Registers = variational::Plain | variational::Four | variational::Eight>(
-        columns: &Columns,
-        matrix: &mut [[Compensated; 6]; 6],
-        time: f64,
-    ) {
-        let change = variational::change::<P>(columns, time);
-        for (row, change) in matrix.iter_mut().zip(change) {
-            for (element, change) in row.iter_mut().zip(change) {
-                *element = element.plus(change);
-            }
-        }
     }
 
     /// The Jacobi constant 2Ω − v² of (x, y, z, vx, vy, vz).

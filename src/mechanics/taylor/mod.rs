@@ -19,15 +19,14 @@ mod variational;
 use crate::arithmetic::{Quad, Real};
 
 pub use dispatch::{
-    Path, advance, advance_variational, expand, expand_variational, flow, flow_variational, jacobi_constant,
-    run,
+    Path, advance, advance_variational, expand, expand_variational, flow, jacobi_constant, run,
 };
 pub(crate) use dispatch::{advance_four, eight, run_four};
 pub use motion::{Halt, Place, Stride};
 pub use primaries::Primaries;
 pub use step::{MAX_STEP, STEP_FLOOR, StepSize};
 pub(crate) use swarm::{Lane, Pause, Swarm};
-pub use variational::Columns;
+pub use variational::{Columns, Transition};
 
 /// Order of the velocity series. At double precision 20 to 26 cost the same within 5 %.
 pub const ORDER: usize = 22;

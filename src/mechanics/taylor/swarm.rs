@@ -1,7 +1,7 @@
 //! Several trajectories at once, one a lane, each with its own step.
 
 use super::lanes::{self, LaneSeries};
-use super::variational::LaneColumns;
+use super::variational::{LaneColumns, Transition};
 use super::{Primaries, STEP_FLOOR, StepSize};
 use crate::arithmetic::Lanes;
 use crate::arithmetic::sum::Compensated;
@@ -175,19 +175,24 @@ impl<A: Copy + AsRef<[f64]> + AsMut<[f64]>> Swarm<A> {
         ((!reference.is_nan()).then_some(reference), self.drift.as_ref()[lane])
     }
 
-    pub(crate) fn put_matrix(&mut self, lane: usize, matrix: &[[Compensated; 6]; 6]) {
+    pub(crate) fn put_matrix(&mut self, lane: usize, matrix: &Transition) {
         if let Some(matrices) = &mut self.matrix {
             for row in 0..6 {
                 for column in 0..6 {
-                    matrices.values[column][row].set(lane, matrix[row][column]);
+                    matrices.values[column][row].set(lane, matrix.get(row, column));
                 }
             }
         }
     }
 
-    pub(crate) fn matrix(&self, lane: usize) -> Option<[[Compensated; 6]; 6]> {
-        let matrices = self.matrix.as_ref()?;
-        Some(std::array::from_fn(|row| std::array::from_fn(|column| matrices.values[column][row].get(lane))))
+    pub(crate) fn get_matrix(&self, lane: usize, matrix: &mut Transition) {
+        if let Some(matrices) = &self.matrix {
+            for row in 0..6 {
+                for column in 0..6 {
+                    matrix.set(row, column, matrices.values[column][row].get(lane));
+                }
+            }
+        }
     }
 
     /// Takes steps in all lanes until one of them needs to be seen to, at most `most`.

@@ -19,8 +19,8 @@ use super::{ORDER, TERMS};
 use crate::arithmetic::{Lanes, Packed, Quad, Real};
 
 pub(crate) use lanes::LaneColumns;
-pub use packed::Columns;
-pub(super) use packed::{change, expand};
+pub use packed::{Columns, Transition};
+pub(super) use packed::{advance, expand};
 
 /// The registers that one trajectory's gradient and columns are expanded in.
 pub(super) trait Registers {

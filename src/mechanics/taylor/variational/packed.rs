@@ -1,12 +1,56 @@
 //! One trajectory, its columns side by side.
 
 use super::{Layout, ORDER, Registers, TERMS, expand_column};
+use crate::arithmetic::sum::Compensated;
 use crate::arithmetic::{Lanes, Packed, Quad, Real};
 use crate::taylor::{Series, horner};
 use std::marker::PhantomData;
 
 /// Six columns and two lanes of nothing.
 type Row = [f64; 8];
+
+/// A matrix with rows x, y, z, vx, vy, vz, and what its rounding lost.
+#[derive(Clone, Debug)]
+#[repr(C, align(64))]
+pub struct Transition {
+    value: [Row; 6],
+    rest: [Row; 6],
+}
+
+impl Transition {
+    /// The identity.
+    #[must_use]
+    pub fn identity() -> Self {
+        let mut value = [[0.0; 8]; 6];
+        for (i, row) in value.iter_mut().enumerate() {
+            row[i] = 1.0;
+        }
+        Self { value, rest: [[0.0; 8]; 6] }
+    }
+
+    /// An element.
+    #[must_use]
+    pub fn get(&self, row: usize, column: usize) -> Compensated {
+        Compensated { value: self.value[row][column], rest: self.rest[row][column] }
+    }
+
+    /// Sets an element.
+    pub fn set(&mut self, row: usize, column: usize, to: Compensated) {
+        self.value[row][column] = to.value;
+        self.rest[row][column] = to.rest;
+    }
+
+    /// [`Compensated::plus`] for some columns of a row.
+    #[inline(always)]
+    fn add<L: Lanes>(&mut self, row: usize, at: usize, increment: L) {
+        let value = L::read(&self.value[row][at..]);
+        let rest = L::read(&self.rest[row][at..]) + increment;
+        let sum = value + rest;
+        let of_rest = sum - value;
+        sum.write(&mut self.value[row][at..]);
+        ((value - (sum - of_rest)) + (rest - of_rest)).write(&mut self.rest[row][at..]);
+    }
+}
 
 /// Taylor series of the six columns and of the gradient they share.
 #[derive(Clone, Debug)]
@@ -93,13 +137,13 @@ impl<L: Lanes> Layout for SideBySide<L> {
     }
 }
 
-/// Expands the columns of `matrix` (rows x, y, z, vx, vy, vz) along `series`.
+/// Expands the columns of `matrix` along `series`.
 #[inline(always)]
-pub(in super::super) fn expand<T: Registers>(series: &Series, matrix: &[[f64; 6]; 6], columns: &mut Columns) {
+pub(in super::super) fn expand<T: Registers>(series: &Series, matrix: &Transition, columns: &mut Columns) {
     super::super::dispatch::align_stack();
     for axis in 0..3 {
-        columns.position[0][axis][..6].copy_from_slice(&matrix[axis]);
-        columns.position[1][axis][..6].copy_from_slice(&matrix[axis + 3]);
+        columns.position[0][axis] = matrix.value[axis];
+        columns.position[1][axis] = matrix.value[axis + 3];
     }
     gradient::<T::Gradient>(series, columns);
     for at in (0..8).step_by(T::Column::COUNT) {
@@ -183,17 +227,15 @@ fn grade<P: Packed>(s: &Series, c: &mut Columns, k: usize) {
     }
 }
 
-/// What the columns change by within `time`.
+/// Moves the matrix on by `time` along its columns.
 #[inline(always)]
-pub(in super::super) fn change<T: Registers>(c: &Columns, time: f64) -> [[f64; 6]; 6] {
-    let mut rows = [[0.0; 8]; 6];
+pub(in super::super) fn advance<T: Registers>(c: &Columns, matrix: &mut Transition, time: f64) {
     for at in (0..8).step_by(T::Column::COUNT) {
         for axis in 0..3 {
             let [place, rate] =
                 horner(T::Column::from_f64(time), |k| T::Column::read(&c.position[k][axis][at..]));
-            place.write(&mut rows[axis][at..]);
-            rate.write(&mut rows[axis + 3][at..]);
+            matrix.add(axis, at, place);
+            matrix.add(axis + 3, at, rate);
         }
     }
-    rows.map(|[a, b, c, d, e, f, _, _]| [a, b, c, d, e, f])
 }
