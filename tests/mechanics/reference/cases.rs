@@ -43,8 +43,9 @@ pub(crate) fn parts(mass_parameter: f64, state: [f64; 6], duration: f64) -> Requ
 }
 
 /// The cases that are raced.
-pub(crate) const NAMES: [&str; 8] = [
+pub(crate) const NAMES: [&str; 9] = [
     "halo_period",
+    "halo_period_double_double",
     "nrho_30",
     "arenstorf",
     "ensemble_10k",
@@ -63,6 +64,9 @@ pub(crate) fn case(name: &str) -> Option<RequestParts> {
     };
     Some(match name {
         "halo_period" => parts(MU, HALO, HALO_PERIOD),
+        "halo_period_double_double" => {
+            RequestParts { arithmetic: Arithmetic::DoubleDouble, ..parts(MU, HALO, HALO_PERIOD) }
+        }
         "nrho_30" => parts(MU, RECTILINEAR, 30.0),
         "arenstorf" => parts(ARENSTORF_MU, ARENSTORF, ARENSTORF_PERIOD),
         "ensemble_10k" => RequestParts { states: ensemble(), ..parts(MU, HALO, 10.0) },

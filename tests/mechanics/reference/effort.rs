@@ -4,9 +4,9 @@ use std::fmt::Write;
 
 use mechanics::interrupt::Never;
 use mechanics::propagation::event::{Direction, Event, Plane, When};
-use mechanics::propagation::{Request, RequestParts, Sampling, solve};
+use mechanics::propagation::{Arithmetic, Request, RequestParts, Sampling, solve};
 use mechanics::system::Primary;
-use mechanics::taylor::ORDER;
+use mechanics::taylor::{ORDER, extended};
 
 use super::cases::{HALO, HALO_PERIOD, MU, RECTILINEAR, REGULAR, REGULAR_PERIOD, case, parts};
 
@@ -31,15 +31,19 @@ fn others() -> Vec<(&'static str, RequestParts)> {
     ]
 }
 
-/// The table: case, order of the series, trajectories, steps of them all, events found.
+/// The table: case, order of the series, trajectories, steps of them all (each expands the series once), events found.
 pub(crate) fn table() -> String {
     let mut table = String::from("# case order trajectories steps events\n");
     let raced = super::cases::NAMES.map(|name| (name, case(name).expect("a case")));
     for (name, parts) in raced.into_iter().chain(others()) {
+        let order = match parts.arithmetic {
+            Arithmetic::Double => ORDER,
+            Arithmetic::DoubleDouble => extended::ORDER,
+        };
         let all = solve(&Request::new(parts).expect("valid"), &Never).expect("not cancelled");
         let steps: u64 = all.iter().map(|trajectory| trajectory.evidence.steps).sum();
         let events: usize = all.iter().map(|trajectory| trajectory.events.len()).sum();
-        writeln!(table, "{name} {ORDER} {} {steps} {events}", all.len()).expect("a string has room");
+        writeln!(table, "{name} {order} {} {steps} {events}", all.len()).expect("a string has room");
     }
     table
 }

@@ -21,7 +21,7 @@ pub use step::EXTENDED_TOLERANCE;
 pub use variational::Columns;
 
 /// Order of the velocity series, even. From 32 to 38 the cost is the same within a few per cent.
-const ORDER: usize = 36;
+pub const ORDER: usize = 36;
 
 /// Coefficients of the position series.
 const TERMS: usize = ORDER + 2;
