@@ -142,9 +142,12 @@ impl Pool {
     /// On a compute thread whose piece of work has taken its turn while others wait: lets each of these have its turn
     /// before it goes on.
     fn give_way(&self) {
+        if self.0.waiting.is_empty() {
+            return;
+        }
         let had_its_turn = TURN.get().is_some_and(|begun| begun.elapsed() >= TURN_TIME);
         // Without a thread to take this one's place it cannot wait: it may be the only one.
-        if !had_its_turn || self.0.waiting.is_empty() || self.spawn("compute-stand-in".to_owned()).is_err() {
+        if !had_its_turn || self.spawn("compute-stand-in".to_owned()).is_err() {
             return;
         }
         let (done, back) = crossbeam_channel::bounded(1);
