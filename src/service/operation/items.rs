@@ -49,7 +49,7 @@ pub trait Items: Send + Sync + 'static {
     /// `internal` if a number in it is not finite.
     fn envelope(&self) -> Result<Vec<u8>, Problem>;
 
-    /// What they all took. Asked when all are computed.
+    /// What they took so far. Asked when all are computed, or when no more will be.
     fn effort(&self) -> Effort;
 }
 

@@ -23,7 +23,7 @@ use crate::problem::Problem;
 const PROBLEM: &str = "problem";
 
 /// What the log says of a stream whose client stopped reading.
-const NOT_READ: Effort = Effort { steps: 0, outcome: Some("send_timeout") };
+const NOT_READ: &str = "send_timeout";
 
 /// The answer of `lines`, computed in `place` while it is sent.
 ///
@@ -93,6 +93,11 @@ struct LineStream {
 }
 
 impl LineStream {
+    /// Tells the log how it ended before its end, and what it took so far; without an outcome its client has gone.
+    fn end(&self, outcome: Option<&'static str>) {
+        let _ = self.ending.set(Effort { outcome, ..self.lines.effort() });
+    }
+
     /// The last line: the summary, or what went wrong.
     fn last(&mut self, end: Result<(), Problem>) -> Bytes {
         if let Some(place) = self.run.take().and_then(Run::into_place) {
@@ -106,7 +111,7 @@ impl LineStream {
             Err(problem) => {
                 let Origin { path, request_id } = &self.origin;
                 problem.log(request_id);
-                let _ = self.ending.set(Effort { steps: 0, outcome: Some(problem.slug().name()) });
+                self.end(Some(problem.slug().name()));
                 line(|out| out.line(PROBLEM, &problem.members(path, request_id))).unwrap_or_default()
             }
         }
@@ -122,8 +127,8 @@ impl Stream for LineStream {
         }
         let Some(run) = &self.run else { return Poll::Ready(None) };
         if run.is_given_up() {
+            self.end(Some(NOT_READ));
             self.run = None;
-            let _ = self.ending.set(NOT_READ);
             return Poll::Ready(Some(Err(io::ErrorKind::TimedOut.into())));
         }
         run.poll_next(context).map(|next| match next {
@@ -136,10 +141,9 @@ impl Stream for LineStream {
 
 impl Drop for LineStream {
     fn drop(&mut self) {
+        let Some(run) = &self.run else { return };
         // The connection may have given up first, and have asked for more on the way.
-        let patience = self.patience / 2;
-        if self.run.as_ref().is_some_and(|run| run.is_given_up() || run.lay_for(patience)) {
-            let _ = self.ending.set(NOT_READ);
-        }
+        let not_read = run.is_given_up() || run.lay_for(self.patience / 2);
+        self.end(not_read.then_some(NOT_READ));
     }
 }
