@@ -29,6 +29,12 @@ pub(super) const ROUNDER: f64 = 6_755_399_441_055_744.0;
 /// Brings a mantissa into [√½, √2): the difference of the bit patterns of 1 and √½.
 pub(super) const TO_ONE: u64 = 1.0_f64.to_bits() - std::f64::consts::FRAC_1_SQRT_2.to_bits();
 
+/// 2 to this power, for powers within ±1000.
+#[inline(always)]
+pub(crate) const fn power_of_two(power: i64) -> f64 {
+    f64::from_bits(((power + BIAS) << FRACTION_BITS).cast_unsigned())
+}
+
 impl Real for f64 {
     #[inline(always)]
     fn from_f64(value: f64) -> Self {
@@ -90,7 +96,7 @@ impl Real for f64 {
         let f = self - whole;
         let [a, b, c, d, e, g] = EXP2;
         let fraction = g.mul_add(f, e).mul_add(f, d).mul_add(f, c).mul_add(f, b).mul_add(f, a);
-        fraction * Self::from_bits(((whole as i64 + BIAS) << FRACTION_BITS).cast_unsigned())
+        fraction * power_of_two(whole as i64)
     }
 }
 

@@ -11,6 +11,7 @@ pub(crate) mod x86;
 
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
+pub(crate) use double::power_of_two;
 pub use double_double::{DoubleDouble, Matrix, SumOfProducts};
 pub use quad::Quad;
 
@@ -111,9 +112,6 @@ pub trait Packed: Real {
     /// To two pairs in memory, from `at` on.
     fn store_pairs(self, pairs: &mut [[f64; 2]], at: usize);
 
-    /// The first two values.
-    fn first_pair(self) -> [f64; 2];
-
     /// The first value.
     fn first(self) -> f64;
 
@@ -124,10 +122,6 @@ pub trait Packed: Real {
     /// (b, a, d, c).
     #[must_use]
     fn swap(self) -> Self;
-
-    /// (b, b, d, d).
-    #[must_use]
-    fn seconds(self) -> Self;
 
     /// (a, a, a, a).
     #[must_use]

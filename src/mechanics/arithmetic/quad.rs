@@ -166,11 +166,6 @@ impl Packed for Quad<f64> {
     }
 
     #[inline(always)]
-    fn first_pair(self) -> [f64; 2] {
-        [self.0[0], self.0[1]]
-    }
-
-    #[inline(always)]
     fn first(self) -> f64 {
         self.0[0]
     }
@@ -185,12 +180,6 @@ impl Packed for Quad<f64> {
     fn swap(self) -> Self {
         let Self([a, b, c, d]) = self;
         Self([b, a, d, c])
-    }
-
-    #[inline(always)]
-    fn seconds(self) -> Self {
-        let Self([_, b, _, d]) = self;
-        Self([b, b, d, d])
     }
 
     #[inline(always)]

@@ -9,17 +9,17 @@
 
 use std::arch::asm;
 use std::arch::x86_64::{
-    __m256d, __m512d, _CMP_LT_OQ, _mm_loadu_pd, _mm_storeu_pd, _mm256_add_epi64, _mm256_add_pd,
-    _mm256_andnot_pd, _mm256_blend_pd, _mm256_blendv_pd, _mm256_castpd_si256, _mm256_castpd128_pd256,
-    _mm256_castpd256_pd128, _mm256_castsi256_pd, _mm256_cmp_pd, _mm256_cvtsd_f64, _mm256_div_pd,
-    _mm256_fmadd_pd, _mm256_fnmadd_pd, _mm256_insertf128_pd, _mm256_loadu_pd, _mm256_max_pd, _mm256_min_pd,
-    _mm256_movemask_pd, _mm256_mul_pd, _mm256_or_si256, _mm256_permute_pd, _mm256_permute2f128_pd,
-    _mm256_permute4x64_pd, _mm256_set1_epi64x, _mm256_set1_pd, _mm256_slli_epi64, _mm256_sqrt_pd,
-    _mm256_srli_epi64, _mm256_storeu_pd, _mm256_sub_epi64, _mm256_sub_pd, _mm512_abs_pd, _mm512_add_epi64,
-    _mm512_add_pd, _mm512_castpd_si512, _mm512_castsi512_pd, _mm512_cmp_pd_mask, _mm512_div_pd,
-    _mm512_fmadd_pd, _mm512_fnmadd_pd, _mm512_loadu_pd, _mm512_mask_blend_pd, _mm512_max_pd, _mm512_min_pd,
-    _mm512_mul_pd, _mm512_or_si512, _mm512_set1_epi64, _mm512_set1_pd, _mm512_slli_epi64, _mm512_sqrt_pd,
-    _mm512_srli_epi64, _mm512_storeu_pd, _mm512_sub_epi64, _mm512_sub_pd,
+    __m256d, __m512d, _CMP_LT_OQ, _mm_loadu_pd, _mm256_add_epi64, _mm256_add_pd, _mm256_andnot_pd,
+    _mm256_blend_pd, _mm256_blendv_pd, _mm256_castpd_si256, _mm256_castpd128_pd256, _mm256_castsi256_pd,
+    _mm256_cmp_pd, _mm256_cvtsd_f64, _mm256_div_pd, _mm256_fmadd_pd, _mm256_fnmadd_pd, _mm256_insertf128_pd,
+    _mm256_loadu_pd, _mm256_max_pd, _mm256_min_pd, _mm256_movemask_pd, _mm256_mul_pd, _mm256_or_si256,
+    _mm256_permute_pd, _mm256_permute2f128_pd, _mm256_permute4x64_pd, _mm256_set1_epi64x, _mm256_set1_pd,
+    _mm256_slli_epi64, _mm256_sqrt_pd, _mm256_srli_epi64, _mm256_storeu_pd, _mm256_sub_epi64, _mm256_sub_pd,
+    _mm512_abs_pd, _mm512_add_epi64, _mm512_add_pd, _mm512_castpd_si512, _mm512_castsi512_pd,
+    _mm512_cmp_pd_mask, _mm512_div_pd, _mm512_fmadd_pd, _mm512_fnmadd_pd, _mm512_loadu_pd,
+    _mm512_mask_blend_pd, _mm512_max_pd, _mm512_min_pd, _mm512_mul_pd, _mm512_or_si512, _mm512_set1_epi64,
+    _mm512_set1_pd, _mm512_slli_epi64, _mm512_sqrt_pd, _mm512_srli_epi64, _mm512_storeu_pd, _mm512_sub_epi64,
+    _mm512_sub_pd,
 };
 use std::ops::{Add, Div, Mul, Neg, Sub};
 
@@ -254,14 +254,6 @@ impl Packed for Wide4 {
     }
 
     #[inline(always)]
-    fn first_pair(self) -> [f64; 2] {
-        let mut pair = [0.0; 2];
-        // SAFETY: the module's; room for two doubles.
-        unsafe { _mm_storeu_pd(pair.as_mut_ptr(), _mm256_castpd256_pd128(self.0)) };
-        pair
-    }
-
-    #[inline(always)]
     fn first(self) -> f64 {
         // SAFETY: the module's.
         unsafe { _mm256_cvtsd_f64(self.0) }
@@ -280,12 +272,6 @@ impl Packed for Wide4 {
     fn swap(self) -> Self {
         // SAFETY: the module's.
         Self(unsafe { _mm256_permute_pd::<0b0101>(self.0) })
-    }
-
-    #[inline(always)]
-    fn seconds(self) -> Self {
-        // SAFETY: the module's.
-        Self(unsafe { _mm256_permute_pd::<0b1111>(self.0) })
     }
 
     #[inline(always)]

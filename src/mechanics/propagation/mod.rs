@@ -235,7 +235,7 @@ pub fn propagate(
     interrupt: &dyn Interrupt,
 ) -> Result<(), Failure> {
     if request.is_extended() {
-        extended::propagate(request, range, budget, sink, interrupt)
+        alone::one_by_one(request, range, budget, sink, interrupt, extended::run)
     } else if swarm::suits(request, range.clone(), &*sink) {
         swarm::propagate(request, range, budget, sink, interrupt)
     } else {

@@ -15,7 +15,10 @@ pub const STEP_FLOOR: f64 = 1e-13;
 pub(super) const ESTIMATED_FROM: [usize; 2] = [ORDER - 3, ORDER - 2];
 
 /// Keeps the logarithm finite where a coefficient vanishes.
-const SMALLEST_COEFFICIENT: f64 = 1e-300;
+pub(super) const SMALLEST_COEFFICIENT: f64 = 1e-300;
+
+/// 2 to this power and its inverse are far outside what is ever a step, and inside what the coarse power can do.
+pub(super) const WIDEST_POWER: f64 = 100.0;
 
 /// log₂ of the radius of convergence, from the largest components of the velocity, of the coefficients of
 /// [`ESTIMATED_FROM`] (those of the position an order later), and half the squared distance to the nearer primary.
@@ -57,9 +60,12 @@ impl StepSize {
     #[must_use]
     #[inline(always)]
     pub(super) fn at_log2_radius<R: Real>(self, log2_radius: R) -> R {
-        // 2^±100 is far outside what is ever used, and inside what the coarse power can do; what is no number becomes
-        // the shortest.
+        // What is no number becomes the shortest.
         let power = log2_radius + R::from_f64(self.log2_fraction);
-        power.max(R::from_f64(-100.0)).min(R::from_f64(100.0)).exp2_coarse().min(R::from_f64(MAX_STEP))
+        power
+            .max(R::from_f64(-WIDEST_POWER))
+            .min(R::from_f64(WIDEST_POWER))
+            .exp2_coarse()
+            .min(R::from_f64(MAX_STEP))
     }
 }

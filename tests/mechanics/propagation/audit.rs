@@ -7,15 +7,15 @@ use mechanics::frame::{Axes, Frame, Origin, XAxis};
 use mechanics::interrupt::{AfterPolls, Never, Stop};
 use mechanics::propagation::event::{Direction, Event, Plane, When};
 use mechanics::propagation::{
-    Arithmetic, Audit, BurnAxes, Failure, Invalid, Manoeuvre, Outcome, Request, RequestParts, Trajectory,
-    solve,
+    Arithmetic, Audit, BurnAxes, Failure, Invalid, Outcome, Request, RequestParts, Trajectory, solve,
 };
 use mechanics::quantity::{MassParameter, Quantity};
 use mechanics::state::State;
 use mechanics::taylor::extended::Motion;
 use mechanics::taylor::{Path, Primaries};
-use nalgebra::{Vector3, Vector6};
+use nalgebra::Vector6;
 
+use super::double_double::{burn, burns, burnt};
 use super::{HALO, HALO_PERIOD, MU, parts, run};
 use crate::extended::{ARENSTORF, ARENSTORF_MU, ARENSTORF_PERIOD, RECTILINEAR, motion, propagated, truth};
 
@@ -91,27 +91,10 @@ fn of_a_loose_tolerance() {
     assert_measured(&trajectory, &truth("halo_period", "final"), 1e-9);
 }
 
-fn burn(time: f64, delta_v: [f64; 3], axes: BurnAxes) -> Manoeuvre {
-    Manoeuvre { time, delta_v: Vector3::from(delta_v), axes, trajectories: None }
-}
-
 #[test]
 fn with_manoeuvres() {
-    // The same by hand: a burn along fixed axes, one along the velocity, and one after the trajectory's end.
-    let mut request = parts(MU, HALO, 3.0);
-    request.manoeuvres = vec![
-        burn(1.0, [0.01, -0.02, 0.005], BurnAxes::Frame),
-        burn(2.0, [0.03, 0.0, 0.0], BurnAxes::VelocityNormalBinormal),
-    ];
-    let mut course = propagated(motion(MU, HALO), 1.0);
-    course.kick(&[0.01, -0.02, 0.005].map(DoubleDouble::from));
-    let mut course = propagated(course, 1.0);
-    let velocity: [DoubleDouble; 3] = std::array::from_fn(|i| course.state[i + 3]);
-    let [x, y, z] = velocity.map(DoubleDouble::squared);
-    let speed = (x + y + z).sqrt();
-    course.kick(&velocity.map(|component| component / speed * 0.03));
-    let course = propagated(course, 1.0);
-    assert_measured(&audited(request), &course.state, 1e-9);
+    let request = RequestParts { manoeuvres: burns(), ..parts(MU, HALO, 3.0) };
+    assert_measured(&audited(request), &burnt().state, 1e-9);
 }
 
 #[test]

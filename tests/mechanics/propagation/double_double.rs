@@ -12,6 +12,7 @@ use mechanics::propagation::{
 use mechanics::quantity::{Distance, Quantity};
 use mechanics::state::State;
 use mechanics::taylor::Path;
+use mechanics::taylor::extended::Motion;
 use nalgebra::Vector3;
 use proptest::prelude::*;
 
@@ -158,19 +159,20 @@ fn contact() {
     assert!((trajectory.last.time - double.last.time).abs() < 1e-13);
 }
 
-fn burn(time: f64, delta_v: [f64; 3], axes: BurnAxes) -> Manoeuvre {
+pub(super) fn burn(time: f64, delta_v: [f64; 3], axes: BurnAxes) -> Manoeuvre {
     Manoeuvre { time, delta_v: Vector3::from(delta_v), axes, trajectories: None }
 }
 
-#[test]
-fn manoeuvres() {
-    let mut request = precise(MU, HALO, 3.0);
-    request.manoeuvres = vec![
+/// A burn along fixed axes at 1, and one along the velocity at 2.
+pub(super) fn burns() -> Vec<Manoeuvre> {
+    vec![
         burn(1.0, [0.01, -0.02, 0.005], BurnAxes::Frame),
         burn(2.0, [0.03, 0.0, 0.0], BurnAxes::VelocityNormalBinormal),
-    ];
-    request.matrix = MatrixOutput::Final;
-    // The same by hand.
+    ]
+}
+
+/// The halo orbit with these burns, by hand, at 3.
+pub(super) fn burnt() -> Motion {
     let mut course = propagated(motion(MU, HALO), 1.0);
     course.kick(&[0.01, -0.02, 0.005].map(DoubleDouble::from));
     let mut course = propagated(course, 1.0);
@@ -178,9 +180,16 @@ fn manoeuvres() {
     let [x, y, z] = velocity.map(DoubleDouble::squared);
     let speed = (x + y + z).sqrt();
     course.kick(&velocity.map(|component| component / speed * 0.03));
-    let course = propagated(course, 1.0);
+    propagated(course, 1.0)
+}
+
+#[test]
+fn manoeuvres() {
+    let mut request = precise(MU, HALO, 3.0);
+    request.manoeuvres = burns();
+    request.matrix = MatrixOutput::Final;
     let trajectory = run(request.clone());
-    let rounded = course.state.map(|component| component.to_f64().to_bits());
+    let rounded = burnt().state.map(|component| component.to_f64().to_bits());
     assert_eq!(components(&trajectory.last).map(f64::to_bits), rounded);
     assert!(trajectory.evidence.jacobi_drift < 1e-29, "{:?}", trajectory.evidence);
 

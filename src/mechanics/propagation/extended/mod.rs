@@ -3,17 +3,15 @@
 
 mod matrix;
 
-use std::ops::{ControlFlow, Range};
+use std::ops::ControlFlow;
 
 use nalgebra::Matrix6;
 
-use super::alone::one_by_one;
 use super::audit::STEPS_PER_POLL;
 use super::course::{Ahead, Course, Outlet, Step};
-use super::{Failure, Outcome, Request, SampleBudget, Sink};
+use super::{Failure, Outcome, Request};
 use crate::arithmetic::DoubleDouble;
 use crate::arithmetic::sum::Compensated;
-use crate::interrupt::Interrupt;
 use crate::taylor::extended::Motion;
 use crate::taylor::{Halt, Path, Series, Stride};
 
@@ -40,18 +38,8 @@ impl Request {
     }
 }
 
-pub(super) fn propagate(
-    request: &Request,
-    range: Range<usize>,
-    budget: &SampleBudget,
-    sink: &mut dyn Sink,
-    interrupt: &dyn Interrupt,
-) -> Result<(), Failure> {
-    one_by_one(request, range, budget, sink, interrupt, run)
-}
-
 /// A trajectory that has been opened, from where it is to its end.
-fn run(course: &mut Course, outlet: &mut Outlet) -> Result<Outcome, Failure> {
+pub(super) fn run(course: &mut Course, outlet: &mut Outlet) -> Result<Outcome, Failure> {
     let request = course.request;
     let start = course.motion.state.map(DoubleDouble::from);
     let mut motion = Motion::new(request.path(), *request.primaries(), start);

@@ -123,8 +123,8 @@ impl Series {
         self.jacobi
     }
 
-    /// The first coefficients in powers of the time, rounded: the series that the search for events works on. What it
-    /// leaves out is below the round-off within a step of this series.
+    /// The first coefficients in powers of the time, rounded: of the series what the search for events works on, and no
+    /// forces. What it leaves out is below the round-off within a step of this series.
     pub fn round_to(&self, rounded: &mut RoundedSeries) {
         let per_time = 1.0 / self.trial_step;
         let mut factor = 1.0;
@@ -132,8 +132,6 @@ impl Series {
             let scale = |value: f64| value * factor;
             rounded.position[k] = Quad(self.position[k].to_double().0.map(scale));
             rounded.set_half_square(k, self.half_square.leading[k].map(scale));
-            rounded.force[k] = self.force.leading[k].map(scale);
-            rounded.total[k] = scale(self.total[k].to_f64());
             factor *= per_time;
         }
         rounded.side = self.side;

@@ -2,28 +2,21 @@
 
 use super::recurrence::number;
 use super::{ORDER, Series};
-use crate::arithmetic::{Quad, Real};
-use crate::taylor::MAX_STEP;
+use crate::arithmetic::{Quad, Real, power_of_two};
+use crate::taylor::step::{MAX_STEP, SMALLEST_COEFFICIENT, WIDEST_POWER};
 
 /// The two orders of the velocity that estimate the radius.
 const ESTIMATED_FROM: [usize; 2] = [ORDER - 1, ORDER];
-
-/// Keeps the logarithm finite where a coefficient vanishes.
-const SMALLEST_COEFFICIENT: f64 = 1e-300;
-
-/// A double's exponent bias, and the bits of its fraction.
-const BIAS: u64 = 1023;
-const FRACTION_BITS: u32 = 52;
 
 /// Base-2 logarithm of 1 over the relative local error per step. Up to 98 the error of the result follows it; beyond
 /// 102 there is only round-off.
 const TOLERANCE_BITS: u32 = 102;
 
 /// Relative local error per step.
-pub const EXTENDED_TOLERANCE: f64 = f64::from_bits((BIAS - TOLERANCE_BITS as u64) << FRACTION_BITS);
+pub const EXTENDED_TOLERANCE: f64 = power_of_two(-(TOLERANCE_BITS as i64));
 
 /// The shortest trial step, 2^-100: far below every step.
-const SHORTEST_TRIAL: f64 = f64::from_bits((BIAS - 100) << FRACTION_BITS);
+const SHORTEST_TRIAL: f64 = power_of_two(-100);
 
 /// A power of two near the radius of convergence, from the distance to the nearer primary, the speed and the square
 /// root of both primaries' forces over the distance.
@@ -31,8 +24,8 @@ const SHORTEST_TRIAL: f64 = f64::from_bits((BIAS - 100) << FRACTION_BITS);
 pub(super) fn trial(distance: f64, speed: f64, rate: f64) -> f64 {
     let time = Real::min(Real::min(distance / speed, 1.0 / rate), 1.0);
     let time = if time > SHORTEST_TRIAL { time } else { SHORTEST_TRIAL };
-    // The exponent without the fraction.
-    f64::from_bits(time.to_bits() & (0x7ff << FRACTION_BITS))
+    // The exponent without the fraction: an infinity has all its bits, and no other.
+    f64::from_bits(time.to_bits() & f64::INFINITY.to_bits())
 }
 
 /// log₂ of the radius of convergence, as for a series in double precision.
@@ -55,8 +48,9 @@ pub(super) fn log2_radius(s: &Series) -> f64 {
 
 /// The step, at most [`MAX_STEP`], for a radius of convergence.
 pub(super) fn from_log2_radius(log2_radius: f64) -> f64 {
-    // 2^±100 is far outside what is ever used, and inside what the coarse power can do.
-    let step = (log2_radius - f64::from(TOLERANCE_BITS) / number(ORDER)).clamp(-100.0, 100.0).exp2_coarse();
+    let step = (log2_radius - f64::from(TOLERANCE_BITS) / number(ORDER))
+        .clamp(-WIDEST_POWER, WIDEST_POWER)
+        .exp2_coarse();
     // Not `min`, which would make a step of what is no number.
     if step > MAX_STEP { MAX_STEP } else { step }
 }
